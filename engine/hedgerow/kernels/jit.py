@@ -1,0 +1,96 @@
+"""The one compile decorator, its flags, and where compiled code is kept.
+
+Compiled code is cached in a private folder of the user, named by a hash of every kernel source and of the
+versions that produced it: numba itself does not notice an edited callee in another file. Where that folder
+cannot be written a fresh temporary one serves. `HEDGEROW_UNCOMPILED=1` runs everything as plain Python,
+bit for bit the same.
+"""
+
+from __future__ import annotations
+
+import hashlib
+import os
+import platform
+import shutil
+import tempfile
+from collections.abc import Callable
+from pathlib import Path
+from typing import Any, TypeVar
+
+__all__ = ["COMPILED", "cache_folder", "compiled", "forget_cache"]
+
+F = TypeVar("F", bound=Callable[..., Any])
+
+COMPILED = os.environ.get("HEDGEROW_UNCOMPILED", "") in ("", "0")
+
+
+def _fingerprint() -> str:
+    """Hash every kernel source and the versions that turn it into machine code."""
+    import llvmlite
+    import numba
+    import numpy as np
+
+    digest = hashlib.sha256()
+    for part in (platform.python_version(), platform.machine(), numba.__version__, llvmlite.__version__):
+        digest.update(part.encode())
+    digest.update(np.__version__.encode())
+    for source in sorted(Path(__file__).parent.glob("*.py")):
+        digest.update(source.name.encode())
+        digest.update(source.read_bytes())
+    return digest.hexdigest()[:16]
+
+
+def _writable(folder: Path) -> bool:
+    """Whether a file can be made in `folder`, which is created when missing."""
+    try:
+        folder.mkdir(parents=True, exist_ok=True)
+        handle, name = tempfile.mkstemp(dir=folder)
+    except OSError:
+        return False
+    os.close(handle)
+    os.unlink(name)
+    return True
+
+
+def _choose_folder() -> Path:
+    """The user's cache folder for this exact code, or a fresh temporary one."""
+    import platformdirs
+
+    folder = Path(platformdirs.user_cache_dir("hedgerow")) / "compiled" / _fingerprint()
+    return folder if _writable(folder) else Path(tempfile.mkdtemp(prefix="hedgerow-compiled-"))
+
+
+_folder: Path | None = None
+
+
+def cache_folder() -> Path:
+    """The folder that holds compiled code for this process."""
+    global _folder
+    if _folder is None:
+        _folder = _choose_folder()
+    return _folder
+
+
+def forget_cache() -> None:
+    """Empty the folder of compiled code, so that the next call compiles afresh."""
+    shutil.rmtree(cache_folder(), ignore_errors=True)
+    cache_folder().mkdir(parents=True, exist_ok=True)
+
+
+def compiled(function: F) -> F:
+    """Compile `function` on first call; keep it as it is when compiling is switched off.
+
+    No fast-math, so that compiled and uncompiled runs agree to the last bit; the interpreter lock is released.
+    """
+    if not COMPILED:
+        return function
+    import numba
+    from numba.core import config
+
+    before = config.CACHE_DIR
+    config.CACHE_DIR = str(cache_folder())
+    try:
+        wrapped: F = numba.njit(cache=True, nogil=True, error_model="numpy")(function)
+    finally:
+        config.CACHE_DIR = before
+    return wrapped

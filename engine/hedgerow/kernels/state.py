@@ -1,0 +1,220 @@
+"""Record layouts of what the walk reads and of what it keeps while it walks.
+
+Everything here is a plain record of numbers, so that compiled steps pass pointers around instead of copies.
+Prices are per share as traded, dates proleptic ordinals, quantities shares (signed), rates annual fractions.
+"""
+
+from __future__ import annotations
+
+from typing import NamedTuple
+
+import numpy as np
+
+from hedgerow.kernels.layout import Bytes, Costs, Floats, Ints, Records, SmileModel
+
+# what a symbol looks like at one close
+BAR = np.dtype(
+    [
+        ("open", np.float64),
+        ("high", np.float64),
+        ("low", np.float64),
+        ("close", np.float64),
+        ("level", np.float64),  # volatility now; NaN unknown
+        ("anchor", np.float64),  # volatility in the long run
+        ("pay_cash", np.float64),  # the next dividend a trader would expect, per share
+        ("pay_ordinal", np.int32),  # when; 0 none
+        ("pay_gap", np.int32),  # calendar days between dividends; 0 only once
+        ("report", np.int32),  # ordinal of the next announced report's reaction; 0 none known
+        ("flags", np.int32),
+    ],
+    align=True,
+)
+
+# what happens to a symbol before a session's open
+ACTION = np.dtype(
+    [
+        ("dividend", np.float64),  # ordinary and special together
+        ("special", np.float64),
+        ("split", np.float64),  # new shares for one old
+    ],
+    align=True,
+)
+
+SESSION = np.dtype(
+    [
+        ("ordinal", np.int64),
+        ("rate", np.float64),
+        ("low_tick", np.float64),  # of premiums below 3.00
+        ("high_tick", np.float64),
+        ("exercise_threshold", np.float64),
+    ],
+    align=True,
+)
+
+# one leg as the rule describes it
+LEG_SPEC = np.dtype(
+    [
+        ("side", np.float64),  # +1 bought, -1 written
+        ("ratio", np.float64),  # contracts per 100 shares
+        ("strike_value", np.float64),
+        ("right", np.int32),
+        ("with_leg", np.int32),  # shares the expiry of that leg; -1 own
+        ("cycle", np.int32),
+        ("strike_rule", np.int32),
+        ("strike_leg", np.int32),
+        ("snap", np.int32),
+        ("roll_at_expiry", np.int32),
+        ("roll_credit", np.int32),  # rolled only when that brings money in
+        ("roll_start", np.int32),
+        ("roll_length", np.int32),
+        ("add_start", np.int32),
+        ("add_length", np.int32),
+    ],
+    align=True,
+)
+
+OP = np.dtype([("value", np.float64), ("code", np.int32), ("arg", np.int32)], align=True)
+
+# the rule as a whole, the account and the walk's own switches
+PLAN = np.dtype(
+    [
+        ("shares", np.float64),  # +1 long, -1 short, 0 none
+        ("stop", np.float64),  # fraction from the entry price; 0 none
+        ("opening_cash", np.float64),
+        ("per_position", np.float64),  # share of equity
+        ("net_credit", np.float64),  # 1: the options must bring money in
+        ("net_debit_most", np.float64),  # bounds; -inf and inf when free
+        ("worst_least", np.float64),
+        ("worst_most", np.float64),
+        ("best_least", np.float64),
+        ("best_most", np.float64),
+        ("odds_least", np.float64),
+        ("odds_most", np.float64),
+        ("ratio_least", np.float64),
+        ("spread_most", np.float64),
+        ("most_positions", np.int32),
+        ("most_new", np.int32),
+        ("interest", np.int32),
+        ("fill_close", np.int32),
+        ("legs", np.int32),
+        ("exits", np.int32),
+        ("marks", np.int32),  # 1: one mark a position and close is kept
+        ("modern", np.int32),  # listing regime
+        ("ladder", np.int32),  # positions a symbol at once
+        ("spacing", np.int32),  # sessions between entries of one symbol
+        ("cooling", np.int32),  # sessions without entry after a losing position
+        ("settle_cash", np.int32),
+    ],
+    align=True,
+)
+
+FLAT, ORDERED, OPEN = 0, 1, 2  # a slot's position
+NONE, LIVE, WANTED, LEAVING, MOVING = 0, 1, 2, 3, 4  # a slot's leg: none, held, to open, to close, to roll
+
+POSITION = np.dtype(
+    [
+        ("shares", np.float64),
+        ("lots", np.float64),
+        ("stock_price", np.float64),  # at entry, per share in today's shares
+        ("stop_price", np.float64),  # 0 none
+        ("flows", np.float64),  # every cash flow so far
+        ("outlay", np.float64),  # paid for shares and legs before fees, received counted off
+        ("base", np.float64),  # money the gain is measured on
+        ("best_gain", np.float64),
+        ("worst_loss", np.float64),
+        ("reserve", np.float64),
+        ("promised", np.float64),  # cash an order will need
+        ("last_close", np.float64),
+        ("gain", np.float64),
+        ("symbol", np.int32),
+        ("status", np.int32),
+        ("position", np.int32),
+        ("entered", np.int32),  # session of the fill
+        ("decided", np.int32),
+        ("closing", np.int32),  # reason of an ordered close; 0 none
+        ("silent", np.int32),  # sessions without a bar in a row
+        ("left", np.int32),  # session of the last close; -1 never
+        ("lost", np.int32),  # 1: the last position of this slot lost
+        ("stop_from", np.int32),  # first session at which the stop rests
+    ],
+    align=True,
+)
+
+LEG_STATE = np.dtype(
+    [
+        ("quantity", np.float64),
+        ("strike", np.float64),
+        ("entry_price", np.float64),
+        ("mid", np.float64),
+        ("wanted_strike", np.float64),
+        ("volatility", np.float64),
+        ("moneyness", np.float64),  # standardized, absolute
+        ("expiry", np.int32),
+        ("wanted_expiry", np.int32),
+        ("status", np.int32),
+        ("right", np.int32),
+    ],
+    align=True,
+)
+
+TOTALS = np.dtype(
+    [
+        ("cash", np.float64),
+        ("reserved", np.float64),
+        ("promised", np.float64),
+        ("equity", np.float64),
+        ("events", np.int64),
+        ("terms", np.int64),
+        ("marks", np.int64),
+        ("days", np.int64),
+        ("next_position", np.int32),
+        ("open", np.int32),
+        ("ordered", np.int32),
+        ("new_today", np.int32),
+    ],
+    align=True,
+)
+
+
+class Clock(NamedTuple):
+    """The moment at which an option is valued."""
+
+    ordinal: float  # of the day
+    extra_days: float  # of the day still to go, in days
+    rate: float
+    american: int  # 1: exercise is possible before expiry
+    low_tick: float
+    high_tick: float
+
+
+class Book(NamedTuple):
+    """Where a step writes what happened."""
+
+    events: Records
+    terms: Records
+    totals: Records  # one record
+
+
+class World(NamedTuple):
+    """Everything the walk needs, by name."""
+
+    bars: Records  # (T, N)
+    actions: Records  # (T, N)
+    sessions: Records  # (T,)
+    american: Bytes  # (N,)
+    plan: Records  # (1,)
+    specs: Records  # (legs,)
+    expiries: Ints  # (legs, T)
+    ops: Records
+    exits: Ints  # (exits, 2) start and length into ops
+    may_enter: Bytes  # (T, N)
+    words: Ints  # (T, N) bits of the day's signals, or (1, 1)
+    rank: Floats  # (T, N) score, or (1, 1)
+    costs: Costs
+    smile: SmileModel
+    positions: Records  # (slots,)
+    legs: Records  # (slots, 4)
+    book: Book
+    days: Records
+    marks: Records
+    scratch: Floats  # (64 + 2 * slots,)
