@@ -1,8 +1,8 @@
 """Sessions and what is listed on them: expiries by cycle, ticks, exercise by exception.
 
 Days are proleptic ordinals. A regime says whose listings hold: `modern`, the default, gives all of history
-today's listings, so that a rule is judged by what it could trade now; `historical` lists what was listed then.
-An expiry is the last day of trading: standard series that ended legally on the Saturday (before February 2015)
+today's listings, so that a rule is judged by what it could trade now; `historical` those of the time.
+An expiry is the last day of trading: standard series that ended legally on the Saturday, up to January 2015,
 stand here on their Friday. One that falls on a closed day stands on the session before.
 """
 
