@@ -203,7 +203,7 @@ def seeded_smooth(values: Floats, gain: float, seed: int, skip: int) -> Floats:
 
 @compiled
 def carried(values: Floats, longest: int) -> Floats:
-    """Carry the latest known value forward while it is at most `longest` sessions old; (T, N), NaN when there is none."""
+    """Carry the latest known value of (T, N) forward while it is at most `longest` sessions old, else NaN."""
     sessions, symbols = values.shape
     out = np.full((sessions, symbols), np.nan)
     for s in range(symbols):
