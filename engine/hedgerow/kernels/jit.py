@@ -80,7 +80,7 @@ def forget_cache() -> None:
 def compiled(function: F) -> F:
     """Compile `function` on first call; keep it as it is when compiling is switched off.
 
-    No fast-math, so that compiled and uncompiled runs agree to the last bit; the interpreter lock is released.
+    No fast-math, so that compiled and uncompiled runs agree to the last bit; the interpreter lock is free.
     """
     if not COMPILED:
         return function
