@@ -31,10 +31,15 @@ from hedgerow.market.calendar import (
 )
 
 __all__ = [
+    "DAILY_DAYS",
     "EXACT_FROM",
     "FIRST_DAY",
     "LAST_DAY",
+    "LEAST_TOLERANCE_DAYS",
+    "LONG_DAYS",
+    "MONTHLY_DAYS",
     "REGIMES",
+    "WEEKLY_DAYS",
     "Regime",
     "check_regime",
     "choose_expiries",
