@@ -93,7 +93,7 @@ class Panel:
         if key not in self._found:
             found = evaluated(chosen, self if of is None else self.of(of), params)
             if of is not None:
-                found = found[:, np.zeros(len(self.market.symbols), dtype=np.int64)]
+                found = np.ascontiguousarray(found[:, np.zeros(len(self.market.symbols), dtype=np.int64)])
             found.flags.writeable = False
             self._found[key] = found
         return self._found[key]
