@@ -18,21 +18,21 @@ _MOST_STEPS = 120
 
 @compiled
 def _normalized(x: float, deviation: float) -> float:
-    """Call value over sqrt(forward x strike), undiscounted, for x = ln(forward / strike) <= 0."""
+    """Value a call over sqrt(forward x strike), undiscounted, for x = ln(forward / strike) <= 0."""
     d1 = x / deviation + 0.5 * deviation
     return math.exp(0.5 * x) * cdf(d1) - math.exp(-0.5 * x) * cdf(d1 - deviation)
 
 
 @compiled
 def _slope(x: float, deviation: float) -> float:
-    """Derivative of the normalized value by the deviation."""
+    """Differentiate the normalized value by the deviation."""
     ratio = x / deviation
     return ONE_OVER_ROOT_TWO_PI * math.exp(-0.5 * (ratio * ratio + 0.25 * deviation * deviation))
 
 
 @compiled
 def _solve(x: float, price: float) -> float:
-    """The deviation at which the normalized value is `price`: Newton steps kept inside a shrinking bracket.
+    """Find the deviation at which the normalized value is `price`, by Newton steps in a bracket.
 
     Starts at the point of inflection sqrt(2|x|), from which Newton is known to converge (Manaster & Koehler
     1982, "The calculation of implied variances from the Black-Scholes model", Journal of Finance 37). Below
@@ -74,7 +74,7 @@ def implied_european(
     rate: float,
     dividend_yield: float,
 ) -> tuple[float, int]:
-    """The volatility (annual fraction) at which a European option is worth `price`, and a status.
+    """Find the volatility (annual fraction) at which a European option is worth `price`, and a status.
 
     Status IMPLIED_OK; IMPLIED_BELOW: the price is under the least possible value, the discounted forward's
     intrinsic value (volatility NaN; exactly at it: 0 with IMPLIED_OK); IMPLIED_ABOVE: at or over the most a

@@ -40,7 +40,7 @@ def discount(rate: float, years: float) -> float:
 
 @compiled
 def intrinsic(right: int, spot: float, strike: float) -> float:
-    """What exercise pays now, money per share; never negative."""
+    """Value exercise now, money per share; never negative."""
     gain = spot - strike if right == CALL else strike - spot
     return 0.0 if gain <= 0.0 else gain
 
@@ -53,7 +53,7 @@ def is_certain(spot: float, strike: float, years: float, volatility: float) -> b
 
 @compiled
 def _d1(forward: float, owed: float, deviation: float) -> float:
-    """The d1 of the formula from the discounted forward, the discounted strike and volatility x sqrt(years)."""
+    """Form d1 from the discounted forward, the discounted strike and volatility x sqrt(years)."""
     return math.log(forward / owed) / deviation + 0.5 * deviation
 
 
@@ -67,7 +67,7 @@ def european(
     dividend_yield: float,
     volatility: float,
 ) -> float:
-    """Value of a European option, money per share.
+    """Value a European option, money per share.
 
     Hull, equations for c and p with a known dividend yield. One log, one sqrt, one or two exp, two erfc.
     """
@@ -92,7 +92,7 @@ def european(
 def european_pair(
     spot: float, strike: float, years: float, rate: float, dividend_yield: float, volatility: float
 ) -> tuple[float, float]:
-    """Values of the European call and put of one strike, money per share, for the price of one.
+    """Value the European call and put of one strike together, money per share.
 
     The option out of the money is computed, the other follows from put-call parity (Hull, put-call parity).
     """

@@ -68,7 +68,7 @@ def _far_tail(r: float) -> float:
 
 @compiled
 def quantile(p: float) -> float:
-    """The value a standard normal variable stays at or under with probability `p`.
+    """Find the value a standard normal variable stays at or under with probability `p`.
 
     Wichura 1988, "Algorithm AS 241: The percentage points of the normal distribution", Applied Statistics
     37(3), routine PPND16: relative error about 1e-16. Minus infinity for p <= 0, infinity for p >= 1.

@@ -1,0 +1,237 @@
+"""American options on a lognormal price; one option at a time.
+
+Arguments, units and limits are those of `hedgerow.kernels.lognormal`; how the exercise boundary is found
+stands in `hedgerow.kernels.boundary`. A call is a put with price and strike, rate and dividend yield
+exchanged (McDonald & Schroder 1998, "A parity result for American options", Journal of Computational
+Finance 1). Where the rate is negative and the dividend yield lower still, exercise has two boundaries; such
+a put gets the larger of its European and intrinsic value.
+"""
+
+from __future__ import annotations
+
+import math
+
+from hedgerow.kernels.boundary import Problem, exercise_depths, exercise_premium, top_of
+from hedgerow.kernels.jit import compiled
+from hedgerow.kernels.layout import CALL, PUT
+from hedgerow.kernels.lognormal import discount, european, intrinsic, is_certain
+from hedgerow.kernels.normal import cdf
+
+__all__ = [
+    "american",
+    "american_cash",
+    "american_or_european",
+    "call_exercise_is_due_before_dividend",
+    "early_exercise_bound",
+    "put_exercise_is_due",
+]
+
+_NOTHING = 1e-9  # an early exercise premium under this share of the strike is left out
+
+
+@compiled
+def _most_likely(
+    spot: float, level: float, years: float, rate: float, dividend_yield: float, volatility: float
+) -> float:
+    """Find the largest chance, over all times up to `years`, that the price stands at or under `level`.
+
+    With a = ln(spot/level) > 0 and drift m the chance at time s is N(-(a + m s)/(volatility sqrt(s))). Its
+    argument has one turning point, at s = a/m, so the chance is largest there or at the end.
+    """
+    away = math.log(spot / level)
+    if away <= 0.0:
+        return 1.0
+    drift = rate - dividend_yield - 0.5 * volatility * volatility
+    when = years
+    if drift > 0.0:
+        when = min(years, away / drift)
+    return cdf(-(away + drift * when) / (volatility * math.sqrt(when)))
+
+
+@compiled
+def _put_bound(
+    spot: float, strike: float, years: float, rate: float, dividend_yield: float, volatility: float
+) -> float:
+    """Bound what early exercise can add to a put, money per share; see `early_exercise_bound`."""
+    if is_certain(spot, strike, years, volatility):
+        return max(strike, 0.0)
+    most = rate if dividend_yield >= 0.0 else rate - dividend_yield
+    if most <= 0.0:
+        return 0.0
+    time = years if rate == 0.0 else (1.0 - math.exp(-rate * years)) / rate
+    level = strike * min(1.0, rate / dividend_yield) if dividend_yield > 0.0 else strike
+    return most * strike * time * _most_likely(spot, level, years, rate, dividend_yield, volatility)
+
+
+@compiled
+def early_exercise_bound(
+    right: int,
+    spot: float,
+    strike: float,
+    years: float,
+    rate: float,
+    dividend_yield: float,
+    volatility: float,
+) -> float:
+    """Bound American less European value from above, money per share, for about one exp and one erfc.
+
+    Proof, for a put. American less European value is the integral over s in (0, T) of
+    E[e^(-r s) (r K - q S_s); S_s in the exercise region at s] (Carr, Jarrow & Myneni 1992). Exercise is never
+    rational over the strike, nor where r K < q S, so the region lies under L = K min(1, r/q) for q > 0 and
+    under K otherwise. In it r K - q S_s is at most c = r K for q >= 0 and at most c = (r - q) K for q < 0.
+    So the premium is at most c x (integral of e^(-r s)) x (largest chance over s that S_s <= L), and zero
+    when c <= 0. A call is a put with price and strike, rate and yield exchanged: without a yield and with a
+    rate of zero or more its bound is 0. Where all is certain (no time, no volatility) the bound is coarse.
+    """
+    if years <= 0.0:
+        return 0.0
+    if right == CALL:
+        return _put_bound(strike, spot, years, dividend_yield, rate, volatility)
+    return _put_bound(spot, strike, years, rate, dividend_yield, volatility)
+
+
+@compiled
+def _certain_put(spot: float, strike: float, years: float, rate: float, dividend_yield: float) -> float:
+    """Value an American put whose price follows its forward: the best moment is an end or a turn."""
+    now = strike - spot
+    end = strike * discount(rate, years) - spot * discount(dividend_yield, years)
+    best = max(now, end, 0.0)
+    gains, costs = dividend_yield * spot, rate * strike
+    if gains * costs > 0.0 and rate != dividend_yield:
+        turn = math.log(gains / costs) / (dividend_yield - rate)
+        if 0.0 < turn < years:
+            best = max(best, strike * discount(rate, turn) - spot * discount(dividend_yield, turn))
+    return best
+
+
+@compiled
+def _put(
+    spot: float, strike: float, years: float, rate: float, dividend_yield: float, volatility: float
+) -> float:
+    """Value an American put, money per share."""
+    gain = intrinsic(PUT, spot, strike)
+    if years <= 0.0:
+        return gain
+    if is_certain(spot, strike, years, volatility):
+        return _certain_put(spot, strike, years, rate, dividend_yield)
+    plain = european(PUT, spot, strike, years, rate, dividend_yield, volatility)
+    most = _put_bound(spot, strike, years, rate, dividend_yield, volatility)
+    if rate < 0.0 or not most > _NOTHING * strike:
+        return gain if plain < gain else plain
+    problem = Problem(years, rate, dividend_yield, volatility, top_of(rate, dividend_yield))
+    depths = exercise_depths(problem)
+    log_moneyness = math.log(spot / strike)
+    if log_moneyness <= problem.top - depths[-1] * math.sqrt(years):
+        return max(gain, plain)
+    extra = strike * exercise_premium(log_moneyness, 0.0, depths, problem)
+    return max(plain + min(extra, most), gain)
+
+
+@compiled
+def american(
+    right: int,
+    spot: float,
+    strike: float,
+    years: float,
+    rate: float,
+    dividend_yield: float,
+    volatility: float,
+) -> float:
+    """Value an American option, money per share; never under its European nor its intrinsic value.
+
+    Source of the method: module docstring of `hedgerow.kernels.boundary`.
+    """
+    if right == CALL:
+        return _put(strike, spot, years, dividend_yield, rate, volatility)
+    return _put(spot, strike, years, rate, dividend_yield, volatility)
+
+
+@compiled
+def american_or_european(
+    right: int,
+    spot: float,
+    strike: float,
+    years: float,
+    rate: float,
+    dividend_yield: float,
+    volatility: float,
+    tick: float,
+) -> float:
+    """Value an American option, as a European one where exercise is proven to add under half a tick.
+
+    `tick` is the least step of a premium, money per share. See `early_exercise_bound` for the proof.
+    """
+    plain = european(right, spot, strike, years, rate, dividend_yield, volatility)
+    most = early_exercise_bound(right, spot, strike, years, rate, dividend_yield, volatility)
+    if most < 0.5 * tick:
+        return plain
+    return american(right, spot, strike, years, rate, dividend_yield, volatility)
+
+
+@compiled
+def put_exercise_is_due(
+    spot: float, strike: float, years: float, rate: float, dividend_yield: float, volatility: float
+) -> bool:
+    """Tell whether exercising an American put now is worth at least as much as keeping it.
+
+    True where the price is at or under the exercise boundary for the time left. At or after expiry: whether
+    it is in the money. Never without interest to gain.
+    """
+    gain = intrinsic(PUT, spot, strike)
+    if gain <= 0.0 or years <= 0.0:
+        return gain > 0.0
+    if is_certain(spot, strike, years, volatility):
+        return gain >= _certain_put(spot, strike, years, rate, dividend_yield)
+    if rate <= 0.0 or european(PUT, spot, strike, years, rate, dividend_yield, volatility) > gain:
+        return False
+    problem = Problem(years, rate, dividend_yield, volatility, top_of(rate, dividend_yield))
+    return math.log(spot / strike) <= problem.top - exercise_depths(problem)[-1] * math.sqrt(years)
+
+
+@compiled
+def call_exercise_is_due_before_dividend(
+    spot: float, strike: float, years: float, rate: float, dividend: float, volatility: float
+) -> bool:
+    """Tell whether a call is rationally exercised at the last close before its stock pays `dividend`.
+
+    True where exercise now pays more than the call is worth once the dividend (money per share) has left the
+    price, with `years` to expiry. The same as dividend > K (1 - e^(-r years)) + put of the same strike (Hull,
+    early exercise of calls on dividend-paying stocks), so never when it is at most K (1 - e^(-r years)).
+    """
+    if dividend <= 0.0 or spot <= strike:
+        return False
+    return spot - strike > european(CALL, spot - dividend, strike, years, rate, 0.0, volatility)
+
+
+@compiled
+def american_cash(
+    right: int,
+    spot: float,
+    strike: float,
+    years: float,
+    rate: float,
+    volatility: float,
+    years_to_ex: float,
+    amount: float,
+) -> float:
+    """Value an American option on a stock that pays `amount` a share once, in `years_to_ex`.
+
+    The price less the present value of the dividend is lognormal (escrowed dividend). Call: the larger of the
+    European call to expiry and the European call exercised just before the ex-date (Black 1975, "Fact and
+    fantasy in the use of options", Financial Analysts Journal 31). Put: exercise from the ex-date on, or now.
+    Both are values of strategies open to the holder, so a little low rather than high.
+    """
+    if amount <= 0.0 or not 0.0 < years_to_ex <= years:
+        return american(right, spot, strike, years, rate, 0.0, volatility)
+    rest = max(spot - amount * discount(rate, years_to_ex), 0.0)
+    plain = european(right, rest, strike, years, rate, 0.0, volatility)
+    gain = intrinsic(right, spot, strike)
+    if right == CALL:
+        early = european(CALL, rest, strike - amount, years_to_ex, rate, 0.0, volatility)
+        return max(plain, early, gain)
+    left = years - years_to_ex
+    if left <= 0.0 or rate <= 0.0 or is_certain(rest, strike, years, volatility):
+        return max(plain, gain)
+    problem = Problem(left, rate, 0.0, volatility, 0.0)
+    extra = exercise_premium(math.log(rest / strike), years_to_ex, exercise_depths(problem), problem)
+    return max(plain + strike * extra, gain)
