@@ -1,0 +1,1 @@
+"""Declared experiments: a market, an account, assumptions, and the strategies to compare."""

@@ -1,0 +1,225 @@
+"""Studies from files: the market, the account, the assumptions and every variant's strategy, resolved."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from pathlib import Path
+from typing import Any
+
+from pydantic import ValidationError
+
+from hedgerow.errors import Fault, InputError, StudyError
+from hedgerow.kernels.layout import Costs
+from hedgerow.rules.base import loosened
+from hedgerow.rules.document import Tree, tree_of_file, tree_of_mapping
+from hedgerow.rules.load import read_strategy
+from hedgerow.rules.overrides import changed
+from hedgerow.rules.schema import Strategy
+from hedgerow.rules.words import Loose, shown
+from hedgerow.study.words import AccountWords, CostWords, StudyWords
+from hedgerow.textfile import capped
+from hedgerow.volatility.model import SurfaceModel
+from hedgerow.walk.account import Account
+from hedgerow.yamltext import Node
+
+__all__ = ["Study", "load_study", "read_study", "study_of_strategy"]
+
+AS_IS: Mapping[str, Any] = {}
+
+
+@dataclass(frozen=True)
+class Study:
+    """A declared experiment, every path and strategy of it resolved.
+
+    `symbols` None means all stocks of the market; `first` and `last` are ISO dates, None for the data's own
+    ends; `variants` are pairs of a name and its strategy, in the order of the file.
+    """
+
+    name: str
+    market: Path
+    variants: tuple[tuple[str, Strategy], ...]
+    question: str = ""
+    symbols: tuple[str, ...] | None = None
+    first: str | None = None
+    last: str | None = None
+    account: Account = field(default_factory=Account)
+    surface: SurfaceModel = field(default_factory=SurfaceModel)
+    costs: Costs = field(default_factory=lambda: CostWords().costs())
+    listings: str = "modern"
+    yardstick: str = "buy and hold"
+    seed: int = 1
+    path: Path | None = None
+
+    def plain(self) -> dict[str, Any]:
+        """Everything resolved as a mapping for people and programs: strategies whole, defaults filled in."""
+        account = AccountWords.model_construct(**{name: getattr(self.account, name) for name in _ACCOUNT})
+        return {
+            "name": self.name,
+            "question": self.question,
+            "market": str(self.market),
+            "symbols": "all" if self.symbols is None else list(self.symbols),
+            "window": {"from": self.first, "to": self.last},
+            "account": account.model_dump(),
+            "pricing": {"volatility": _surface_plain(self.surface), "listings": self.listings},
+            "costs": self.costs._asdict(),
+            "variants": {name: strategy.plain() for name, strategy in self.variants},
+            "yardstick": self.yardstick,
+            "seed": self.seed,
+        }
+
+
+_ACCOUNT = ("cash", "per_position", "most_positions", "most_new_a_day", "interest")
+
+
+def _surface_plain(surface: SurfaceModel) -> dict[str, Any]:
+    from dataclasses import asdict
+
+    return asdict(surface)
+
+
+def load_study(source: str | Path | Mapping[str, Any], base: str | Path | None = None) -> Study:
+    """The study of a YAML file or a mapping. Paths in it are relative to the file, or to `base`.
+
+    Raises StudyError with every fault of the study and of the strategies it names.
+    """
+    if isinstance(source, Mapping):
+        tree, folder, path = tree_of_mapping(source, "study"), Path(base or "."), None
+    else:
+        path = Path(source)
+        tree, folder = tree_of_file(path), Path(base) if base is not None else path.parent
+    study, faults = read_study(tree, folder, path)
+    if study is None:
+        raise StudyError(capped(faults))
+    return study
+
+
+def read_study(tree: Tree, folder: Path, path: Path | None = None) -> tuple[Study | None, list[Fault]]:
+    """The study of a tree and no faults, or None and every fault in the order of the files."""
+    if tree.faults and not tree.plain:
+        return None, tree.faults
+    loose: list[Loose] = []
+    words: StudyWords | None = None
+    try:
+        words = StudyWords.model_validate(tree.plain)
+    except ValidationError as error:
+        loose = loosened(error)
+    if not isinstance(tree.plain, dict):
+        return None, tree.all_faults(loose, "the study")
+    loose += _market_faults(tree.plain, folder)
+    surface, surface_faults = _surface(tree)
+    variants, variant_faults = _variants(tree, folder)
+    faults = sorted({*tree.all_faults(loose, "the study"), *surface_faults, *variant_faults})
+    if faults or words is None or surface is None:
+        return None, faults
+    return _study(words, folder, path, surface, variants), []
+
+
+def _study(
+    words: StudyWords,
+    folder: Path,
+    path: Path | None,
+    surface: SurfaceModel,
+    variants: list[tuple[str, Strategy]],
+) -> Study:
+    return Study(
+        name=words.name,
+        market=folder / words.market,
+        variants=tuple(variants),
+        question=words.question or "",
+        symbols=words.chosen,
+        first=words.window.first,
+        last=words.window.last,
+        account=words.account.account(),
+        surface=surface,
+        costs=words.costs.costs(),
+        listings=words.pricing.listings,
+        yardstick=words.yardstick,
+        seed=words.seed,
+        path=path,
+    )
+
+
+def _market_faults(plain: Mapping[str, Any], folder: Path) -> list[Loose]:
+    market = plain.get("market")
+    if not isinstance(market, str) or not market or (folder / market).exists():
+        return []
+    remedy = f"looked for {folder / market}"
+    return [Loose(("market",), "file-missing", f"is {shown(market)}, and nothing is there", "", remedy)]
+
+
+def _surface(tree: Tree) -> tuple[SurfaceModel | None, list[Fault]]:
+    """The model of volatility; its own words are read by its own room."""
+    from hedgerow.volatility.words import surface_words
+
+    pricing = tree.plain.get("pricing")
+    words = pricing.get("volatility") if isinstance(pricing, dict) else None
+    node: Any = tree.node
+    for step in ("pricing", "volatility"):
+        node = node.value.get(step) if isinstance(node, Node) and isinstance(node.value, dict) else None
+    try:
+        return surface_words(words if node is None else node, tree.where), []
+    except StudyError as error:
+        return None, list(error.faults)
+
+
+def _variants(tree: Tree, folder: Path) -> tuple[list[tuple[str, Strategy]], list[Fault]]:
+    """Every variant's strategy, and the faults of all of them."""
+    given = tree.plain.get("variants")
+    names = list(given) if isinstance(given, dict) else []
+    if not names:
+        strategy, faults = _strategy(tree, ("strategy",), folder, None)
+        return ([] if strategy is None else [(strategy.name, strategy)]), faults
+    found: list[tuple[str, Strategy]] = []
+    faults: list[Fault] = []
+    for name in names:
+        if not isinstance(given[name], dict):
+            continue  # told with the words of the study
+        own = "strategy" in given[name]
+        path = ("variants", name, "strategy") if own else ("strategy",)
+        strategy, more = _strategy(tree, path, folder, tree.below(("variants", name)))
+        faults += more
+        if strategy is not None:
+            found.append((name, strategy))
+    return found, faults
+
+
+def _strategy(
+    tree: Tree, path: tuple[str, ...], folder: Path, changes: Tree | None
+) -> tuple[Strategy | None, list[Fault]]:
+    """The strategy that stands at a path of the study, as a file's name or written out, with its changes."""
+    given: Any = tree.plain
+    for step in path:
+        given = given.get(step)
+    if isinstance(given, dict):
+        base = tree.below(path)
+    elif isinstance(given, str) and given:
+        base = tree_of_file(folder / given)
+        if any(fault.code == "file-missing" for fault in base.faults):
+            found = Loose(path, "file-missing", f"is {shown(given)}, and no file is there")
+            return None, [tree.fault(found)]
+    else:
+        allowed = "allowed: the path of a strategy file, or the strategy itself"
+        code, found_text = ("missing", "is missing") if given is None else ("shape", f"is {shown(given)}")
+        return None, [tree.fault(Loose(path, code, found_text, allowed))]
+    if changes is not None:
+        changes.plain = {key: value for key, value in changes.plain.items() if key != "strategy"}
+        base = changed(base, changes)
+    return read_strategy(base)
+
+
+def study_of_strategy(
+    strategy: str | Path | Mapping[str, Any], market: str | Path, **words: Any
+) -> Study:
+    """The study that a strategy alone stands for, on a market, with the defaults or other `words` of a study.
+
+    Raises StudyError with every fault of the strategy and the words.
+    """
+    given = str(Path(strategy).resolve()) if isinstance(strategy, str | Path) else dict(strategy)
+    tree = tree_of_mapping({"name": "One strategy", "market": str(market), "strategy": given, **words}, "study")
+    study, faults = read_study(tree, Path("."))
+    if study is None:
+        raise StudyError(capped(faults))
+    from dataclasses import replace
+
+    return replace(study, name=study.variants[0][0]) if "name" not in words else study
