@@ -12,7 +12,7 @@ FEE = 1.23
 
 
 def random_log_builder(seed: int, sessions: int = 12) -> Builder:
-    """A bookkeeper after a random life: collars bought, rolled, split, paid, called, put, cut or left open."""
+    """A bookkeeper after a random life: collars bought, rolled, split, called, put, cut or left open."""
     dice = random.Random(seed)
     book = Builder(sessions=sessions, opening_cash=250_000.0)
     spots = [40.0, 90.0]

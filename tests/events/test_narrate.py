@@ -55,8 +55,8 @@ def test_sentences_of_the_account() -> None:
         "2011-01-03: The price history of ELM ends.",
         "2011-01-03: ELM was split, 2 new shares for one old.",
         "2011-01-03: 200 shares of ELM owed a dividend of 0.1000 a share: 20.00 paid.",
-        "2011-01-03: 2 contracts of the hedge, a put, struck at 9.00 to 2011-01-07 on ELM were exercised with "
-        "the stock at 8.00, settled at 1.0000 (expiry): 200.00 received.",
+        "2011-01-03: 2 contracts of the hedge, a put, struck at 9.00 to 2011-01-07 on ELM were exercised "
+        "with the stock at 8.00, settled at 1.0000 (expiry): 200.00 received.",
     ]
 
 

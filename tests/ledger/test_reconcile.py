@@ -13,8 +13,9 @@ from builders import Builder, collar_that_is_called
 from hedgerow.errors import ReconcileError
 from hedgerow.events.log import EventLog
 from hedgerow.kernels import layout as at
-from hedgerow.ledger import Ledger, reconcile
+from hedgerow.ledger import Ledger
 from hedgerow.ledger.postings import is_trade
+from hedgerow.ledger.reconcile import reconcile
 from random_logs import random_log_builder
 
 SEEDS = some.integers(0, 10**6)

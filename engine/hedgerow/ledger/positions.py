@@ -93,7 +93,7 @@ def trades_frame(postings: Postings) -> pd.DataFrame:
 def capital_tied_up(log: EventLog) -> Floats:
     """Return the money (P,) a position ties up: what a return is a fraction of.
 
-    The net debit and what is set aside for what could be owed. For shares that are paid for it is the net debit;
+    The net debit and what is set aside for what could be owed: for shares that are paid for the net debit,
     for a cash-secured put the strike less the premium. NaN when it is not positive.
     """
     tied = log.terms["net_debit"] + log.terms["reserve"]
