@@ -1,4 +1,4 @@
-"""Estimators of volatility against published values: a textbook's example, efficiencies, weights, recursion."""
+"""Estimators of volatility against published values: an example, efficiencies, weights, a recursion."""
 
 from __future__ import annotations
 
@@ -91,8 +91,8 @@ def simulated(overnight_share: float) -> Bars:
 def test_efficiency_within_a_session(name: str, published: float) -> None:
     """Variance of one squared return (2, closed form) over that of the estimate, on 120,000 sessions.
 
-    Parkinson 1980: 4.91 exactly (5.2 is often quoted); Garman & Klass 1980: 7.4; Rogers & Satchell 1991: about
-    6. The sampling error of such a ratio is about 1 %; a band of 4 % keeps the three apart.
+    Parkinson 1980: 4.91 exactly (5.2 is often quoted); Garman & Klass 1980: 7.4; Rogers & Satchell 1991:
+    about 6. The sampling error of such a ratio is about 1 %; a band of 4 % keeps the three apart.
     """
     variance = named_estimator(name).function(simulated(0.0), 1.0).variance
     assert variance.mean() == pytest.approx(1.0, abs=0.01)
@@ -119,7 +119,7 @@ def test_efficiency_of_yang_and_zhang(overnight_share: float, published: float) 
 
 
 def test_estimates_within_the_session_miss_what_happens_overnight() -> None:
-    """Closed form: with a quarter of the variance overnight, Parkinson finds three quarters; Yang-Zhang all."""
+    """Closed form: with a quarter of the variance overnight Parkinson finds three quarters of it."""
     bars = simulated(0.25)
     for name, share in (("parkinson", 0.75), ("yang_zhang", 1.0)):
         assert named_estimator(name).function(bars, 10.0).variance[-1].mean() == pytest.approx(
@@ -130,7 +130,7 @@ def test_estimates_within_the_session_miss_what_happens_overnight() -> None:
 def test_decay_of_riskmetrics() -> None:
     """Variance = .94 variance + .06 return^2 (RiskMetrics 1996), exactly once the start is forgotten."""
     rng = np.random.default_rng(1996)
-    returns: Floats = rng.normal(0.0, 0.01, (800, 1))
+    returns = rng.normal(0.0, 0.01, (800, 1))
     blank = np.zeros_like(returns)
     bars = Bars(returns=returns, overnight=blank, up=blank, down=blank, within=blank)
     variance = named_estimator("ewma").function(bars, 0.94).variance[:, 0]

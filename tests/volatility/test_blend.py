@@ -80,7 +80,7 @@ def test_a_report_after_the_data_leaves_nothing_out() -> None:
 
 
 def test_total_returns_by_hand() -> None:
-    """Hand-worked: 2-for-1 from 100 to 49 with .5 a new share: (49 + .5) x 2 = 99 over 100; a hole is no move."""
+    """Hand-worked: 2-for-1 from 100 to 49 with .5 a new share is (49 + .5) x 2 = 99 over 100."""
     close: Floats = np.array([[100.0], [49.0], [np.nan], [50.0]])
     split, cash = np.ones((4, 1)), np.zeros((4, 1))
     split[1], cash[1] = 2.0, 0.5

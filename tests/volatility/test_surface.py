@@ -62,7 +62,7 @@ def test_parity_holds_at_every_strike(days: int) -> None:
     ],
 )
 def test_a_smile_that_crosses_prices_is_refused(model: SurfaceModel, right: int) -> None:
-    """Negative control: prices of the refused smile do cross, and the message names tenor, level and strike."""
+    """Negative control: prices of the refused smile cross; the message names tenor, level and strike."""
     market = random_market(1)
     with pytest.raises(StudyError) as caught:
         build(model, market)

@@ -107,6 +107,8 @@ def test_all_faults_come_in_one_pass_with_their_places() -> None:
         surface_words(load(text, "study.yaml"), "study.yaml")
     places = {(fault.line, fault.column) for fault in caught.value.faults}
     assert places == {(1, 22), (2, 1), (3, 1), (4, 1)}
+    with pytest.raises(StudyError, match=r"^study.yaml:2:1: volatility.floor: the floor"):
+        surface_words(load("cap: 20%\nfloor: 40%\n", "study.yaml"), "study.yaml")
     assert all(str(fault).startswith("study.yaml:") for fault in caught.value.faults)
 
 

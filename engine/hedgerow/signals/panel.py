@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from functools import cached_property
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -93,7 +94,9 @@ class Panel:
         if key not in self._found:
             found = evaluated(chosen, self if of is None else self.of(of), params)
             if of is not None:
-                found = np.ascontiguousarray(found[:, np.zeros(len(self.market.symbols), dtype=np.int64)])
+                wide: NDArray[Any] = np.empty(self.has_bar.shape, dtype=found.dtype)
+                wide[:] = found
+                found = wide
             found.flags.writeable = False
             self._found[key] = found
         return self._found[key]

@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 import re
 from collections.abc import Callable, Mapping
+from dataclasses import replace
 from typing import Annotated, Any
 
 from pydantic import BaseModel, BeforeValidator, ConfigDict, ValidationError, create_model
@@ -130,7 +131,10 @@ def surface_words(words: object, where: str = ".".join(_PLACE)) -> SurfaceModel:
         read = SurfaceWords.model_validate(plain)
     except ValidationError as error:
         raise StudyError([_fault(dict(detail), node, where) for detail in error.errors()]) from None
-    return _model(read)
+    try:
+        return _model(read)
+    except StudyError as error:
+        raise StudyError([_placed(fault, node, where) for fault in error.faults]) from None
 
 
 def _model(read: BaseModel) -> SurfaceModel:
@@ -141,12 +145,19 @@ def _model(read: BaseModel) -> SurfaceModel:
     values = {name: getattr(base, name) for name in RANGES} | {"observed": NONE, "terms": base.terms}
     if given.get("observed", NONE) != NONE:
         values["report_moves"] = 1.0
-    if terms:
+    if terms is not None:
         values["terms"] = tuple(terms)
     values |= {name: value for name, value in given.items() if value is not None}
     for name in ("history", "anchor"):
         values[name] = int(values[name])
     return SurfaceModel(**values)
+
+
+def _placed(fault: Fault, node: Node | None, where: str) -> Fault:
+    """Give a fault of the finished model the place of its word."""
+    name = fault.where.rpartition(".")[2]
+    line, column = _place_of([name], node)
+    return replace(fault, where=where, line=line, column=column, found=f"volatility.{name}: {fault.found}")
 
 
 def _fault(detail: dict[str, Any], node: Node | None, where: str) -> Fault:
