@@ -203,3 +203,14 @@ def test_empty_log_adds_up() -> None:
     assert len(ledger.trades) == len(ledger.legs) == len(ledger.marks) == 0
     assert ledger.equity["equity"].to_list() == [100_000.0]
     assert ledger.by_day["deposits"].to_list() == [100_000.0]
+
+
+def test_frames_without_rows_have_the_same_columns() -> None:
+    """Compares the types of every frame of an account that never traded with those of one that did."""
+    book = Builder()
+    book.night()
+    none, some_rows = Ledger(book.log()), Ledger(collar_that_is_called().log())
+    for name in ("trades", "legs", "equity", "marks", "by_position"):
+        empty, full = getattr(none, name), getattr(some_rows, name)
+        assert empty.dtypes.to_dict() == full.dtypes.to_dict(), name
+    assert none.log.to_frame().dtypes.to_dict() == some_rows.log.to_frame().dtypes.to_dict()

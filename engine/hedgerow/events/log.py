@@ -143,12 +143,19 @@ class EventLog:
         }
         for name in ("quantity", "price", "mid", "fee", "cash", "strike", "spot", "volatility"):
             columns[name] = np.array(events[name])
-        return pd.DataFrame(columns)
+        return frame_of(columns)
 
     def leg_column(self, legs: NDArray[Any]) -> NDArray[np.object_]:
         """Return the word of each leg code of an array."""
         names = self.meta.leg_names
         return words_by_code([leg_word(leg, names) for leg in range(-2, max(len(names), 1))], legs, 2)
+
+
+def frame_of(columns: Mapping[str, Any]) -> pd.DataFrame:
+    """Return a frame of columns; words are text columns even where there are no rows."""
+    frame = pd.DataFrame(columns)
+    words = [name for name, kind in frame.dtypes.items() if kind == np.dtype(object)]
+    return frame.astype(dict.fromkeys(words, "str"))
 
 
 def words_by_code(words: Iterable[str], codes: NDArray[Any], offset: int) -> NDArray[np.object_]:

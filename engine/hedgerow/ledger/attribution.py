@@ -6,7 +6,7 @@ import numpy as np
 import pandas as pd
 from numpy.typing import NDArray
 
-from hedgerow.events.log import EventLog, words_by_code
+from hedgerow.events.log import EventLog, frame_of, words_by_code
 from hedgerow.kernels.layout import MAX_LEGS
 from hedgerow.ledger.marks import LEG_FIELDS, complete, last_values
 from hedgerow.ledger.postings import ACCOUNT, COSTS, DIVIDENDS, INTEREST, LEG, STOCK, Postings
@@ -36,7 +36,7 @@ def by_position(postings: Postings) -> pd.DataFrame:
         **_parts(log, cents / CENTS, [LEG + number for number in range(len(log.meta.legs))]),
         "pnl": cents[:, :ACCOUNT].sum(axis=1) / CENTS,
     }
-    return pd.DataFrame(columns)
+    return frame_of(columns)
 
 
 def by_day(postings: Postings) -> pd.DataFrame:
@@ -65,7 +65,7 @@ def by_day(postings: Postings) -> pd.DataFrame:
         "deposits": money[:, ACCOUNT],
         "change": _change(log.days["equity"]),
     }
-    return pd.DataFrame(columns)
+    return frame_of(columns)
 
 
 def by_month(postings: Postings) -> pd.DataFrame:

@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 import pandas as pd
 
-from hedgerow.events.log import EventLog
+from hedgerow.events.log import EventLog, frame_of
 
 __all__ = ["EQUITY_COLUMNS", "equity_frame"]
 
@@ -21,4 +21,4 @@ def equity_frame(log: EventLog) -> pd.DataFrame:
     }
     for name in ("cash", "stock", "options", "reserved", "equity"):
         columns[name] = np.array(log.days[name])
-    return pd.DataFrame(columns)
+    return frame_of(columns)

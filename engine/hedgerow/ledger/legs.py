@@ -8,7 +8,7 @@ import numpy as np
 import pandas as pd
 from numpy.typing import NDArray
 
-from hedgerow.events.log import EventLog, dates_of, words_by_code
+from hedgerow.events.log import EventLog, dates_of, frame_of, words_by_code
 from hedgerow.kernels import layout as at
 from hedgerow.ledger.lives import SLOTS, Holdings, hold
 from hedgerow.ledger.marks import last_values
@@ -54,11 +54,9 @@ def legs_frame(postings: Postings, holdings: Holdings | None = None) -> pd.DataF
     """
     held = holdings or hold(postings)
     own = np.flatnonzero(held.slot % SLOTS > 0)
-    if not own.size:
-        return pd.DataFrame({name: pd.Series(dtype=object) for name in LEG_COLUMNS})
     life = held.life[own]
-    starts = np.flatnonzero(np.concatenate(([True], life[1:] != life[:-1])))
-    ends = np.concatenate((starts[1:], [life.size])) - 1
+    starts = np.searchsorted(life, np.unique(life), side="left")
+    ends = np.searchsorted(life, life[starts], side="right") - 1
     group = np.repeat(np.arange(starts.size), ends - starts + 1)
     frame = _rows(postings, held, own, (starts, ends, group))
     return frame.sort_values(["_first", "position", "leg"], ignore_index=True)[LEG_COLUMNS]
@@ -82,7 +80,7 @@ def _rows(postings: Postings, held: Holdings, own: Ints, lives: tuple[Ints, Ints
     dates = log.meta.dates.astype("datetime64[s]")
     closed = dates[last["session"]]
     closed[open_now] = np.datetime64("NaT")
-    return pd.DataFrame(
+    return frame_of(
         {
             "variant": np.full(starts.size, log.meta.variant, dtype=object),
             "symbol": words_by_code(log.meta.symbols, first["symbol"], 0),
@@ -125,7 +123,7 @@ def _fills(postings: Postings, event: Ints, group: Ints, starts: Ints) -> tuple[
         return np.asarray(np.divide(total, weight, out=np.full(count, np.nan), where=weight > 0))
 
     opened = np.bincount(group, weights=np.where(adds, quantity, 0.0), minlength=count)
-    return np.asarray(opened), average(adds), average(~adds)
+    return np.asarray(opened, dtype=np.float64), average(adds), average(~adds)
 
 
 def _held_now(postings: Postings, after: Floats, starts: Ints, event: Ints) -> Floats:

@@ -6,7 +6,7 @@ import numpy as np
 import pandas as pd
 from numpy.typing import NDArray
 
-from hedgerow.events.log import EventLog, words_by_code
+from hedgerow.events.log import EventLog, frame_of, words_by_code
 from hedgerow.kernels.layout import MAX_LEGS
 
 __all__ = ["LEG_FIELDS", "complete", "last_values", "marks_frame", "position_rows", "rows_of"]
@@ -65,4 +65,4 @@ def marks_frame(log: EventLog) -> pd.DataFrame:
     }
     for name, field in zip(log.meta.leg_names, LEG_FIELDS, strict=False):
         columns[name] = np.array(marks[field])
-    return pd.DataFrame(columns)
+    return frame_of(columns)

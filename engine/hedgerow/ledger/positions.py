@@ -9,7 +9,7 @@ import pandas as pd
 from numpy.typing import NDArray
 
 from hedgerow.events import kinds
-from hedgerow.events.log import EventLog, words_by_code
+from hedgerow.events.log import EventLog, frame_of, words_by_code
 from hedgerow.kernels import layout as at
 from hedgerow.ledger.marks import last_values
 from hedgerow.ledger.postings import COSTS, DIVIDENDS, INTEREST, LEG, STOCK, Postings
@@ -87,7 +87,7 @@ def trades_frame(postings: Postings) -> pd.DataFrame:
     }
     for name in ("lots", "shares", "net_debit", "best_gain", "worst_loss", "break_even", "odds_of_best"):
         columns[name] = np.array(terms[name])
-    return pd.DataFrame(columns)[TRADE_COLUMNS]
+    return frame_of(columns)[TRADE_COLUMNS]
 
 
 def capital_tied_up(log: EventLog) -> Floats:
