@@ -11,7 +11,7 @@ from __future__ import annotations
 
 import math
 
-from hedgerow.kernels.boundary import Problem, exercise_depths, exercise_premium, top_of
+from hedgerow.kernels.boundary import Problem, exercise_depths, exercise_premium, is_exercised, top_of
 from hedgerow.kernels.jit import compiled
 from hedgerow.kernels.layout import CALL, PUT
 from hedgerow.kernels.lognormal import discount, european, intrinsic, is_certain
@@ -54,7 +54,7 @@ def _put_bound(
 ) -> float:
     """Bound what early exercise can add to a put, money per share; see `early_exercise_bound`."""
     if is_certain(spot, strike, years, volatility):
-        return max(strike, 0.0)
+        return max(strike, 0.0) * max(discount(rate, years), 1.0)
     most = rate if dividend_yield >= 0.0 else rate - dividend_yield
     if most <= 0.0:
         return 0.0
@@ -121,7 +121,7 @@ def _put(
     problem = Problem(years, rate, dividend_yield, volatility, top_of(rate, dividend_yield))
     depths = exercise_depths(problem)
     log_moneyness = math.log(spot / strike)
-    if log_moneyness <= problem.top - depths[-1] * math.sqrt(years):
+    if is_exercised(log_moneyness, depths, problem):
         return max(gain, plain)
     extra = strike * exercise_premium(log_moneyness, 0.0, depths, problem)
     return max(plain + min(extra, most), gain)
@@ -185,7 +185,7 @@ def put_exercise_is_due(
     if rate <= 0.0 or european(PUT, spot, strike, years, rate, dividend_yield, volatility) > gain:
         return False
     problem = Problem(years, rate, dividend_yield, volatility, top_of(rate, dividend_yield))
-    return math.log(spot / strike) <= problem.top - exercise_depths(problem)[-1] * math.sqrt(years)
+    return is_exercised(math.log(spot / strike), exercise_depths(problem), problem)
 
 
 @compiled

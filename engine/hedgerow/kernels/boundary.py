@@ -26,7 +26,7 @@ from hedgerow.kernels.layout import Floats
 from hedgerow.kernels.lognormal import discount
 from hedgerow.kernels.normal import ONE_OVER_ROOT_TWO_PI, cdf
 
-__all__ = ["Problem", "exercise_depths", "exercise_premium", "top_of"]
+__all__ = ["Problem", "exercise_depths", "exercise_premium", "is_exercised", "top_of"]
 
 NODES = 5  # times at which the boundary is known
 INNER = 7  # points of the integrals in N and D
@@ -66,7 +66,7 @@ _HALF_OUT, _WEIGHT_OUT = _half_rule(OUTER)
 
 
 def _inner_tables() -> tuple[Floats, Floats]:
-    """Make weights (node, point, node) that turn scaled depths into depth / sqrt(time), from known nodes or all."""
+    """Make weights (node, point, node) to depth / sqrt(time), from known nodes and from all."""
     marching = np.zeros((NODES, INNER, NODES))
     together = np.zeros((NODES, INNER, NODES))
     for i in range(NODES):
@@ -90,7 +90,7 @@ _OUTWARD = _outer_table()
 
 @compiled
 def top_of(rate: float, dividend_yield: float) -> float:
-    """Take the logarithm of the boundary at expiry over the strike: 0, or ln(r/q) when the yield is above the rate."""
+    """Take ln(X/K), the boundary at expiry: 0, or ln(r/q) when the yield is above the rate."""
     return math.log(rate / dividend_yield) if dividend_yield > rate > 0.0 else 0.0
 
 
@@ -155,10 +155,10 @@ def _step(table: Floats, known: int, i: int, depths: Floats, problem: Problem) -
     d = carried + discount(carry, time) * cdf(d2 + deviation) + carry * scale * below
     d_slope = -carried * d2 / deviation + carry * scale * below_slope
     if not (n > 0.0 and d > 0.0):
-        return depths[i]
+        return float(depths[i])
     slope = max(1.0 - n_slope / n + d_slope / d, 0.2)
     better = depth + (log_b - math.log(n / d)) / slope
-    return min(max(better, 0.25 * depth), 4.0 * depth, _DEEPEST) / root
+    return float(min(max(better, 0.25 * depth), 4.0 * depth, _DEEPEST) / root)
 
 
 @compiled
@@ -182,6 +182,12 @@ def exercise_depths(problem: Problem) -> Floats:
         for i in range(NODES):
             depths[i] = better[i]
     return depths
+
+
+@compiled
+def is_exercised(log_moneyness: float, depths: Floats, problem: Problem) -> bool:
+    """Tell whether a price with ln(S/K) = `log_moneyness` stands at or under the boundary now."""
+    return bool(log_moneyness <= problem.top - depths[-1] * math.sqrt(problem.years))
 
 
 @compiled
