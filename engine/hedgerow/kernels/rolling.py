@@ -124,6 +124,16 @@ def trailing_extreme(values: Floats, window: int, sign: float) -> tuple[Floats, 
 
 
 @compiled
+def _below(values: Floats, today: float) -> float:
+    """How many values lie below today's, ties counted half; NaN neither lies below nor ties."""
+    lower, equal = 0, 0
+    for i in range(values.shape[0]):
+        lower += values[i] < today
+        equal += values[i] == today
+    return lower + 0.5 * equal
+
+
+@compiled
 def trailing_rank(values: Floats, window: int) -> tuple[Floats, Floats]:
     """Count of known values in each trailing `window`, and the share of the others that lie below today's.
 
@@ -133,19 +143,16 @@ def trailing_rank(values: Floats, window: int) -> tuple[Floats, Floats]:
     counts = np.zeros((sessions, symbols))
     ranks = np.full((sessions, symbols), np.nan)
     for s in range(symbols):
+        column = values[:, s].copy()
+        known = 0.0
         for t in range(sessions):
-            today = values[t, s]
-            known, below = 0.0, 0.0
-            for past in range(max(0, t - window + 1), t):
-                value = values[past, s]
-                if not math.isnan(value):
-                    known += 1.0
-                    below += 1.0 if value < today else (0.5 if value == today else 0.0)
+            if t >= window and not math.isnan(column[t - window]):
+                known -= 1.0
+            if not math.isnan(column[t]):
+                known += 1.0
+                if known > 1.0:
+                    ranks[t, s] = _below(column[max(0, t - window + 1) : t], column[t]) / (known - 1.0)
             counts[t, s] = known
-            if not math.isnan(today):
-                counts[t, s] = known + 1.0
-                if known > 0.0:
-                    ranks[t, s] = below / known
     return counts, ranks
 
 
