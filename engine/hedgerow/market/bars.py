@@ -145,7 +145,8 @@ def _codes(cells: Cells) -> tuple[list[str], Ints, list[Fault]]:
 def _joined(parts: list[tuple[list[str], Bars]]) -> Bars:
     names = tuple(sorted({name for names, _ in parts for name in names}))
     place = {name: index for index, name in enumerate(names)}
-    roles = list(dict.fromkeys(role for _, bars in parts for role in bars.values))
+    others = (role for _, bars in parts for role in bars.values)
+    roles = list(dict.fromkeys([*PRICES.must[1:], *others]))
     symbols = [np.array([place[n] for n in own] + [-1])[bars.symbol] for own, bars in parts]
     values = {
         role: np.concatenate(
@@ -166,27 +167,23 @@ def _joined(parts: list[tuple[list[str], Bars]]) -> Bars:
 
 @dataclass(frozen=True)
 class Axis:
-    """The sessions rows stand on: `ordinals` (T,), and the session of each ordinal from `first` on."""
+    """The sessions rows stand on: `ordinals` (T,), and each row's place among (T, N) laid out flat, (n,)."""
 
     ordinals: Ints
-    first: int
-    lookup: Ints
+    place: Ints
 
     @classmethod
-    def of(cls, ordinals: Ints) -> Axis:
-        """Return the axis of every day that occurs; at least one day is wanted."""
-        first = int(ordinals.min())
-        present = np.bincount(ordinals - first) > 0
-        return cls(np.flatnonzero(present) + first, first, np.cumsum(present) - 1)
-
-    def sessions(self, ordinals: Ints) -> Ints:
-        """Return the session of each ordinal, all of them on the axis."""
-        return self.lookup[ordinals - self.first]
+    def of(cls, bars: Bars) -> Axis:
+        """Return the axis of every day that occurs; at least one row is wanted."""
+        first = int(bars.ordinal.min())
+        present = np.bincount(bars.ordinal - first) > 0
+        session = (np.cumsum(present) - 1)[bars.ordinal - first]
+        return cls(np.flatnonzero(present) + first, session * len(bars.names) + bars.symbol)
 
 
-def grid(bars: Bars, axis: Axis, role: str, empty: float = np.nan) -> Floats:
-    """Return one role's numbers as (T, N), `empty` where there is no row."""
-    laid = np.full((len(axis.ordinals), len(bars.names)), empty)
+def grid(bars: Bars, axis: Axis, role: str) -> Floats:
+    """Return one role's numbers as (T, N), NaN where there is no row."""
+    laid = np.full((len(axis.ordinals), len(bars.names)), np.nan)
     if role in bars.values:
-        laid[axis.sessions(bars.ordinal), bars.symbol] = bars.values[role]
+        laid.ravel()[axis.place] = bars.values[role]
     return laid

@@ -48,14 +48,13 @@ def market_findings(market: Market, calendar: str = "") -> list[Finding]:
 
 def _by_symbol(market: Market, rows: Mask, code: str, severity: str, text: str) -> list[Finding]:
     """Return one finding for each symbol with rows; `{n}` of the text is how many, `{s}` the plural."""
-    counts = rows.sum(axis=0)
-    return [
-        Finding(
-            code, severity, market.symbols[i], iso(market.ordinals[rows[:, i].argmax()]), text.format(n=n)
-        )
-        for i, n in enumerate(counts)
-        if n
-    ]
+    findings = []
+    for index in np.flatnonzero(rows.any(axis=0)):
+        count = int(rows[:, index].sum())
+        day = iso(market.ordinals[rows[:, index].argmax()])
+        told = text.format(n=count, s="" if count == 1 else "s")
+        findings.append(Finding(code, severity, market.symbols[index], day, told))
+    return findings
 
 
 def _listed(ordinals: Ints) -> str:

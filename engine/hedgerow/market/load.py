@@ -124,7 +124,7 @@ def _known_symbols(draft: _Draft) -> None:
 
 def _built(draft: _Draft) -> Market:
     """Return the market of a draft: laid out, adjustments undone, findings sorted."""
-    axis = Axis.of(draft.bars.ordinal)
+    axis = Axis.of(draft.bars)
     names, dataset = draft.bars.names, draft.dataset
     prices = {role: grid(draft.bars, axis, role) for role in (*PRICES, "volume", "implied")}
     if dataset.recover is not None:

@@ -15,7 +15,7 @@ from hedgerow.kernels.layout import Floats, Ints
 
 LinesOf = Callable[[Ints], Ints]
 Telling = Callable[[str], tuple[str, str, str]]
-NOTHING = ("", "na", "n/a", "nan", "null", "none", "-", "--", "#n/a")
+NOTHING = ("", "na", "n/a", "nan", "null", "none", "-", "--", ".", "#n/a")
 _NUMBER = r"^[+-]?(\d+\.?\d*|\.\d+)([eE][+-]?\d+)?$"
 MOST_LISTED = 20
 

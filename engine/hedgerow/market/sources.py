@@ -43,7 +43,7 @@ class Source:
 
     def lines_of(self, rows: Ints) -> Ints:
         """Return the line of some rows, counted from 1; the row itself where there is no text."""
-        if self._text is None:
+        if self._text is None or len(rows) == 0:
             return np.asarray(rows, dtype=np.int64) + 1
         return self._lines[rows]
 
@@ -56,7 +56,8 @@ class Source:
     def _lines(self) -> Ints:
         text, delimiter, blank = self._text or ("", ",", 0)
         reader = csv.reader(io.StringIO(text, newline=""), delimiter=delimiter)
-        lines = [blank + reader.line_num for row in reader if len(row) == len(self.names)]
+        width = len(self.names)
+        lines = [blank + reader.line_num for row in reader if len(row) == width]
         return np.array(lines[1:], dtype=np.int64)
 
 
