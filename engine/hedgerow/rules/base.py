@@ -6,9 +6,27 @@ import math
 from collections.abc import Iterator, Mapping
 from typing import Any, ClassVar, Self
 
-from pydantic import BaseModel, ConfigDict, ModelWrapValidatorHandler, ValidationError, model_validator
+from pydantic import (
+    BaseModel,
+    ConfigDict,
+    GetJsonSchemaHandler,
+    ModelWrapValidatorHandler,
+    ValidationError,
+    model_validator,
+)
+from pydantic_core import CoreSchema
 
-from hedgerow.rules.words import Loose, Path, Scalar, WordsError, listed, shown, unknown_word
+from hedgerow.rules.words import (
+    Loose,
+    Path,
+    Scalar,
+    WordsError,
+    listed,
+    refuse,
+    refuse_all,
+    shown,
+    unknown_word,
+)
 
 END_WORDS = ("at_least", "at_most", "between")
 
@@ -39,13 +57,13 @@ def loosened(error: ValidationError) -> list[Loose]:
 class Words(BaseModel):
     """A mapping of the language: unknown words refused, values frozen, every fault gathered.
 
-    `one_of` holds groups of words of which exactly one must stand. Making one raises pydantic's
+    `one_of` holds words of which exactly one must stand. Making one raises pydantic's
     ValidationError; `loosened` turns it into faults.
     """
 
     model_config = ConfigDict(frozen=True, strict=True, extra="forbid", validate_default=False)
 
-    one_of: ClassVar[tuple[tuple[str, ...], ...]] = ()
+    one_of: ClassVar[tuple[str, ...]] = ()
 
     @classmethod
     def words(cls) -> tuple[str, ...]:
@@ -70,11 +88,12 @@ class Words(BaseModel):
             return value
         words = cls.words()
         if not isinstance(value, Mapping):
-            raise WordsError.one("shape", f"is {shown(value)}", f"allowed: a mapping of {listed(words)}")
+            refuse("shape", f"is {shown(value)}", f"allowed: a mapping of {listed(words)}")
         inner = {field.alias for field in cls.model_fields.values() if (field.alias or "").startswith("<")}
         known = {key: item for key, item in value.items() if key in words or key in inner}
         faults = [cls.stranger(key) for key in value if key not in known]
-        faults += [fault for group in cls.one_of for fault in _exactly_one(group, known)]
+        if cls.one_of:
+            faults += _exactly_one(cls.one_of, known)
         made: Self | None = None
         try:
             made = handler(known)
@@ -82,12 +101,29 @@ class Words(BaseModel):
             faults += loosened(error)
         faults += cls.judge(known, made)
         if faults or made is None:
-            raise WordsError(faults)
+            refuse_all(faults)
         return made
+
+    @classmethod
+    def __get_pydantic_json_schema__(
+        cls, schema: CoreSchema, handler: GetJsonSchemaHandler
+    ) -> dict[str, Any]:
+        reference = handler(schema)
+        model = handler.resolve_ref_schema(reference)
+        if cls.one_of:
+            model["oneOf"] = [{"required": [word]} for word in cls.one_of]
+        return reference
 
     def plain(self) -> dict[str, Any]:
         """The words again, as a mapping that reads back to an equal value; defaults are left out."""
-        return self.model_dump(mode="python", by_alias=True, exclude_defaults=True, exclude_none=True)
+        return dict(_lists(self.model_dump(by_alias=True, exclude_defaults=True, exclude_none=True)))
+
+
+def _lists(value: Any) -> Any:
+    """Tuples as lists, as a file would hold them."""
+    if isinstance(value, dict):
+        return {key: _lists(item) for key, item in value.items()}
+    return [_lists(item) for item in value] if isinstance(value, list | tuple) else value
 
 
 def _exactly_one(group: tuple[str, ...], raw: Mapping[Any, Any]) -> Iterator[Loose]:
@@ -104,7 +140,7 @@ def _exactly_one(group: tuple[str, ...], raw: Mapping[Any, Any]) -> Iterator[Loo
 def gathered(faults: list[Loose]) -> None:
     """Raise WordsError when there is any fault."""
     if faults:
-        raise WordsError(faults)
+        refuse_all(faults)
 
 
 class Bounds(BaseModel):
@@ -139,7 +175,7 @@ class Between(Scalar):
         if not isinstance(value, Mapping):
             example = f"such as {{{self.words[0]}: ...}}"
             allowed = f"allowed: a mapping of one of {listed(self.words)}, {example}"
-            raise WordsError.one("shape", f"is {shown(value)}", allowed)
+            refuse("shape", f"is {shown(value)}", allowed)
         faults = [unknown_word((str(key),), key, self.words) for key in value if key not in self.words]
         faults += _exactly_one(self.words, value)
         bounds = self.ends(value, faults)

@@ -20,8 +20,9 @@ from hedgerow.rules.words import (
     Loose,
     Name,
     Path,
-    WordsError,
     listed,
+    refuse,
+    refuse_all,
     shown,
     unknown_word,
 )
@@ -199,13 +200,11 @@ def _tag(value: Any) -> str | None:
 
 def _known(value: Any) -> Any:
     """The value again when its class can be told. Raises WordsError when no word of it is a condition."""
-    if _tag(value) is not None:
-        return value
-    if isinstance(value, Mapping) and value:
-        raise WordsError([unknown_word((str(key),), key, CONDITION_WORDS, "a condition") for key in value])
-    raise WordsError.one(
-        "shape", f"is {shown(value)}", f"allowed: a mapping of one of {listed(CONDITION_WORDS)}"
-    )
+    if _tag(value) is None and isinstance(value, Mapping) and value:
+        refuse_all([unknown_word((str(key),), key, CONDITION_WORDS, "a condition") for key in value])
+    elif _tag(value) is None:
+        refuse("shape", f"is {shown(value)}", f"allowed: a mapping of one of {listed(CONDITION_WORDS)}")
+    return value
 
 
 Condition: TypeAlias = Annotated[

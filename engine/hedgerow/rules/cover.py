@@ -80,8 +80,8 @@ def _covers(parts: Parts, bought: Leg, sold: Leg) -> bool:
 def outlasts(longer: Expiry | None, shorter: Expiry | None) -> bool:
     """Whether one rule's expiry can never come before the other's, chosen on the same day.
 
-    Rules of one cycle choose in the order of their days. Otherwise the worst cases are compared: each may miss
-    its days by the gap between expiries listed that far out, and by four days around holidays.
+    Rules of one cycle choose in the order of their days. Otherwise the worst cases are compared: each may
+    miss its days by the gap between expiries listed that far out, and by four days around holidays.
     """
     if longer is None or shorter is None or longer.days is None or shorter.days is None:
         return False

@@ -12,7 +12,7 @@ from dataclasses import dataclass
 from decimal import Decimal
 from typing import Any
 
-from hedgerow.rules.words import Scalar, WordsError, shown
+from hedgerow.rules.words import Scalar, refuse, shown
 
 __all__ = ["Number", "Percent", "Share", "Whole", "percent_text"]
 
@@ -57,16 +57,14 @@ class Percent(Scalar):
     def read(self, value: object) -> float:
         """The fraction. Raises WordsError for anything but a percent within the range."""
         if _bare_number(value):
-            raise WordsError.one(
-                "percent", f"is {shown(value)}, a bare number", self.allowed, f"write {value}%"
-            )
+            refuse("percent", f"is {shown(value)}, a bare number", self.allowed, f"write {value}%")
         match = _PERCENT.fullmatch(value) if isinstance(value, str) else None
         if match is None:
-            raise WordsError.one("percent", f"is {shown(value)}, which is no percent", self.allowed)
+            refuse("percent", f"is {shown(value)}, which is no percent", self.allowed)
         fraction = float(Decimal(match[1]) / 100) + 0.0
         inside = self.least < fraction < self.most if self.open_ends else self.least <= fraction <= self.most
         if not inside:
-            raise WordsError.one("range", f"is {shown(value)}", self.allowed)
+            refuse("range", f"is {shown(value)}", self.allowed)
         return fraction
 
     def write(self, value: float) -> str:
@@ -104,9 +102,9 @@ class Whole(Scalar):
         elif isinstance(value, str) and _WHOLE.fullmatch(value):
             number = int(value)
         if number is None:
-            raise WordsError.one("whole", f"is {shown(value)}, which is no whole number", self.allowed)
+            refuse("whole", f"is {shown(value)}, which is no whole number", self.allowed)
         if not self.least <= number <= self.most:
-            raise WordsError.one("range", f"is {shown(value)}", self.allowed)
+            refuse("range", f"is {shown(value)}", self.allowed)
         return number
 
     def json_schema(self) -> dict[str, Any]:
@@ -140,13 +138,11 @@ class Number(Scalar):
         if not _bare_number(value):
             sign = isinstance(value, str) and _PERCENT.fullmatch(value) is not None
             remedy = "leave the % sign out" if sign else ""
-            raise WordsError.one(
-                "number", f"is {shown(value)}, which is no plain number", self.allowed, remedy
-            )
+            refuse("number", f"is {shown(value)}, which is no plain number", self.allowed, remedy)
         number = float(str(value)) + 0.0
         inside = self.least < number < self.most if self.open_ends else self.least <= number <= self.most
         if not (math.isfinite(number) and inside):
-            raise WordsError.one("range", f"is {shown(value)}", self.allowed)
+            refuse("range", f"is {shown(value)}", self.allowed)
         return number
 
     def write(self, value: float) -> float | int:
@@ -172,19 +168,16 @@ class Share(Scalar):
 
     def read(self, value: object) -> float:
         """The fraction. Raises WordsError for anything but a part of a whole."""
-        match = _RATIO.fullmatch(value) if isinstance(value, str) else None
-        if match is None:
-            percent = Percent(0.0, 1.0)
-            try:
-                fraction = percent.read(value)
-            except WordsError:
-                raise WordsError.one(
-                    "share", f"is {shown(value)}, which is no part of a whole", self.allowed
-                ) from None
+        ratio = _RATIO.fullmatch(value) if isinstance(value, str) else None
+        percent = _PERCENT.fullmatch(value) if isinstance(value, str) else None
+        if ratio is not None:
+            fraction = int(ratio[1]) / int(ratio[2]) if int(ratio[2]) else 0.0
+        elif percent is not None:
+            fraction = float(Decimal(percent[1]) / 100)
         else:
-            fraction = int(match[1]) / int(match[2]) if int(match[2]) else 0.0
+            refuse("share", f"is {shown(value)}, which is no part of a whole", self.allowed)
         if not 0.0 < fraction <= 1.0:
-            raise WordsError.one("range", f"is {shown(value)}", self.allowed)
+            refuse("range", f"is {shown(value)}", self.allowed)
         return fraction
 
     def write(self, value: float) -> str:

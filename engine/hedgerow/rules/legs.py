@@ -16,7 +16,7 @@ __all__ = ["CYCLES", "STRIKE_RULES", "Expiry", "Leg", "Roll", "Spend", "Strike"]
 
 
 LEAST_DAYS = {"daily": 1, "weekly": 4, "monthly": 15, "quarterly": 46}
-"""The fewest days a cycle can serve: below half of its step the nearest expiry is often another length altogether."""
+"""The fewest days a cycle can serve: below half of its step the nearest expiry is often far from the wish."""
 
 CYCLES = tuple(LEAST_DAYS)
 
@@ -36,7 +36,7 @@ STRIKE_RULES = (
 class Expiry(Words):
     """When a leg expires: about `days` calendar days away on a listed cycle, or `with_leg` another leg."""
 
-    one_of: ClassVar[tuple[tuple[str, ...], ...]] = (("days", "with"),)
+    one_of: ClassVar[tuple[str, ...]] = ("days", "with")
 
     days: Annotated[int, Whole(1, 1100, "calendar days")] | None = None
     with_leg: Annotated[str, Name()] | None = Field(default=None, alias="with")
@@ -70,7 +70,7 @@ class Spend(Words):
 class Strike(Words):
     """Where the strike lies: exactly one rule, then `snap` to the listed grid."""
 
-    one_of: ClassVar[tuple[tuple[str, ...], ...]] = (STRIKE_RULES,)
+    one_of: ClassVar[tuple[str, ...]] = STRIKE_RULES
 
     from_spot: Annotated[float, Percent(-0.9, 5.0)] | None = None
     steps: Annotated[int, Whole(-50, 50, "listed steps from the money")] | None = None
@@ -120,7 +120,7 @@ class Roll(Words):
 class Leg(Words):
     """One option of the structure, per lot of 100 shares."""
 
-    one_of: ClassVar[tuple[tuple[str, ...], ...]] = (("sell", "buy"),)
+    one_of: ClassVar[tuple[str, ...]] = ("sell", "buy")
 
     name: Annotated[str, Name()] = Field(alias="<name>", exclude=True)
     sell: Annotated[str, Choice(("call", "put"))] | None = None

@@ -7,11 +7,20 @@ is addressed by its name (`exit.cut.if.loss.at_least: 3%`), an item of another l
 from __future__ import annotations
 
 from collections.abc import Iterable
-from typing import Any
+from typing import Any, NoReturn
 
 from hedgerow.rules.document import Place, Tree
 from hedgerow.rules.schema import Strategy
-from hedgerow.rules.words import UNKNOWN_WORD, Loose, Path, WordsError, unknown_name, unknown_word
+from hedgerow.rules.words import (
+    UNKNOWN_WORD,
+    Loose,
+    Path,
+    WordsError,
+    refuse,
+    refuse_all,
+    unknown_name,
+    unknown_word,
+)
 
 __all__ = ["changed", "override"]
 
@@ -68,7 +77,7 @@ def _remove(tree: Tree, path: Path, key_place: Place) -> None:
         parent = parent.get(step, {}) if isinstance(parent, dict) else parent[step]
     if isinstance(parent, dict):
         if path[-1] not in parent:
-            raise WordsError([unknown_word((), path[-1], parent, "what stands there")])
+            refuse_all([unknown_word((), path[-1], parent, "what stands there")])
         del parent[path[-1]]
         return
     at = int(path[-1])
@@ -109,24 +118,24 @@ def _resolved(plain: Any, address: str) -> Path:
             path.append(step)
             continue
         if plain is not None and not isinstance(plain, dict):
-            raise _nowhere(f"leads through `{path[-1]}`, which is a plain value")
+            _nowhere(f"leads through `{path[-1]}`, which is a plain value")
         word, _, rest = rest.partition(".")
         _check_word(tuple(path), word, plain, leaf=not rest)
         path.append(word)
         plain = plain.get(word) if isinstance(plain, dict) else None
     if not path or address.endswith("."):
-        raise _nowhere("is no path")
+        _nowhere("is no path")
     return tuple(path)
 
 
 def _check_word(path: Path, word: str, plain: Any, leaf: bool) -> None:
     if not path and word not in Strategy.words():
-        raise WordsError([unknown_word((), word, Strategy.words(), "a strategy")])
+        refuse_all([unknown_word((), word, Strategy.words(), "a strategy")])
     there = list(plain) if isinstance(plain, dict) else []
     if path == ("legs",) and not leaf and word not in there:
-        raise WordsError([unknown_name((), word, there, "leg of the strategy")])
+        refuse_all([unknown_name((), word, there, "leg of the strategy")])
     if path == ("exit",) and not there:
-        raise _nowhere("names an exit, and the strategy has none")
+        _nowhere("names an exit, and the strategy has none")
 
 
 def _item(items: list[Any], rest: str) -> tuple[int, str]:
@@ -136,12 +145,11 @@ def _item(items: list[Any], rest: str) -> tuple[int, str]:
         if isinstance(name, str) and (rest == name or rest.startswith(name + ".")):
             return at, rest[len(name) + 1 :]
     number, _, after = rest.partition(".")
-    if number.isdecimal() and 1 <= int(number) <= len(items):
-        return int(number) - 1, after
-    known: Iterable[str] = [name for name in names if isinstance(name, str)]
-    raise WordsError([unknown_name((), number, known, f"item of the list, which has {len(items)}")])
+    if not (number.isdecimal() and 1 <= int(number) <= len(items)):
+        known: Iterable[str] = [name for name in names if isinstance(name, str)]
+        refuse_all([unknown_name((), number, known, f"item of the list, which has {len(items)}")])
+    return int(number) - 1, after
 
 
-def _nowhere(found: str) -> WordsError:
-    allowed = "allowed: words with dots between, such as `legs.call.expiry.days`"
-    return WordsError.one("path", found, allowed)
+def _nowhere(found: str) -> NoReturn:
+    refuse("path", found, "allowed: words with dots between, such as `legs.call.expiry.days`")

@@ -30,7 +30,7 @@ from hedgerow.rules.condition import (
 from hedgerow.rules.figures import Number, Percent
 from hedgerow.rules.legs import Expiry, Leg, Roll, Spend, Strike
 from hedgerow.rules.signalwords import SignalTest, SignalValue
-from hedgerow.rules.words import Choice, Flag, Loose, Text, WordsError, shown
+from hedgerow.rules.words import Choice, Flag, Loose, Text, refuse, shown
 
 __all__ = [
     "Accept",
@@ -100,7 +100,7 @@ class ExitRule(Words):
 class Stop(Words):
     """A resting order in the stock: below entry for shares held, above entry for shares sold short."""
 
-    one_of: ClassVar[tuple[tuple[str, ...], ...]] = (("below_entry", "above_entry"),)
+    one_of: ClassVar[tuple[str, ...]] = ("below_entry", "above_entry")
 
     below_entry: Annotated[float, Percent(0.0, 1.0, open_ends=True)] | None = None
     above_entry: Annotated[float, Percent(0.0, 5.0, open_ends=True)] | None = None
@@ -131,7 +131,7 @@ def _legs(value: Any, handler: Any) -> Any:
     if isinstance(value, tuple):
         return handler(value)
     if not isinstance(value, Mapping):
-        raise WordsError.one("shape", f"is {shown(value)}", "allowed: a mapping of a name to each leg")
+        refuse("shape", f"is {shown(value)}", "allowed: a mapping of a name to each leg")
     legs, faults = read_legs(value)
     if len(value) > MOST_LEGS:
         found, allowed = f"has {len(value)} legs", f"allowed: at most {MOST_LEGS}"

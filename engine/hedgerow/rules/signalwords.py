@@ -10,7 +10,17 @@ from pydantic import BaseModel, ConfigDict, ModelWrapValidatorHandler, model_ser
 from hedgerow.errors import RulesError
 from hedgerow.rules.base import END_WORDS, Between, Bounds, gathered
 from hedgerow.rules.vocabulary import SignalWords, signal_names, signal_words
-from hedgerow.rules.words import Loose, Text, WordsError, listed, shown, unknown_name, unknown_word
+from hedgerow.rules.words import (
+    Loose,
+    Text,
+    WordsError,
+    listed,
+    refuse,
+    refuse_all,
+    shown,
+    unknown_name,
+    unknown_word,
+)
 
 __all__ = ["SignalTest", "SignalValue"]
 
@@ -44,15 +54,13 @@ class SignalValue(BaseModel):
         if isinstance(value, cls):
             return value
         if not isinstance(value, Mapping):
-            raise WordsError.one(
-                "shape", f"is {shown(value)}", "allowed: a mapping such as {signal: NAME, ...}"
-            )
+            refuse("shape", f"is {shown(value)}", "allowed: a mapping such as {signal: NAME, ...}")
         if "params" in value:  # fields already read: made from Python
             return handler(value)
         name = value.get("signal")
         words = signal_words(name) if isinstance(name, str) else None
         if words is None:
-            raise WordsError([_no_signal(value, name)])
+            refuse_all([_no_signal(value, name)])
         faults: list[Loose] = []
         fields = cls.fields(value, words, faults)
         gathered(faults)

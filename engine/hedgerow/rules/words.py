@@ -9,7 +9,7 @@ from __future__ import annotations
 import re
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, replace
-from typing import Any
+from typing import Any, NoReturn
 
 from pydantic import GetCoreSchemaHandler, GetJsonSchemaHandler
 from pydantic_core import CoreSchema, core_schema
@@ -27,6 +27,8 @@ __all__ = [
     "Text",
     "WordsError",
     "listed",
+    "refuse",
+    "refuse_all",
     "shown",
     "unknown_name",
     "unknown_word",
@@ -58,10 +60,15 @@ class WordsError(ValueError):
         self.faults: tuple[Loose, ...] = tuple(faults)
         super().__init__("; ".join(f"{_dotted(f.path)} {f.found} {f.allowed}".strip() for f in self.faults))
 
-    @classmethod
-    def one(cls, code: str, found: str, allowed: str = "", remedy: str = "") -> WordsError:
-        """A refusal of the value itself, with a single fault."""
-        return cls([Loose((), code, found, allowed, remedy)])
+
+def refuse(code: str, found: str, allowed: str = "", remedy: str = "") -> NoReturn:
+    """Raise WordsError for the value itself, with a single fault."""
+    refuse_all([Loose((), code, found, allowed, remedy)])
+
+
+def refuse_all(faults: Iterable[Loose]) -> NoReturn:
+    """Raise WordsError with several faults."""
+    raise WordsError(faults)
 
 
 def _dotted(path: Path) -> str:
@@ -150,10 +157,10 @@ class Text(Scalar):
         """The text with its blanks made single. Raises WordsError for anything but text."""
         if not isinstance(value, str):
             remedy = "put it in quotes" if isinstance(value, bool | int | float) else ""
-            raise WordsError.one("text", f"is {shown(value)} where text is wanted", self.allowed, remedy)
+            refuse("text", f"is {shown(value)} where text is wanted", self.allowed, remedy)
         text = " ".join(value.split())
         if not 1 <= len(text) <= self.most_letters or not text.isprintable():
-            raise WordsError.one("text", f"is {shown(value)}", self.allowed)
+            refuse("text", f"is {shown(value)}", self.allowed)
         return text
 
     def json_schema(self) -> dict[str, Any]:
@@ -171,7 +178,7 @@ class Name(Scalar):
     def read(self, value: object) -> str:
         """The name. Raises WordsError for anything but a leg's name."""
         if not isinstance(value, str) or not re.fullmatch(self.pattern, value) or value != value.strip():
-            raise WordsError.one("name", f"is {shown(value)}, which is no name of a leg", self.allowed)
+            refuse("name", f"is {shown(value)}, which is no name of a leg", self.allowed)
         return value
 
     def json_schema(self) -> dict[str, Any]:
@@ -195,7 +202,7 @@ class Choice(Scalar):
         if isinstance(value, str) and value in self.words:
             return value
         near = nearest_word(value, self.words) if isinstance(value, str) else ""
-        raise WordsError.one("choice", f"is {shown(value)}", self.allowed, near)
+        refuse("choice", f"is {shown(value)}", self.allowed, near)
 
     def json_schema(self) -> dict[str, Any]:
         """The words, for completion."""
@@ -216,7 +223,7 @@ class Flag(Scalar):
             return False
         allowed = "allowed: `true`" if self.only_true else "allowed: `true`, `false`"
         remedy = "leave the word out where it is not wanted" if self.only_true else ""
-        raise WordsError.one("flag", f"is {shown(value)}", allowed, remedy)
+        refuse("flag", f"is {shown(value)}", allowed, remedy)
 
     def json_schema(self) -> dict[str, Any]:
         """A boolean."""

@@ -2,30 +2,31 @@
 
 from __future__ import annotations
 
+import os
 from collections.abc import Mapping
-from dataclasses import dataclass, field
+from dataclasses import asdict, dataclass, field, replace
 from pathlib import Path
 from typing import Any
 
 from pydantic import ValidationError
 
-from hedgerow.errors import Fault, InputError, StudyError
+from hedgerow.errors import Fault, StudyError
 from hedgerow.kernels.layout import Costs
+from hedgerow.market.sessions import Regime
 from hedgerow.rules.base import loosened
 from hedgerow.rules.document import Tree, tree_of_file, tree_of_mapping
+from hedgerow.rules.figures import percent_text
 from hedgerow.rules.load import read_strategy
 from hedgerow.rules.overrides import changed
 from hedgerow.rules.schema import Strategy
 from hedgerow.rules.words import Loose, shown
 from hedgerow.study.words import AccountWords, CostWords, StudyWords
 from hedgerow.textfile import capped
-from hedgerow.volatility.model import SurfaceModel
+from hedgerow.volatility.model import RANGES, SurfaceModel
 from hedgerow.walk.account import Account
 from hedgerow.yamltext import Node
 
 __all__ = ["Study", "load_study", "read_study", "study_of_strategy"]
-
-AS_IS: Mapping[str, Any] = {}
 
 
 @dataclass(frozen=True)
@@ -46,36 +47,44 @@ class Study:
     account: Account = field(default_factory=Account)
     surface: SurfaceModel = field(default_factory=SurfaceModel)
     costs: Costs = field(default_factory=lambda: CostWords().costs())
-    listings: str = "modern"
+    listings: Regime = "modern"
     yardstick: str = "buy and hold"
     seed: int = 1
     path: Path | None = None
 
     def plain(self) -> dict[str, Any]:
-        """Everything resolved as a mapping for people and programs: strategies whole, defaults filled in."""
-        account = AccountWords.model_construct(**{name: getattr(self.account, name) for name in _ACCOUNT})
-        return {
+        """Everything resolved, as a mapping that `load_study` reads back to an equal study.
+
+        Strategies stand in it whole, defaults are filled in, and the market's path is as it was resolved.
+        """
+        account = AccountWords.model_construct(**asdict(self.account))
+        window = {"from": self.first, "to": self.last}
+        plain: dict[str, Any] = {
             "name": self.name,
             "question": self.question,
             "market": str(self.market),
             "symbols": "all" if self.symbols is None else list(self.symbols),
-            "window": {"from": self.first, "to": self.last},
+            "window": {word: day for word, day in window.items() if day is not None},
             "account": account.model_dump(),
             "pricing": {"volatility": _surface_plain(self.surface), "listings": self.listings},
-            "costs": self.costs._asdict(),
-            "variants": {name: strategy.plain() for name, strategy in self.variants},
+            "costs": CostWords.of(self.costs).model_dump(),
+            "variants": {name: {"strategy": strategy.plain()} for name, strategy in self.variants},
             "yardstick": self.yardstick,
             "seed": self.seed,
         }
-
-
-_ACCOUNT = ("cash", "per_position", "most_positions", "most_new_a_day", "interest")
+        return {word: value for word, value in plain.items() if value != ""}
 
 
 def _surface_plain(surface: SurfaceModel) -> dict[str, Any]:
-    from dataclasses import asdict
-
-    return asdict(surface)
+    """The words of a surface; a history of 0 means the default and has no word."""
+    words: dict[str, Any] = {}
+    for name, limits in RANGES.items():
+        value = getattr(surface, name)
+        words[name] = percent_text(value) if limits.percent else value
+    if surface.history == 0:
+        del words["history"]
+    blend = [{term.estimator: term.parameter, "weight": term.weight} for term in surface.terms]
+    return words | {"blend": blend, "observed": surface.observed}
 
 
 def load_study(source: str | Path | Mapping[str, Any], base: str | Path | None = None) -> Study:
@@ -124,7 +133,7 @@ def _study(
 ) -> Study:
     return Study(
         name=words.name,
-        market=folder / words.market,
+        market=Path(os.path.normpath(folder / words.market)),
         variants=tuple(variants),
         question=words.question or "",
         symbols=words.chosen,
@@ -133,7 +142,7 @@ def _study(
         account=words.account.account(),
         surface=surface,
         costs=words.costs.costs(),
-        listings=words.pricing.listings,
+        listings="historical" if words.pricing.listings == "historical" else "modern",
         yardstick=words.yardstick,
         seed=words.seed,
         path=path,
@@ -167,11 +176,11 @@ def _variants(tree: Tree, folder: Path) -> tuple[list[tuple[str, Strategy]], lis
     """Every variant's strategy, and the faults of all of them."""
     given = tree.plain.get("variants")
     names = list(given) if isinstance(given, dict) else []
+    found: list[tuple[str, Strategy]] = []
+    faults: list[Fault] = []
     if not names:
         strategy, faults = _strategy(tree, ("strategy",), folder, None)
         return ([] if strategy is None else [(strategy.name, strategy)]), faults
-    found: list[tuple[str, Strategy]] = []
-    faults: list[Fault] = []
     for name in names:
         if not isinstance(given[name], dict):
             continue  # told with the words of the study
@@ -208,18 +217,16 @@ def _strategy(
     return read_strategy(base)
 
 
-def study_of_strategy(
-    strategy: str | Path | Mapping[str, Any], market: str | Path, **words: Any
-) -> Study:
+def study_of_strategy(strategy: str | Path | Mapping[str, Any], market: str | Path, **words: Any) -> Study:
     """The study that a strategy alone stands for, on a market, with the defaults or other `words` of a study.
 
     Raises StudyError with every fault of the strategy and the words.
     """
     given = str(Path(strategy).resolve()) if isinstance(strategy, str | Path) else dict(strategy)
-    tree = tree_of_mapping({"name": "One strategy", "market": str(market), "strategy": given, **words}, "study")
+    tree = tree_of_mapping(
+        {"name": "One strategy", "market": str(market), "strategy": given, **words}, "study"
+    )
     study, faults = read_study(tree, Path("."))
     if study is None:
         raise StudyError(capped(faults))
-    from dataclasses import replace
-
     return replace(study, name=study.variants[0][0]) if "name" not in words else study

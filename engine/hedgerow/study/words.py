@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import datetime as dt
 from collections.abc import Mapping
-from typing import Annotated, Any, ClassVar, Self
+from typing import Annotated, Any, Self
 
 from pydantic import Field, GetCoreSchemaHandler, GetJsonSchemaHandler
 from pydantic_core import CoreSchema, core_schema
@@ -12,7 +12,7 @@ from pydantic_core import CoreSchema, core_schema
 from hedgerow.kernels.layout import Costs
 from hedgerow.rules.base import Words
 from hedgerow.rules.figures import Number, Percent, Share, Whole
-from hedgerow.rules.words import Choice, Flag, Loose, Scalar, Text, WordsError, shown
+from hedgerow.rules.words import Choice, Flag, Loose, Scalar, Text, WordsError, refuse, shown
 from hedgerow.walk.account import DEFAULT_COSTS, NO_COSTS, Account
 
 __all__ = ["AccountWords", "CostWords", "Day", "PricingWords", "StudyWords", "WindowWords"]
@@ -37,7 +37,7 @@ class Day(Scalar):
         except ValueError:
             day = None
         if day is None or not 1900 <= day.year <= 2199:
-            raise WordsError.one("date", f"is {shown(value)}, which is no such date", self.allowed)
+            refuse("date", f"is {shown(value)}, which is no such date", self.allowed)
         return day.isoformat()
 
     def json_schema(self) -> dict[str, Any]:
@@ -71,9 +71,7 @@ class AccountWords(Words):
 
     def account(self) -> Account:
         """The account these words describe."""
-        return Account(
-            self.cash, self.per_position, self.most_positions, self.most_new_a_day, self.interest
-        )
+        return Account(self.cash, self.per_position, self.most_positions, self.most_new_a_day, self.interest)
 
 
 class CostWords(Words):
@@ -89,6 +87,12 @@ class CostWords(Words):
     assignment_fee: Annotated[float, _MONEY] = _D.assignment_fee
     slippage: Annotated[float, Percent(0.0, 0.1)] = _D.slippage
     borrow: Annotated[float, Percent(0.0, 5.0)] = _D.borrow
+
+    @classmethod
+    def of(cls, costs: Costs) -> CostWords:
+        """The words that describe costs."""
+        given = costs._asdict()
+        return cls.model_construct(whole_ticks=bool(given.pop("use_ticks")), **given)
 
     def costs(self) -> Costs:
         """The costs as the walk takes them."""
@@ -110,10 +114,9 @@ class _CostsOrNone:
 
 def _read_costs(value: Any, handler: Any) -> Any:
     if value == "none":
-        words = {name: getattr(NO_COSTS, name) for name in NO_COSTS._fields if name != "use_ticks"}
-        return CostWords.model_construct(whole_ticks=False, **words)
+        return CostWords.of(NO_COSTS)
     if not isinstance(value, Mapping | CostWords):
-        raise WordsError.one("shape", f"is {shown(value)}", "allowed: `none`, or a mapping of costs")
+        refuse("shape", f"is {shown(value)}", "allowed: `none`, or a mapping of costs")
     return handler(value)
 
 
@@ -125,9 +128,7 @@ class PricingWords(Words):
 
 
 class StudyWords(Words):
-    """A study file. `strategy` is a path or the strategy itself; every variant is a mapping of dotted paths."""
-
-    one_of: ClassVar[tuple[tuple[str, ...], ...]] = ()
+    """A study file. `strategy` is a path or the strategy itself; a variant is a mapping of dotted paths."""
 
     name: Annotated[str, Text(80)]
     question: Annotated[str, Text(2000)] | None = None
@@ -165,7 +166,9 @@ def _symbol_faults(symbols: Any) -> list[Loose]:
         except WordsError as error:
             faults += [fault.under("symbols", at) for fault in error.faults]
         if symbol in symbols[:at]:
-            faults.append(Loose(("symbols", at), "repeated", f"is {shown(symbol)} a second time", "", "take it out"))
+            faults.append(
+                Loose(("symbols", at), "repeated", f"is {shown(symbol)} a second time", "", "take it out")
+            )
     return faults
 
 

@@ -1,0 +1,167 @@
+"""Parts of a strategy as phrases in plain English: strikes, expiries, conditions, bounds."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+
+from hedgerow.rules.base import Bounds
+from hedgerow.rules.condition import (
+    AllOf,
+    AnyOf,
+    Condition,
+    DaysLeftTest,
+    GainTest,
+    HeldTest,
+    LegLostTest,
+    LossTest,
+    NotOf,
+    StockDownTest,
+    StockUpTest,
+)
+from hedgerow.rules.figures import percent_text
+from hedgerow.rules.legs import Expiry, Leg, Strike
+from hedgerow.rules.signalwords import SignalTest, SignalValue
+from hedgerow.signals import named_signal
+
+__all__ = ["bounds_phrase", "condition_phrase", "expiry_phrase", "joined", "leg_phrase", "signal_phrase"]
+
+_SNAPS = {
+    "nearest": "moved to the nearest listed strike",
+    "up": "moved up to a listed strike",
+    "down": "moved down to a listed strike",
+}
+
+
+def joined(parts: Sequence[str], word: str = "and") -> str:
+    """Phrases as a list in a sentence."""
+    if len(parts) < 2:
+        return "".join(parts)
+    return f"{', '.join(parts[:-1])} {word} {parts[-1]}"
+
+
+def leg_phrase(leg: Leg) -> str:
+    """A leg: side, count, right, name, expiry and strike."""
+    verb = "sell" if leg.sold else "buy"
+    count = "one" if leg.ratio == 1 else f"{leg.ratio:g}"
+    plural = "" if leg.ratio <= 1 else "s"
+    where = f"{expiry_phrase(leg.expiry)}, {strike_phrase(leg)}"
+    return f"{verb} {count} {leg.right}{plural} (`{leg.name}`), {where}"
+
+
+def expiry_phrase(expiry: Expiry) -> str:
+    """When a leg expires."""
+    if expiry.with_leg is not None:
+        return f"expiring with `{expiry.with_leg}`"
+    if expiry.choose == "at_least":
+        return f"expiring on the first listed {expiry.listed} date at least {expiry.days} days away"
+    return f"expiring on the listed {expiry.listed} date nearest to {expiry.days} days away"
+
+
+def strike_phrase(leg: Leg) -> str:
+    """Where a leg's strike lies and how it is moved to the listed grid."""
+    strike = leg.strike
+    if strike.same_as is not None:
+        return f"at the strike of `{strike.same_as}`"
+    if strike.steps == 0:
+        first = {"up": "first listed strike at or above", "down": "first listed strike at or below"}
+        return f"at the {first.get(strike.snap, 'listed strike nearest to')} the stock's price"
+    return f"{_rule(strike, leg.right)}, {_SNAPS[strike.snap]}"
+
+
+def _rule(strike: Strike, right: str) -> str:
+    beyond = "above" if right == "call" else "below"
+    phrases = {
+        "from_spot": lambda v: f"struck {_away(v, percent_text(abs(v)))}",
+        "steps": lambda v: f"struck {abs(v)} listed steps {_side(v)} the stock's price",
+        "delta": lambda v: f"at the strike whose delta is {v:g}",
+        "odds": lambda v: f"at the strike that the stock ends {beyond} with a chance of {percent_text(v)}",
+        "deviations": lambda v: f"struck {_away(v, f'{abs(v):g} standard deviations')}",
+        "spend": lambda v: (
+            f"at the strike whose premium is at most {percent_text(v.share)} of what `{v.of}` brings"
+        ),
+        "zero_cost_with": lambda v: f"at the strike that makes it and `{v}` cost nothing together",
+        "worst_loss_within": lambda v: (
+            f"at the strike that keeps the worst loss within {percent_text(v)} of the net debit"
+        ),
+    }
+    return phrases[strike.rule](getattr(strike, strike.rule))
+
+
+def _side(value: float) -> str:
+    return "above" if value > 0 else "below"
+
+
+def _away(value: float, size: str) -> str:
+    return "at the stock's price" if value == 0 else f"{size} {_side(value)} the stock's price"
+
+
+def bounds_phrase(bounds: Bounds, percent: bool) -> str:
+    """A range in words."""
+    low, high = (percent_text(end) if percent and math.isfinite(end) else f"{end:g}" for end in _ends(bounds))
+    if bounds.low == -math.inf:
+        return f"at most {high}"
+    if bounds.high == math.inf:
+        return f"at least {low}"
+    return f"between {low} and {high}"
+
+
+def _ends(bounds: Bounds) -> tuple[float, float]:
+    return bounds.low, bounds.high
+
+
+def signal_phrase(value: SignalValue) -> str:
+    """A signal with its parameters, of another symbol where one is named."""
+    phrase = named_signal(value.signal).words(value.arguments)
+    return phrase if value.of is None else f"on {value.of}, {phrase}"
+
+
+def condition_phrase(condition: Condition, inner: bool = False) -> str:
+    """A condition as a clause; joined ones inside others stand in parentheses."""
+    if isinstance(condition, AllOf | AnyOf):
+        word = "and" if isinstance(condition, AllOf) else "or"
+        parts = [condition_phrase(part, True) for part in condition.conditions]
+        text = f" {word} ".join(parts) if len(parts) < 3 else ", ".join(parts[:-1]) + f", {word} {parts[-1]}"
+        return f"({text})" if inner and len(parts) > 1 else text
+    if isinstance(condition, NotOf):
+        return f"it is not so that {condition_phrase(condition.condition, True)}"
+    if isinstance(condition, SignalTest):
+        return _signal_clause(condition)
+    return _position_clause(condition)
+
+
+def _signal_clause(test: SignalTest) -> str:
+    phrase = signal_phrase(test)
+    if test.days:
+        return f"{phrase} is {joined([day.capitalize() for day in test.days], 'or')}"
+    if test.bounds is None:
+        return phrase
+    number = named_signal(test.signal).number
+    return f"{phrase} is {bounds_phrase(test.bounds, number is not None and number.unit == 'fraction')}"
+
+
+def _position_clause(test: Condition) -> str:
+    if isinstance(test, GainTest):
+        of = "its net debit" if test.gain.of == "debit" else "the best gain it could make"
+        return f"the position has gained at least {percent_text(test.gain.at_least)} of {of}"
+    if isinstance(test, LossTest):
+        of = "its net debit" if test.loss.of == "debit" else "the worst loss it could make"
+        return f"the position has lost at least {percent_text(test.loss.at_least)} of {of}"
+    if isinstance(test, DaysLeftTest):
+        leg = test.days_left.leg
+        which = "the nearest expiry" if leg is None else f"the expiry of `{leg}`"
+        return f"{test.days_left.at_most} days or fewer are left to {which}"
+    if isinstance(test, HeldTest):
+        return f"it has been held for {test.held.at_least} sessions or more"
+    return _move_clause(test)
+
+
+def _move_clause(test: Condition) -> str:
+    if isinstance(test, StockUpTest):
+        return f"the stock is {percent_text(test.stock_up.at_least)} or more above its price at entry"
+    if isinstance(test, StockDownTest):
+        return f"the stock is {percent_text(test.stock_down.at_least)} or more below its price at entry"
+    if isinstance(test, LegLostTest):
+        lost = test.leg_lost
+        return f"`{lost.leg}` has lost at least {percent_text(lost.at_least)} of its price at entry"
+    raise TypeError(f"a condition of an unknown kind cannot be put into words: {type(test).__name__}")
