@@ -191,3 +191,17 @@ def test_the_default_smile_leaves_room_and_a_steep_one_does_not() -> None:
         puts = np.diff([price(1, float(k), 0.2, model) for k in strikes])
         assert bool((calls < 0).all() and (puts > 0).all()) is sound
         assert (smile.steepest(0.2, 1.0, 100, model)[0] > 0) is sound
+
+
+@pytest.mark.parametrize(("strike", "observed"), [(0.90, 0.202), (0.95, 0.168), (1.0, 0.134), (1.05, 0.108)])
+def test_the_shape_reaches_an_index_chain(strike: float, observed: float) -> None:
+    """An index chain of April 2013, 62 days (recomputed from the chain): steeper, and within half a point.
+
+    Skew -.245 and curvature .02 pass through the near strikes; such a smile keeps prices in order.
+    """
+    index = DEFAULT._replace(skew=-0.245, curvature=0.02)
+    years = 62.0 / 365.0
+    assert smile.volatility_at(0.134, math.log(strike), years, 62.0, index) == pytest.approx(
+        observed, abs=0.005
+    )
+    assert smile.steepest(0.134 * math.sqrt(years), 1.0, 100, index)[0] > 0.0
