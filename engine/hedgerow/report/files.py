@@ -1,0 +1,166 @@
+"""The folder of a run: written whole beside its place, then moved there; nothing is left half-written."""
+
+from __future__ import annotations
+
+import json
+import os
+import shutil
+from collections.abc import Mapping, Sequence
+from pathlib import Path
+from typing import Any
+
+import pandas as pd
+import pyarrow as pa
+import pyarrow.parquet as pq
+import yaml
+
+from hedgerow.errors import PlaceError
+from hedgerow.events.store import write_logs
+from hedgerow.evidence.figures import Summary
+from hedgerow.ledger import Ledger
+
+__all__ = ["FINISHED", "RUN_FILES", "check_place", "harmless", "write_run"]
+
+FINISHED = "run.yaml"
+"""The file that a finished run folder has; it is written last."""
+
+RUN_FILES = (
+    "events.parquet",
+    "trades.parquet",
+    "trades.csv",
+    "legs.parquet",
+    "equity.parquet",
+    "summary.json",
+    FINISHED,
+)
+
+FORMULA_STARTS = ("=", "+", "-", "@", "\t", "\r")
+
+
+def check_place(folder: str | Path, replace: bool = False) -> Path:
+    """Return the folder as a path when a run may be written there: it is new, empty, or a run to be replaced.
+
+    Raises PlaceError when it is a file, holds a finished run and `replace` is not given, or other files.
+    """
+    place = Path(folder)
+    try:
+        if place.exists() and not place.is_dir():
+            raise _refused(place, "a file of this name stands there")
+        if place.is_dir() and any(place.iterdir()):
+            if not (place / FINISHED).is_file():
+                raise _refused(place, "this folder holds other files")
+            if not replace:
+                raise _refused(place, "a finished run stands there and was not to be replaced")
+    except OSError as error:
+        raise _unwritable(place, error) from error
+    return place
+
+
+def write_run(
+    folder: str | Path,
+    ledgers: Sequence[Ledger],
+    summaries: Sequence[Summary],
+    run: Mapping[str, Any],
+    *,
+    replace: bool = False,
+    extra: Mapping[str, str | bytes] | None = None,
+) -> Path:
+    """Write a run folder (RUN_FILES) in one step and return it.
+
+    ledgers and summaries: one a variant, in the same order; every frame carries a `variant` column. run:
+    what is needed to repeat the run, plain values. extra: further files by name. Raises PlaceError when the
+    place is taken or cannot be written; then nothing is left behind, and a run that stood there still does.
+    """
+    place = check_place(folder, replace)
+    part = place.with_name(f".{place.name}.{os.getpid()}.part")
+    made = _missing_parents(place)
+    done = False
+    try:
+        part.mkdir(parents=True)
+        _fill(part, ledgers, summaries, extra or {})
+        (part / FINISHED).write_text(
+            yaml.safe_dump(dict(run), sort_keys=False, allow_unicode=True), encoding="utf-8"
+        )
+        _move(part, place)
+        done = True
+    except OSError as error:
+        raise _unwritable(place, error) from error
+    finally:
+        shutil.rmtree(part, ignore_errors=True)
+        for parent in () if done else made:
+            _remove_empty(parent)
+    return place
+
+
+def harmless(frame: pd.DataFrame) -> pd.DataFrame:
+    """Return a frame whose text cells no spreadsheet takes for a formula: those get a leading apostrophe."""
+    safe = frame.copy()
+    for name in safe.columns:
+        if pd.api.types.is_string_dtype(safe[name]) or safe[name].dtype == object:
+            text = safe[name].astype("str")
+            safe[name] = text.where(~text.str.startswith(FORMULA_STARTS), "'" + text)
+    return safe
+
+
+def _fill(
+    part: Path, ledgers: Sequence[Ledger], summaries: Sequence[Summary], extra: Mapping[str, str | bytes]
+) -> None:
+    write_logs(part / "events.parquet", [ledger.log for ledger in ledgers])
+    trades = pd.concat([ledger.trades for ledger in ledgers], ignore_index=True)
+    _parquet(trades, part / "trades.parquet")
+    harmless(trades).to_csv(part / "trades.csv", index=False, date_format="%Y-%m-%d", lineterminator="\n")
+    _parquet(pd.concat([ledger.legs for ledger in ledgers], ignore_index=True), part / "legs.parquet")
+    _parquet(pd.concat([ledger.equity for ledger in ledgers], ignore_index=True), part / "equity.parquet")
+    described = {"format": 1, "variants": {one.variant: one.as_dict() for one in summaries}}
+    text = json.dumps(described, indent=2, ensure_ascii=False, allow_nan=False)
+    (part / "summary.json").write_text(text + "\n", encoding="utf-8")
+    for name, content in extra.items():
+        data = content.encode("utf-8") if isinstance(content, str) else content
+        (part / name).write_bytes(data)
+
+
+def _parquet(frame: pd.DataFrame, path: Path) -> None:
+    pq.write_table(pa.Table.from_pandas(frame, preserve_index=False), path, compression="zstd")
+
+
+def _move(part: Path, place: Path) -> None:
+    """Put the finished folder in its place; an old run is set aside first and comes back when that fails."""
+    if not place.exists():
+        os.replace(part, place)
+        return
+    aside = place.with_name(f".{place.name}.{os.getpid()}.old")
+    os.replace(place, aside)
+    try:
+        os.replace(part, place)
+    except OSError:
+        os.replace(aside, place)
+        raise
+    shutil.rmtree(aside, ignore_errors=True)
+
+
+def _missing_parents(place: Path) -> list[Path]:
+    return [parent for parent in place.parents if not parent.exists()]
+
+
+def _remove_empty(folder: Path) -> None:
+    if folder.is_dir() and not any(folder.iterdir()):
+        folder.rmdir()
+
+
+def _refused(place: Path, why: str) -> PlaceError:
+    return PlaceError.one(
+        str(place),
+        "place taken",
+        f"the run is not written here: {why}",
+        "expected a new or an empty folder",
+        "name another with --out, or replace a finished run with --replace",
+    )
+
+
+def _unwritable(place: Path, error: OSError) -> PlaceError:
+    return PlaceError.one(
+        str(place),
+        "cannot write",
+        f"the run could not be written: {error.strerror or error}",
+        remedy="nothing was left behind",
+    )
