@@ -124,9 +124,8 @@ def _read(
     cells = source.cells(roles[role])
     value, wrong = to_floats(cells, words.decimal_comma)
     faults += wrong
-    empty = np.isnan(value) & (len(wrong) == 0)
     faults += cells.faults(
-        empty, f"no-{role}", lambda _: (f"the {role} is missing", "a number is wanted", "")
+        cells.blank(), f"no-{role}", lambda _: (f"the {role} is missing", "a number is wanted", "")
     )
     what = "split" if role == "ratio" else "dividend"
     faults += cells.faults(
@@ -146,9 +145,10 @@ def known_symbols(
     strange = [name for name in names if name not in place]
     findings = []
     if strange:
-        near = nearest_word(strange[0], symbols)
+        same = {name.lower(): name for name in symbols}.get(strange[0].lower(), "")
+        near = f"did you mean `{same}`?" if same else nearest_word(strange[0], symbols)
         listed = ", ".join(strange[:8]) + (" and others" if len(strange) > 8 else "")
-        text = f"{source.where} has rows of symbols without prices, left out: {listed}"
+        text = f"{source.name} has rows of symbols without prices, left out: {listed}"
         findings.append(Finding("unknown-symbol", "warning", "", "", text + (f"; {near}" if near else "")))
     return index, faults, findings
 
@@ -167,13 +167,15 @@ def _told_apart(
     actions: Actions, source: Source, symbols: Sequence[str], faults: list[Fault], findings: list[Finding]
 ) -> tuple[Actions, list[Fault], list[Finding]]:
     """Return the actions of known symbols, each repeated row once; two splits a day are a fault."""
-    actions = actions.take((actions.symbol >= 0) & (actions.ordinal > 0))
+    actions = actions.take((actions.symbol >= 0) & (actions.ordinal > 0) & (actions.value > 0.0))
     rows = np.column_stack([actions.symbol, actions.ordinal, actions.kind, actions.value])
     if len(rows) == 0:
         return actions, faults, findings
     _, first = np.unique(rows, axis=0, return_index=True)
     if len(first) < len(rows):
-        text = f"{source.where}: {len(rows) - len(first)} rows repeated word for word; each was kept once"
+        text = (
+            f"{source.name}: rows repeated word for word, {len(rows) - len(first)} times; each was kept once"
+        )
         findings.append(Finding("repeated-row", "warning", "", "", text))
     actions = actions.take(np.sort(first))
     _, counts_at, counts = np.unique(rows[np.sort(first), :3], axis=0, return_index=True, return_counts=True)

@@ -161,7 +161,7 @@ def jumps(market: Market) -> list[Finding]:
         stays = abs(np.log(ratio) - whole[session, index]) < STAYS_NEAR
         if distance.min() < NEAR_RATIO and stays and abs(np.log(ratio)) > np.log(1.45):
             seen[session, index] = True
-            text = f"the price opens at 1/{ratio:.4g} of the close before; no split is recorded"
+            text = f"the price opens at {1.0 / ratio:.4g} times the close before; no split is recorded"
             day = iso(market.ordinals[session])
             findings.append(Finding("unrecorded-split", "warning", market.symbols[index], day, text))
     moved = (np.abs(whole) > LARGE_MOVE) & ~seen

@@ -76,6 +76,9 @@ def assign(
             faults.append(_not_there(role, mapping[role], columns, where))
         elif role in wanted.must:
             faults.append(_missing(role, columns, found, where))
+    if len(faults) > 1 and sum(name.strip().replace(".", "", 1).isdigit() for name in columns) > 1:
+        told = ("the first line names the columns", f"write a line like {','.join(wanted.must)} above it")
+        return {}, [Fault(where, 1, 0, "no-names", "the first line holds numbers, not names", *told)]
     return found, faults
 
 

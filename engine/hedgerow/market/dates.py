@@ -18,6 +18,8 @@ from hedgerow.kernels.layout import Ints
 from hedgerow.market.numbers import Cells, is_text
 
 EPOCH_ORDINAL = datetime.date(1970, 1, 1).toordinal()
+EARLIEST = datetime.date(1700, 1, 1).toordinal()
+LATEST = datetime.date(2199, 12, 30).toordinal()
 NO_DATE = 0
 ORDERS = ("month first", "day first")
 _MONTHS = ("jan", "feb", "mar", "apr", "may", "jun", "jul", "aug", "sep", "oct", "nov", "dec")
@@ -75,19 +77,17 @@ def _from_stamps(cells: Cells) -> tuple[Ints, list[Fault]]:
         column = pc.local_timestamp(column)
     days = column.cast(pa.date32(), safe=False).cast(pa.int32())
     ordinals = pc.fill_null(days, NO_DATE - EPOCH_ORDINAL).to_numpy().astype(np.int64) + EPOCH_ORDINAL
-    return ordinals, _judged(cells, ordinals, ordinals)
+    told = ("the date is missing", "every row has one", "")
+    missing = cells.faults(ordinals == NO_DATE, "no-date", lambda _: told)
+    return ordinals, missing + _far(cells, ordinals)
 
 
-def _judged(cells: Cells, rows: Ints, ordinals: Ints) -> list[Fault]:
-    """Return the faults of rows without a date, and of dates no market has seen."""
-    sane = (datetime.date(1700, 1, 1).toordinal(), datetime.date(2200, 1, 1).toordinal())
-    missing = rows == NO_DATE
-    far = ~missing & ((ordinals < sane[0]) | (ordinals > sane[1]))
-    faults = cells.faults(missing, "no-date", lambda _: ("the date is missing", "every row has one", ""))
-    rows[far] = NO_DATE
-    return faults + cells.faults(
-        far, "far-date", lambda cell: (f"the date {cell}", "1700 to 2200 is read", "")
-    )
+def _far(cells: Cells, ordinals: Ints) -> list[Fault]:
+    """Return the faults of dates no market has seen, and make them no date."""
+    far = (ordinals != NO_DATE) & ((ordinals < EARLIEST) | (ordinals > LATEST))
+    ordinals[far] = NO_DATE
+    told = (f"{iso(EARLIEST)} to {iso(LATEST)} is read", "correct the year")
+    return cells.faults(far, "far-date", lambda cell: (f"the date {cell}", *told))
 
 
 def _from_text(cells: Cells, order: str) -> tuple[Ints, list[Fault]]:
@@ -103,20 +103,20 @@ def _from_text(cells: Cells, order: str) -> tuple[Ints, list[Fault]]:
         ]
     table = np.array([_ordinal(word, form) for word in words] + [NO_DATE], dtype=np.int64)
     rows = table[codes]
-    return rows, cells.faults(rows == NO_DATE, "bad-date", lambda cell: _told(cell, form))
+    faults = cells.faults(rows == NO_DATE, "bad-date", lambda cell: _told(cell, form))
+    return rows, faults + _far(cells, rows)
 
 
 def _common_form(words: list[str], order: str) -> tuple[Form, tuple[str, str, str] | None]:
     """Return the form that most of the dates are written in, or why it cannot be told."""
-    fits = [(sum(_ordinal(word, form) != NO_DATE for word in words), form) for form in _FORMS]
+    forms = [form for form in _FORMS if form.name not in ORDERS or order in ("", form.name)]
+    fits = [(sum(_ordinal(word, form) != NO_DATE for word in words), form) for form in forms]
     most = max((count for count, _ in fits), default=0)
     best = [form for count, form in fits if count == most]
     if most == 0:
         return _ISO, None
     if len(best) == 1 or best[0].name not in ORDERS:
         return best[0], None
-    if order:
-        return next(form for form in best if form.name == order), None
     found = f"dates like `{words[0]}` can be read day first or month first"
     remedy = "write 2012-03-30, or say `dates: day first` or `dates: month first` in dataset.yaml"
     return _ISO, (found, "a date has one meaning", remedy)

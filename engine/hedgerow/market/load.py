@@ -71,8 +71,14 @@ def _read(tables: Tables) -> _Draft:
     _read_extras(tables, names, draft)
     _known_symbols(draft)
     if draft.faults:
-        raise DataError(capped(draft.faults))
+        raise DataError(capped(_in_order(draft.faults)))
     return draft
+
+
+def _in_order(faults: list[Fault]) -> list[Fault]:
+    """Return faults file by file, as the files came, and line by line."""
+    files = {where: place for place, where in enumerate(dict.fromkeys(fault.where for fault in faults))}
+    return sorted(faults, key=lambda fault: (files[fault.where], fault.line == 0, fault.line, fault.column))
 
 
 def _renumbered(bars: Bars, names: tuple[str, ...]) -> Bars:

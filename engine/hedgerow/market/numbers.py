@@ -46,6 +46,17 @@ class Cells:
             faults.append(Fault(self.where, 0, 0, code, found))
         return faults
 
+    def blank(self) -> NDArray[np.bool_]:
+        """Return which cells hold nothing, or a word for nothing, (n,)."""
+        if not is_text(self.column.type):
+            return np.array(pc.is_null(self.column, nan_is_null=True).to_numpy(), dtype=np.bool_)
+        text = pc.utf8_lower(pc.utf8_trim_whitespace(self.column.cast(pa.string())))
+        return np.array(pc.or_kleene(pc.is_null(text), _is_nothing(text)).to_numpy(), dtype=np.bool_)
+
+
+def _is_nothing(text: pa.ChunkedArray) -> pa.ChunkedArray:
+    return pc.is_in(text, value_set=pa.array(NOTHING))
+
 
 def is_text(kind: pa.DataType) -> bool:
     """Return whether an arrow type holds text, encoded by a dictionary or not."""
@@ -83,8 +94,7 @@ def _from_text(cells: Cells, decimal_comma: bool) -> tuple[Floats, list[Fault]]:
     try:
         values = _numpy(text.cast(pa.float64()))
     except pa.ArrowInvalid:
-        nothing = pc.is_in(pc.utf8_lower(text), value_set=pa.array(NOTHING))
-        text = pc.if_else(nothing, pa.scalar(None, pa.string()), text)
+        text = pc.if_else(_is_nothing(pc.utf8_lower(text)), pa.scalar(None, pa.string()), text)
         good = pc.fill_null(pc.match_substring_regex(text, _NUMBER), False)
         values = _numpy(pc.if_else(good, text, pa.scalar(None, pa.string())).cast(pa.float64()))
         bad = np.array(pc.and_(pc.invert(good), pc.is_valid(text)).to_numpy(), dtype=np.bool_)
@@ -107,6 +117,9 @@ def _told(name: str, cell: str) -> tuple[str, str, str]:
         return found, "a number has a decimal point", "write a point, or say `decimal: comma` in dataset.yaml"
     if re.fullmatch(r"[+-]?[$€£¥]\s*[\d.,]+|[\d.,]+\s*[$€£¥%]", bare):
         return found, "a bare number is wanted", "take the sign away; dataset.yaml names the currency"
+    if found_ratio := re.fullmatch(r"(\d+)\s*(?::|/|for|-for-)\s*(\d+)", bare):
+        new, old = int(found_ratio[1]), max(int(found_ratio[2]), 1)
+        return found, "a ratio is one number: new shares for one old", f"write {new / old:.6g}"
     if re.fullmatch(r"[+-]?inf(inity)?|[+-]?1?e\d+|[+-]?\d[\d.]*e\+?\d+", bare.lower()):
         return found, "a finite number is wanted", "leave the cell empty when nothing is known"
     return found, "a number is wanted", "leave the cell empty when nothing is known"

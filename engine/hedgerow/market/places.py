@@ -50,10 +50,11 @@ def gather(
     given = node_of(words)
     if node is not None and isinstance(node.value, dict) and isinstance(given.value, dict):
         given = Node(node.value | given.value, node.line, node.column, keys=given.keys | node.keys)
-    if node is None or isinstance(node.value, dict):
-        where = tables.source if node is None else str(Path(tables.source) / WORDS_FILE)
-        tables.dataset, faults = from_node(given, where)
-        tables.faults += faults
+    elif node is not None and node.value is not None:
+        given = node
+    where = tables.source if node is None else str(Path(tables.source) / WORDS_FILE)
+    tables.dataset, faults = from_node(given, where)
+    tables.faults += faults
     return tables
 
 
@@ -68,7 +69,12 @@ def _read_frames(tables: Tables, frames: Mapping[str, pd.DataFrame]) -> None:
 def _read_place(path: Path, tables: Tables) -> Node | None:
     """Read a file or a folder into `tables`; return the tree of its dataset.yaml, None without one."""
     if path.is_dir():
-        return _read_folder(path, tables)
+        try:
+            return _read_folder(path, tables)
+        except OSError as error:
+            found = f"the folder cannot be read: {error.strerror or type(error).__name__}"
+            tables.faults.append(Fault(str(path), 0, 0, "folder-unreadable", found))
+            return None
     if path.suffix.lower() not in ENDINGS and path.exists():
         found = f"the ending `{path.suffix}` is not known" if path.suffix else "the file has no ending"
         allowed = f"one of {', '.join(ENDINGS)} is read"
@@ -90,7 +96,7 @@ def _read_folder(folder: Path, tables: Tables) -> Node | None:
     for file in files:
         source, faults = read_table(file)
         if len(files) > 1 and [fault.code for fault in faults] == ["no-row"]:
-            text = f"{file} has no row; the symbol is left out"
+            text = f"{file.name} has no row; the symbol is left out"
             tables.findings.append(Finding("empty-symbol", "warning", file.stem, "", text))
             continue
         tables.faults += faults

@@ -52,7 +52,11 @@ def _fractions(cells: Cells, decimal_comma: bool) -> tuple[Floats, list[Fault]]:
 def _twice(source: Source, ordinal: Ints, rate: Floats) -> list[Fault]:
     """Return the faults of days with two different rates."""
     order = np.argsort(ordinal, kind="stable")
-    again = (np.diff(ordinal[order]) == 0) & (np.diff(rate[order]) != 0.0) & (ordinal[order][1:] != NO_DATE)
+    again = (
+        (np.diff(ordinal[order]) == 0)
+        & (np.abs(np.diff(rate[order])) > 0.0)
+        & (ordinal[order][1:] != NO_DATE)
+    )
     rows = order[1:][again][:20]
     return [
         Fault(source.where, int(line), 0, "rate-twice", f"a second, different rate for {iso(ordinal[row])}")

@@ -37,6 +37,11 @@ class Source:
         self._text = text  # the text, its delimiter, how many blank lines went before it
 
     @property
+    def name(self) -> str:
+        """The file's name without its folder."""
+        return Path(self.where).name
+
+    @property
     def names(self) -> list[str]:
         """The names of the columns, as written."""
         return [str(name) for name in self.table.column_names]
@@ -104,7 +109,7 @@ def _read_parquet(path: Path) -> tuple[Source | None, list[Fault]]:
     try:
         table = pyarrow.parquet.read_table(pa.BufferReader(data))
     except (pa.ArrowException, OSError) as error:
-        detail = str(error).split(". ")[0].split("\n")[0]
+        detail = str(error).split(". ")[0].split("\n")[0].split("'<Buffer>': ")[-1]
         found = f"this is not a Parquet file that can be read: {detail}"
         return None, [Fault(where, 0, 0, "not-parquet", found, remedy="write the file again")]
     return Source(table, where, path.stem), [] if len(table) else [_no_row(where)]
@@ -171,9 +176,11 @@ def _ragged(text: str, where: str, delimiter: str, width: int, blank: int) -> li
     reader = csv.reader(io.StringIO(text, newline=""), delimiter=delimiter)
     for row in reader:
         if row and len(row) != width:
-            found = f"{len(row)} cells stand in this row"
+            found = "1 cell stands in this row" if len(row) == 1 else f"{len(row)} cells stand in this row"
             allowed = f"the line of names has {width}"
             remedy = "put cells that hold the delimiter in quotes" if len(row) > width else "fill the row"
+            if any("\n" in cell for cell in row):
+                remedy = "close the quote"
             faults.append(Fault(where, blank + reader.line_num, 0, "ragged-row", found, allowed, remedy))
     listed = faults[: MOST_FAULTS - 10]
     if len(faults) > len(listed):

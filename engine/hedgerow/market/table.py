@@ -168,7 +168,7 @@ class Market:
             **grids,
         )
 
-    def until(self, date: str | datetime.date) -> Market:
+    def until(self, date: str | datetime.date | np.datetime64) -> Market:
         """Return what was known at the close of a day: later sessions, reports and findings are gone.
 
         A report announced by then keeps its date; its EPS is NaN when its session of reaction is later. The
@@ -260,9 +260,11 @@ def unknown_symbol(symbol: str, known: Iterable[str], where: str) -> Fault:
     return Fault(where, 0, 0, "unknown-symbol", found, allowed, nearest_word(symbol, names))
 
 
-def _as_day(date: str | datetime.date) -> datetime.date:
+def _as_day(date: str | datetime.date | np.datetime64) -> datetime.date:
     try:
-        return datetime.date.fromisoformat(date) if isinstance(date, str) else date
+        if isinstance(date, datetime.date):
+            return datetime.date.fromordinal(date.toordinal())
+        return datetime.date.fromisoformat(str(date)[:10] if isinstance(date, np.datetime64) else date)
     except ValueError:
         found, allowed = f"{date!r} is not a date", "a date is written like 2012-03-30"
         raise DataError.one("date", "bad-date", found, allowed) from None

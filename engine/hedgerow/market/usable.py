@@ -44,7 +44,7 @@ def order_findings(bars: Bars, sources: Sequence[Source]) -> list[Finding]:
     back = np.append(False, same & (np.diff(bars.ordinal[order]) < 0))
     tables = np.unique(bars.source[order][back])
     text = "the dates of {} do not ascend; the rows were sorted"
-    return [Finding("unsorted", "note", "", "", text.format(sources[number].where)) for number in tables]
+    return [Finding("unsorted", "note", "", "", text.format(sources[number].name)) for number in tables]
 
 
 def without_repeats(bars: Bars, sources: Sequence[Source]) -> tuple[Bars, list[Fault], list[Finding]]:
