@@ -24,7 +24,8 @@ def at_event(log: EventLog, wrong: Mask, text: str, said: Amounts = None, due: A
         event = log.events[index]
         kind = KIND_WORDS[int(event["kind"])]
         where = f"{_place(log, event['session'], event['symbol'], event['position'])}, event {index} ({kind})"
-        raise _fault(where, text, said, due, index)
+        amounts = _amounts(said, due, index)
+        raise ReconcileError(f"the log of this run does not add up at {where}: {text}{amounts}")
 
 
 def at_term(log: EventLog, wrong: Mask, text: str, said: Amounts = None, due: Amounts = None) -> None:
@@ -32,7 +33,11 @@ def at_term(log: EventLog, wrong: Mask, text: str, said: Amounts = None, due: Am
     if wrong.any():
         index = int(np.argmax(wrong))
         term = log.terms[index]
-        raise _fault(_place(log, term["session"], term["symbol"], term["position"]), text, said, due, index)
+        where, amounts = (
+            _place(log, term["session"], term["symbol"], term["position"]),
+            _amounts(said, due, index),
+        )
+        raise ReconcileError(f"the log of this run does not add up at {where}: {text}{amounts}")
 
 
 def at_day(log: EventLog, wrong: Mask, text: str, said: Amounts = None, due: Amounts = None) -> None:
@@ -40,7 +45,8 @@ def at_day(log: EventLog, wrong: Mask, text: str, said: Amounts = None, due: Amo
     if wrong.any():
         index = int(np.argmax(wrong))
         session = int(log.days["session"][index])
-        raise _fault(_place(log, session, -1, -1), text, said, due, index)
+        where, amounts = _place(log, session, -1, -1), _amounts(said, due, index)
+        raise ReconcileError(f"the log of this run does not add up at {where}: {text}{amounts}")
 
 
 def at_mark(log: EventLog, wrong: Mask, text: str, said: Amounts = None, due: Amounts = None) -> None:
@@ -49,7 +55,8 @@ def at_mark(log: EventLog, wrong: Mask, text: str, said: Amounts = None, due: Am
         index = int(np.argmax(wrong))
         mark, row = log.marks[index], int(position_rows(log)[index])
         symbol = int(log.terms["symbol"][row]) if row >= 0 else -1
-        raise _fault(_place(log, mark["session"], symbol, mark["position"]), text, said, due, index)
+        where, amounts = _place(log, mark["session"], symbol, mark["position"]), _amounts(said, due, index)
+        raise ReconcileError(f"the log of this run does not add up at {where}: {text}{amounts}")
 
 
 def _place(log: EventLog, session: int, symbol: int, position: int) -> str:
@@ -59,16 +66,14 @@ def _place(log: EventLog, session: int, symbol: int, position: int) -> str:
     return ", ".join(parts)
 
 
-def _fault(where: str, text: str, said: Amounts, due: Amounts, index: int) -> ReconcileError:
-    sentence = f"the log of this run does not add up at {where}: {text}"
-    if said is not None:
-        found = float(said[index])
-        sentence += f" {_amount(found)}"
-        if due is not None:
-            sentence += (
-                f", expected {_amount(float(due[index]))}, off by {_amount(found - float(due[index]))}"
-            )
-    return ReconcileError(sentence)
+def _amounts(said: Amounts, due: Amounts, index: int) -> str:
+    if said is None:
+        return ""
+    found = float(said[index])
+    if due is None:
+        return f" {_amount(found)}"
+    expected = float(due[index])
+    return f" {_amount(found)}, expected {_amount(expected)}, off by {_amount(found - expected)}"
 
 
 def _amount(value: float) -> str:
