@@ -28,6 +28,8 @@ MOST_DECIMALS = 8
 NEAR_RATIO = 0.02
 NEAR_PRICE = 0.25
 CENT = 0.01
+BARS_A_STEP = 10  # a company acts at most about twice a month
+SINGLE_PRECISION = 1.2e-7  # relative; many tables went through 32-bit floats
 
 
 @dataclass(frozen=True)
@@ -56,10 +58,30 @@ class Steps:
 
 
 def steps_of(close: Floats, adjusted: Floats) -> Steps:
-    """Return the steps of the ratio of adjusted to raw close of one symbol's bars, (n,)."""
-    half = 0.5 * 10.0 ** -_decimals(adjusted) * 1.001
-    low, high = (adjusted - half) / close, (adjusted + half) / close
-    bar = 1 + np.flatnonzero((low[1:] > high[:-1]) | (high[1:] < low[:-1]))
+    """Return the steps of the ratio of adjusted to raw close of one symbol's bars, (n,).
+
+    First only the adjusted close's own decimals are granted as noise. Where that gives more steps than any
+    company acts, half a cent of the raw close is granted too (prices in sixteenths written in cents). Where
+    even that does not help there are no steps, and every bar is crooked.
+    """
+    for cents in (0.0, CENT / 2.0):
+        low, high = _ratio_bounds(close, adjusted, cents)
+        bar = 1 + np.flatnonzero((low[1:] > high[:-1]) | (high[1:] < low[:-1]))
+        if len(bar) * BARS_A_STEP <= max(len(close), BARS_A_STEP):
+            return _steps_at(bar, close, low, high)
+    none = np.empty(0)
+    return Steps(np.empty(0, dtype=np.int64), none, none, none, none, none, np.zeros(1, dtype=np.int64))
+
+
+def _ratio_bounds(close: Floats, adjusted: Floats, cents: float) -> tuple[Floats, Floats]:
+    """Return the least and the greatest ratio that the decimals of the closes allow, (n,)."""
+    half = 0.5 * 10.0 ** -_decimals(adjusted) + SINGLE_PRECISION * adjusted
+    raw = SINGLE_PRECISION * close + cents
+    return (adjusted - half) / (close + raw), (adjusted + half) / (close - raw)
+
+
+def _steps_at(bar: Ints, close: Floats, low: Floats, high: Floats) -> Steps:
+    """Return the steps at some bars, the ratio between them taken from all bars of a level."""
     starts = np.concatenate([[0], bar]).astype(np.int64)
     lowest, highest = np.maximum.reduceat(low, starts), np.minimum.reduceat(high, starts)
     drifts = lowest > highest
