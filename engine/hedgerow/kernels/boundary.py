@@ -32,7 +32,9 @@ NODES = 5  # times at which the boundary is known
 INNER = 7  # points of the integrals in N and D
 OUTER = 10  # points of the integral for the value
 FIRST_STEPS = 3  # Newton steps at the shortest time; the others start close and take one
-REFINEMENTS = 2
+REFINEMENTS = 2  # of all times together
+HARD_REFINEMENTS = 4  # with a dividend yield, or a rate that is high for the volatility
+_HARD = 5.0  # a rate over this many variances is high
 _DEEPEST = 50.0  # a boundary under e^-50 of the strike is as good as zero
 
 
@@ -176,7 +178,8 @@ def exercise_depths(problem: Problem) -> Floats:
         depths[i] = depths[0] if i == 1 else depths[i - 1] * depths[i - 1] / depths[i - 2]
         depths[i] = _step(_MARCHING, i + 1, i, depths, problem)
     better = np.empty(NODES)
-    for _ in range(REFINEMENTS):
+    hard = problem.dividend_yield != 0.0 or problem.rate > _HARD * problem.volatility * problem.volatility
+    for _ in range(HARD_REFINEMENTS if hard else REFINEMENTS):
         for i in range(NODES):
             better[i] = _step(_TOGETHER, NODES, i, depths, problem)
         for i in range(NODES):
