@@ -19,7 +19,6 @@ from hedgerow.kernels.normal import cdf
 
 __all__ = [
     "american",
-    "american_cash",
     "american_or_european",
     "call_exercise_is_due_before_dividend",
     "early_exercise_bound",
@@ -105,26 +104,22 @@ def _certain_put(spot: float, strike: float, years: float, rate: float, dividend
 
 
 @compiled
-def _put(
+def _put_premium(
     spot: float, strike: float, years: float, rate: float, dividend_yield: float, volatility: float
 ) -> float:
-    """Value an American put, money per share."""
-    gain = intrinsic(PUT, spot, strike)
-    if years <= 0.0:
-        return gain
-    if is_certain(spot, strike, years, volatility):
-        return _certain_put(spot, strike, years, rate, dividend_yield)
-    plain = european(PUT, spot, strike, years, rate, dividend_yield, volatility)
+    """Value what early exercise adds to a put that is not exercised now, money per share; 0 where it is.
+
+    Never over the bound; nothing where the bound is negligible or exercise has two boundaries.
+    """
     most = _put_bound(spot, strike, years, rate, dividend_yield, volatility)
     if rate < 0.0 or not most > _NOTHING * strike:
-        return gain if plain < gain else plain
+        return 0.0
     problem = Problem(years, rate, dividend_yield, volatility, top_of(rate, dividend_yield))
     depths = exercise_depths(problem)
     log_moneyness = math.log(spot / strike)
     if is_exercised(log_moneyness, depths, problem):
-        return max(gain, plain)
-    extra = strike * exercise_premium(log_moneyness, 0.0, depths, problem)
-    return max(plain + min(extra, most), gain)
+        return 0.0
+    return min(strike * exercise_premium(log_moneyness, 0.0, depths, problem), most)
 
 
 @compiled
@@ -141,9 +136,19 @@ def american(
 
     Source of the method: module docstring of `hedgerow.kernels.boundary`.
     """
+    gain = intrinsic(right, spot, strike)
+    if years <= 0.0:
+        return gain
+    if is_certain(spot, strike, years, volatility):
+        if right == CALL:
+            return _certain_put(strike, spot, years, dividend_yield, rate)
+        return _certain_put(spot, strike, years, rate, dividend_yield)
     if right == CALL:
-        return _put(strike, spot, years, dividend_yield, rate, volatility)
-    return _put(spot, strike, years, rate, dividend_yield, volatility)
+        extra = _put_premium(strike, spot, years, dividend_yield, rate, volatility)
+    else:
+        extra = _put_premium(spot, strike, years, rate, dividend_yield, volatility)
+    value = european(right, spot, strike, years, rate, dividend_yield, volatility) + extra
+    return gain if value < gain else value
 
 
 @compiled
@@ -201,37 +206,3 @@ def call_exercise_is_due_before_dividend(
     if dividend <= 0.0 or spot <= strike:
         return False
     return spot - strike > european(CALL, spot - dividend, strike, years, rate, 0.0, volatility)
-
-
-@compiled
-def american_cash(
-    right: int,
-    spot: float,
-    strike: float,
-    years: float,
-    rate: float,
-    volatility: float,
-    years_to_ex: float,
-    amount: float,
-) -> float:
-    """Value an American option on a stock that pays `amount` a share once, in `years_to_ex`.
-
-    The price less the present value of the dividend is lognormal (escrowed dividend). Call: the larger of the
-    European call to expiry and the European call exercised just before the ex-date (Black 1975, "Fact and
-    fantasy in the use of options", Financial Analysts Journal 31). Put: exercise from the ex-date on, or now.
-    Both are values of strategies open to the holder, so a little low rather than high.
-    """
-    if amount <= 0.0 or not 0.0 < years_to_ex <= years:
-        return american(right, spot, strike, years, rate, 0.0, volatility)
-    rest = max(spot - amount * discount(rate, years_to_ex), 0.0)
-    plain = european(right, rest, strike, years, rate, 0.0, volatility)
-    gain = intrinsic(right, spot, strike)
-    if right == CALL:
-        early = european(CALL, rest, strike - amount, years_to_ex, rate, 0.0, volatility)
-        return max(plain, early, gain)
-    left = years - years_to_ex
-    if left <= 0.0 or rate <= 0.0 or is_certain(rest, strike, years, volatility):
-        return max(plain, gain)
-    problem = Problem(left, rate, 0.0, volatility, 0.0)
-    extra = exercise_premium(math.log(rest / strike), years_to_ex, exercise_depths(problem), problem)
-    return max(plain + strike * extra, gain)

@@ -1,15 +1,18 @@
-"""The standard normal distribution: density, probability and quantile, to full double precision."""
+"""The standard normal distribution: density, probability and quantile, and two variables together."""
 
 from __future__ import annotations
 
 import math
 
+import numpy as np
+
 from hedgerow.kernels.jit import compiled
 
-__all__ = ["cdf", "pdf", "quantile"]
+__all__ = ["bivariate_cdf", "cdf", "pdf", "quantile"]
 
 ROOT_HALF = 0.7071067811865476
 ONE_OVER_ROOT_TWO_PI = 0.3989422804014327
+_PLACES, _WEIGHTS = np.polynomial.legendre.leggauss(20)
 
 
 @compiled
@@ -83,3 +86,59 @@ def quantile(p: float) -> float:
     r = math.sqrt(-math.log(p if q < 0.0 else 1.0 - p))
     x = _near_tail(r - 1.6) if r <= 5.0 else _far_tail(r - 5.0)
     return -x if q < 0.0 else x
+
+
+@compiled
+def _by_angle(h: float, k: float, rho: float) -> float:
+    """Integrate Plackett's identity over the angle arcsin(rho): P(X > h, Y > k) less its value at rho = 0."""
+    half = 0.5 * math.asin(rho)
+    mean = 0.5 * (h * h + k * k)
+    total = 0.0
+    for i in range(20):
+        sine = math.sin(half * (1.0 + _PLACES[i]))
+        total += _WEIGHTS[i] * math.exp((sine * h * k - mean) / (1.0 - sine * sine))
+    return total * half / (2.0 * math.pi)
+
+
+@compiled
+def _near_one(h: float, k: float, rho: float) -> float:
+    """P(X > h, Y > k) less its value at rho = 1, for 0.925 <= rho < 1: the expansion of Genz 2004."""
+    square = (1.0 - rho) * (1.0 + rho)
+    root = math.sqrt(square)
+    gap = (h - k) * (h - k)
+    c, d = (4.0 - h * k) / 8.0, (12.0 - h * k) / 16.0
+    total = 0.0
+    power = -0.5 * (gap / square + h * k)
+    if power > -100.0:
+        fourth = 1.0 - c * (gap - square) * (1.0 - d * gap / 5.0) / 3.0 + c * d * square * square / 5.0
+        total = root * math.exp(power) * fourth
+    if h * k > -100.0:
+        away = math.sqrt(gap)
+        tail = cdf(-away / root) / ONE_OVER_ROOT_TWO_PI * away
+        total -= math.exp(-0.5 * h * k) * tail * (1.0 - c * gap * (1.0 - d * gap / 5.0) / 3.0)
+    half = 0.5 * root
+    for i in range(20):
+        place = half * (1.0 + _PLACES[i])
+        x = place * place
+        power = -0.5 * (gap / x + h * k)
+        if power > -100.0:
+            rest = math.sqrt(1.0 - x)
+            exact = math.exp(-0.5 * h * k * (1.0 - rest) / (1.0 + rest)) / rest
+            total += half * _WEIGHTS[i] * math.exp(power) * (exact - (1.0 + c * x * (1.0 + d * x)))
+    return -total / (2.0 * math.pi)
+
+
+@compiled
+def bivariate_cdf(x: float, y: float, rho: float) -> float:
+    """Probability that two standard normal variables of correlation `rho` are at most `x` and `y`.
+
+    Genz 2004, "Numerical computation of rectangular bivariate and trivariate normal and t probabilities",
+    Statistics and Computing 14, after Drezner & Wesolowsky 1990; absolute error about 1e-15.
+    """
+    if abs(rho) < 0.925:
+        return min(max(cdf(x) * cdf(y) + _by_angle(-x, -y, rho), 0.0), 1.0)
+    if rho > 0.0:
+        near = _near_one(-x, -y, rho) if rho < 1.0 else 0.0
+        return min(max(cdf(min(x, y)) + near, 0.0), 1.0)
+    near = _near_one(-x, y, -rho) if rho > -1.0 else 0.0
+    return min(max(max(cdf(x) - cdf(-y), 0.0) - near, 0.0), 1.0)
