@@ -98,7 +98,8 @@ def scan(text: str, where: str) -> tuple[Node | None, list[Fault]]:
     try:
         node = builder.document()
     except yaml.YAMLError as error:
-        syntax = [] if faults else [_syntax(error, where)]
+        told = faults or any(fault.code == "yaml-deep" for fault in builder.faults)
+        syntax = [] if told else [_syntax(error, where)]
         return None, sorted(faults + builder.faults + syntax)
     return node, sorted(faults + builder.faults)
 
@@ -200,6 +201,8 @@ class _Builder:
         while open_count:
             event = next(self._events)
             open_count += isinstance(event, yaml.CollectionStartEvent)
+            if open_count > DEEPEST:
+                raise yaml.YAMLError("nested far too deeply to be read on")
             open_count -= isinstance(event, yaml.CollectionEndEvent)
 
     def _list(self, place: tuple[int, int], depth: int) -> Node:

@@ -80,7 +80,7 @@ def _of_symbol(
     paid = dividends(step, reinvested) if wanted.dividends else np.zeros(len(day))
     special = special_part(paid, step.before)
     split = step.split if wanted.splits else np.ones(len(day))
-    columns = (paid - special, special, np.where(split == 1.0, 0.0, split))
+    columns = (np.round(paid - special, 6), special, np.where(split == 1.0, 0.0, split))
     parts = [
         Actions(np.full(int(has.sum()), index), day[has], np.full(int(has.sum()), kind), column[has])
         for kind, column in enumerate(columns)
