@@ -1,0 +1,114 @@
+"""How fast the walk is: `python tests/benchmarks/walk.py --json` prints one JSON object.
+
+ns_per_symbol_session   the walk on a weekly collar, time over sessions x symbols
+over_c                  its time over that of a single-purpose C loop for the same collar, gcc -O3, here
+plain_python_over       the time of a straightforward loop in plain Python over the walk's, on a small market
+threads_2_speedup       two walks one after the other, over the two at once on two threads
+
+Each time is the best of a few. All loops must end with the same equity, or nothing is printed.
+"""
+
+from __future__ import annotations
+
+import argparse
+import json
+import resource
+import sys
+import time
+from collections.abc import Callable
+from concurrent.futures import ThreadPoolExecutor
+
+import numpy as np
+from bench_market import Stage, make_stage, run_walk
+from c_collar import prepare_c
+from plain_loop import prepare_plain
+
+from hedgerow.kernels.layout import Floats
+
+TOLERANCE = 1e-6  # relative, of equity at every close: rounding can move a cent, and a cent can move a lot
+
+
+def best(job: Callable[[], object], times: int) -> float:
+    """The shortest of a few runs, in seconds."""
+    taken = []
+    for _ in range(times):
+        start = time.perf_counter()
+        job()
+        taken.append(time.perf_counter() - start)
+    return min(taken)
+
+
+def gap(found: Floats, expected: Floats) -> float:
+    """The greatest relative difference of two equity curves."""
+    return float(np.abs(found / expected - 1.0).max())
+
+
+def at_once(job: Callable[[], object], threads: int) -> None:
+    """Run a job on several threads at the same time."""
+    with ThreadPoolExecutor(threads) as pool:
+        for done in [pool.submit(job) for _ in range(threads)]:
+            done.result()
+
+
+def same_result(stage: Stage) -> float:
+    """The greatest difference between the walk's equity and the C loop's; ends the program if too large."""
+    found, opened = run_walk(stage)
+    expected, wanted = prepare_c(stage.inputs)()
+    difference = gap(found, expected)
+    if difference > TOLERANCE or opened != wanted:
+        sys.exit(
+            f"the walk and the C loop differ: {opened} and {wanted} positions, equity by {difference:.2g}"
+        )
+    return difference
+
+
+def measure(sessions: int, symbols: int, rate: float, times: int) -> dict[str, float]:
+    """All figures of one market."""
+    start = time.perf_counter()
+    stage = make_stage(sessions, symbols, rate=rate)
+    prepared = time.perf_counter() - start
+    difference = same_result(stage)  # compiles, and warms every cache
+    cells = sessions * symbols
+    walk = best(lambda: run_walk(stage), times)
+    plain_c = best(prepare_c(stage.inputs), times)
+    one_after_other = best(lambda: (run_walk(stage), run_walk(stage)), times)
+    together = best(lambda: at_once(lambda: run_walk(stage), 2), times)
+    small = make_stage(min(sessions, 1500), min(symbols, 20), rate=rate)
+    same_result(small)
+    return {
+        "sessions": sessions,
+        "symbols": symbols,
+        "ns_per_symbol_session": round(walk / cells * 1e9, 1),
+        "over_c": round(walk / plain_c, 3),
+        "plain_python_over": round(
+            best(prepare_plain(small.inputs), 1) / best(lambda: run_walk(small), 5), 1
+        ),
+        "threads_2_speedup": round(one_after_other / together, 2),
+        "c_ns_per_symbol_session": round(plain_c / cells * 1e9, 1),
+        "prepare_seconds": round(prepared, 2),
+        "walk_seconds": round(walk, 3),
+        "largest_equity_difference": difference,
+        "peak_memory_gb": round(resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 2**20, 2),
+    }
+
+
+def main() -> None:
+    """Read the arguments, measure, print."""
+    parser = argparse.ArgumentParser(description="Time the walk against C and plain Python.")
+    parser.add_argument("--json", action="store_true", help="print one JSON object")
+    parser.add_argument("--sessions", type=int, default=5000)
+    parser.add_argument("--symbols", type=int, default=500)
+    parser.add_argument(
+        "--rate", type=float, default=0.03, help="interest a year; 0: no put is exercised early"
+    )
+    parser.add_argument("--times", type=int, default=3, help="runs of which the shortest counts")
+    given = parser.parse_args()
+    figures = measure(given.sessions, given.symbols, given.rate, given.times)
+    if given.json:
+        print(json.dumps(figures))
+    else:
+        print("\n".join(f"{name:28} {value:>12}" for name, value in figures.items()))
+
+
+if __name__ == "__main__":
+    main()
