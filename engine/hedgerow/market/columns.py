@@ -32,6 +32,9 @@ _NAMES = {
 _SYNONYMS = {role: frozenset(names.split()) for role, names in _NAMES.items()}
 
 
+_SHORT = 4  # names up to this length are near to too much
+
+
 @dataclass(frozen=True, slots=True)
 class Wanted:
     """The roles a table must and may have; in the order they are told to a person."""
@@ -106,6 +109,8 @@ def _missing(role: str, columns: list[str], taken: Mapping[str, str], where: str
     near = nearest_word(role.replace("_", ""), free)
     for plain, name in free.items():
         near = near.replace(f"`{plain}`", f"`{name.strip()}`")
+        if not near and nearest_word(plain, (word for word in _SYNONYMS[role] if len(word) > _SHORT)):
+            near = f"did you mean `{name.strip()}`?"
     remedy = f"name it in dataset.yaml: `columns: {{{role}: NAME OF THE COLUMN}}`"
     told = f"{near} {remedy}" if near else remedy
     return Fault(where, 1, 0, "column-missing", f"there is no column for `{role}`", _listed(columns), told)
