@@ -115,8 +115,8 @@ def test_all_faults_of_all_files_come_in_one_pass(tmp_path: Path) -> None:
         "dividends.csv:2: a dividend of -1; cash per share, above 0; leave the cell empty for none",
         "splits.csv:2: `2:1` stands in the column `ratio`; a ratio is one number: new shares for one old; "
         "write 2",
-        "rates.csv:2: an annual rate of 4.5; a fraction below 0.5, or a percentage with its sign; write 0.045 "
-        "or 4.5%",
+        "rates.csv:2: an annual rate of 4.5; a fraction below 0.5, or a percentage with its sign; write "
+        "0.045 or 4.5%",
     ]
 
 
@@ -178,7 +178,8 @@ def test_places_that_are_not_there(tmp_path: Path) -> None:
         (
             "symbol,date,opn,high,low,close",
             "prices.csv:1: there is no column for `open`; the columns are `symbol`, `date`, `opn`, `high`, "
-            "`low`, `close`; did you mean `opn`? name it in dataset.yaml: `columns: {open: NAME OF THE COLUMN}`",
+            "`low`, `close`; did you mean `opn`? name it in dataset.yaml: `columns: {open: "
+            "NAME OF THE COLUMN}`",
         ),
         (
             "symbol,date,open,high,low,Closing Pric",
