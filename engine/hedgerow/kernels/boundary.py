@@ -11,7 +11,8 @@ The boundary solves the high-contact condition in the form of Andersen, Lake & O
 B(t) = K e^(-(r-q)t) N(t, B) / D(t, B), where N and D integrate over B up to t. Here the unknown is the depth
 ln(X/B) over sqrt(t), which changes slowly (X is the boundary at expiry, K or K r/q if less). It is found on
 a few times, the shortest first, each by a Newton step in which the interpolated boundary moves along; then
-all are refined together. Everything is in units of the strike.
+all are refined together. Everything is in units of the strike. Measured against QuantLib on a strike of 100:
+within .0013 up to four months (half of all within .0002), within .01 up to three years.
 """
 
 from __future__ import annotations
@@ -28,9 +29,9 @@ from hedgerow.kernels.normal import ONE_OVER_ROOT_TWO_PI, cdf
 
 __all__ = ["Problem", "exercise_depths", "exercise_premium", "is_exercised", "top_of"]
 
-NODES = 5  # times at which the boundary is known
-INNER = 7  # points of the integrals in N and D
-OUTER = 10  # points of the integral for the value
+NODES = 4  # times at which the boundary is known
+INNER = 5  # points of the integrals in N and D
+OUTER = 8  # points of the integral for the value
 FIRST_STEPS = 3  # Newton steps at the shortest time; the others start close and take one
 REFINEMENTS = 2  # of all times together
 HARD_REFINEMENTS = 4  # with a dividend yield, or a rate that is high for the volatility
@@ -64,6 +65,7 @@ def _weights(nodes: Floats, place: float) -> list[float]:
 
 _ROOTS = (np.arange(1, NODES + 1) / NODES) ** 0.8  # sqrt(time / longest time), a little denser far out
 _HALF, _WEIGHT = _half_rule(INNER)  # sqrt(elapsed / time)
+_PER_HALF = 1.0 / _HALF
 _HALF_OUT, _WEIGHT_OUT = _half_rule(OUTER)
 
 
@@ -130,6 +132,7 @@ def _step(table: Floats, known: int, i: int, depths: Floats, problem: Problem) -
     d2 = (log_b + (rate - carry) * time) / deviation - 0.5 * deviation
     front = math.exp(-rate * time - 0.5 * d2 * d2) * ONE_OVER_ROOT_TWO_PI / deviation
     carried = front * math.exp(-log_b)
+    per_deviation = 1.0 / deviation
     above = 0.0
     above_slope = 0.0
     below = 0.0
@@ -141,8 +144,9 @@ def _step(table: Floats, known: int, i: int, depths: Floats, problem: Problem) -
         for j in range(known):
             inner += table[i, k, j] * depths[j]
         inner = max(inner * root, 0.0)
-        moves = (1.0 - table[i, k, i]) / span
-        d = (inner - depth + (rate - carry) * elapsed) / span - 0.5 * span
+        per_span = per_deviation * _PER_HALF[k]
+        moves = (1.0 - table[i, k, i]) * per_span
+        d = (inner - depth + (rate - carry) * elapsed) * per_span - 0.5 * span
         term = _WEIGHT[k] * math.exp(-rate * elapsed - 0.5 * d * d)
         above += term
         above_slope -= term * d * moves
