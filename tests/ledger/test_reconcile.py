@@ -28,7 +28,7 @@ def changed(log: EventLog, table: str, change: Callable[[np.ndarray], None]) -> 
     return EventLog(log.meta, **tables)
 
 
-@settings(max_examples=60, deadline=None)
+@settings(max_examples=40, deadline=None)
 @given(SEEDS)
 def test_random_logs_add_up(seed: int) -> None:
     """Compares every identity of the ledger on random lives that a separate bookkeeper wrote."""
@@ -67,7 +67,7 @@ def test_account_gain_is_the_sum_of_its_parts(seed: int) -> None:
     assert ledger.by_month["change"].sum() == pytest.approx(gain + log.meta.opening_cash, abs=1e-6)
 
 
-@settings(max_examples=60, deadline=None)
+@settings(max_examples=40, deadline=None)
 @given(SEEDS, some.data())
 def test_one_cent_more_is_caught(seed: int, data: some.DataObject) -> None:
     """Negative control: one cent on any event's cash, or on any day's cash, must be refused."""
@@ -84,7 +84,7 @@ def test_one_cent_more_is_caught(seed: int, data: some.DataObject) -> None:
         reconcile(bent)
 
 
-@settings(max_examples=60, deadline=None)
+@settings(max_examples=40, deadline=None)
 @given(SEEDS, some.data())
 def test_one_share_more_is_caught(seed: int, data: some.DataObject) -> None:
     """Negative control: one share more on any trade must be refused, with its cash made to fit or not."""
