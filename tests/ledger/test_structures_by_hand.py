@@ -28,7 +28,7 @@ def test_reversal_is_flat_whatever_the_stock_does(spot: float, ending: int) -> N
     """Compares short shares at 50 with a long call and a short put struck at 50, at 57 and at 44.
 
     Call bought at 2.00, put sold at 2.30: .30 a share stays, 30 in all. A dividend of .20 is owed, 20;
-    borrowing costs 1.50. At 57 the call is exercised, at 44 the put is assigned; either way the shares come back at 50.
+    borrowing costs 1.50. At 57 the call is exercised, at 44 the put is assigned; the shares come back at 50.
     """
     book = Builder(legs=(CALL, PUT))
     terms = {"net_debit": -5030.0, "reserve": 5030.0, "best_gain": 30.0, "worst_loss": -30.0}
@@ -136,7 +136,7 @@ def test_three_calls_against_one_put() -> None:
     """Compares a different-month collar: a call written three times, the put kept, each month by itself.
 
     January: call 1.00, worthless. February: rolled at 1.50 after .80: -70. March: .90, bought back at .20
-    when the trend turned: +70. Put 3.00 to 1.40: -160. Stock 50 to 49: -100. Result 100 - 70 + 70 - 160 - 100.
+    when the trend turned: +70. Put 3.00 to 1.40: -160. Stock 50 to 49: -100. In all -160.
     """
     book = Builder(sessions=60)
     place = book.open(0, shares=100.0, net_debit=5200.0, best_gain=100.0, worst_loss=500.0)
