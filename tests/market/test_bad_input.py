@@ -106,7 +106,7 @@ def test_all_faults_of_all_files_come_in_one_pass(tmp_path: Path) -> None:
     }
     assert told(faults_of(write(tmp_path, files)), tmp_path) == [
         "dataset.yaml:1:1: unknown word `currncy` in dataset.yaml; one of name, about, source, currency, "
-        "adjustment, reinvested, dividends, recover, columns, dates, decimal, symbols, rate, compounding, "
+        "adjustment, reinvested, amounts, recover, columns, dates, decimal, symbols, rate, compounding, "
         "calendar is allowed; did you mean `currency`?",
         "prices.csv:4: `ten` stands in the column `open`; a number is wanted; " + EMPTY,
         "prices.csv:5: `2020-13-06` is no day of the calendar; the dates of this column are written like "

@@ -20,7 +20,7 @@ PAID = ("as paid", "split adjusted")
 COMPOUNDING = ("continuous", "annual")
 CALENDARS = ("us", "own")
 WORDS = (
-    *("name", "about", "source", "currency", "adjustment", "reinvested", "dividends", "recover"),
+    *("name", "about", "source", "currency", "adjustment", "reinvested", "amounts", "recover"),
     *("columns", "dates", "decimal", "symbols", "rate", "compounding", "calendar"),
 )
 
@@ -51,7 +51,7 @@ class Dataset:
     currency: str = "USD"
     adjustment: str = ""
     reinvested: str = ""
-    dividends: str = PAID[0]
+    amounts: str = PAID[0]
     words: Words = field(default_factory=Words)
     recover: Recover | None = None
     symbols: Mapping[str, Known] = field(default_factory=dict)
@@ -77,7 +77,7 @@ def from_node(node: Node, where: str) -> tuple[Dataset, list[Fault]]:
         currency=reader.text(words.get("currency"), "currency") or "USD",
         adjustment=reader.choice(words.get("adjustment"), "adjustment", ADJUSTMENTS, ""),
         reinvested=reader.choice(words.get("reinvested"), "reinvested", REINVESTED, ""),
-        dividends=reader.choice(words.get("dividends"), "dividends", PAID, PAID[0]),
+        amounts=reader.choice(words.get("amounts"), "amounts", PAID, PAID[0]),
         words=Words(
             columns,
             reader.choice(words.get("dates"), "dates", ("iso", *ORDERS), "").replace("iso", ""),

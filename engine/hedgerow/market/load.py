@@ -189,7 +189,7 @@ def _as_traded(
     if dataset.adjustment == "":
         text = "the adjustment of the prices is not stated; they are taken as traded (`adjustment: none`)"
         return laid, [Finding("adjustment-not-stated", "note", "", "", text)]
-    if dataset.dividends == "split adjusted":
+    if dataset.amounts == "split adjusted":
         later = adjust.later_splits(laid.split)
         laid = replace(laid, dividend=laid.dividend * later, special=laid.special * later)
     if dataset.adjustment == "none":
