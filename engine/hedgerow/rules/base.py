@@ -101,7 +101,7 @@ class Words(BaseModel):
             faults += loosened(error)
         faults += cls.judge(known, made)
         if faults or made is None:
-            refuse_all(faults)
+            refuse_all(dict.fromkeys(faults))  # the outer schema of a union asks twice
         return made
 
     @classmethod

@@ -7,7 +7,7 @@ position that is held (`gain`, `loss`, `days_left`, `held`, `stock_up`, `stock_d
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
-from typing import Annotated, Any, TypeAlias
+from typing import Annotated, Any, Self, TypeAlias
 
 from pydantic import BaseModel, BeforeValidator, Discriminator, Field, Tag
 
@@ -154,16 +154,35 @@ class LegLostTest(_Test):
     leg_lost: LegLost
 
 
+_SOME: dict[str, Any] = {"minItems": 1}
+
+
+def _nothing_joined(word: str, raw: Mapping[Any, Any]) -> list[Loose]:
+    if raw.get(word) not in ([], ()):
+        return []
+    return [Loose((word,), "empty", "holds no condition", "allowed: a list of one condition or more")]
+
+
 class AllOf(_Test):
     """Every one of the conditions holds."""
 
-    conditions: Annotated[tuple[Condition, ...], Field(alias="all", min_length=1, strict=False)]
+    conditions: Annotated[tuple[Condition, ...], Field(alias="all", strict=False, json_schema_extra=_SOME)]
+
+    @classmethod
+    def judge(cls, raw: Mapping[Any, Any], made: Self | None) -> list[Loose]:
+        """A list with nothing in it."""
+        return _nothing_joined("all", raw)
 
 
 class AnyOf(_Test):
     """At least one of the conditions holds."""
 
-    conditions: Annotated[tuple[Condition, ...], Field(alias="any", min_length=1, strict=False)]
+    conditions: Annotated[tuple[Condition, ...], Field(alias="any", strict=False, json_schema_extra=_SOME)]
+
+    @classmethod
+    def judge(cls, raw: Mapping[Any, Any], made: Self | None) -> list[Loose]:
+        """A list with nothing in it."""
+        return _nothing_joined("any", raw)
 
 
 class NotOf(_Test):

@@ -14,6 +14,23 @@ from hedgerow.yamltext import Node, scan, scan_file
 
 __all__ = ["Place", "Tree", "dotted", "tree_of_file", "tree_of_mapping", "tree_of_text"]
 
+AT_THE_KEY = {
+    UNKNOWN_WORD,
+    "bound",
+    "idle",
+    "legs",
+    "never",
+    "no-legs",
+    "one-of",
+    "position-word",
+    "roll",
+    "side",
+    "stop",
+    "unbounded",
+    "uncovered-call",
+}
+"""Codes of faults that are about a word being there, not about its value."""
+
 
 @dataclass(frozen=True, slots=True)
 class Place:
@@ -72,7 +89,7 @@ class Tree:
 
     def fault(self, loose: Loose, root: str = "the file") -> Fault:
         """The fault with its place and the dotted name of what it is about."""
-        place = self.place(loose.path, key=loose.code == UNKNOWN_WORD)
+        place = self.place(loose.path, key=loose.code in AT_THE_KEY)
         subject = f"`{dotted(loose.path, self.plain)}`" if loose.path else root
         told = (f"{subject} {loose.found}", loose.allowed, loose.remedy)
         return Fault(place.where, place.line, place.column, loose.code, *told)

@@ -30,6 +30,7 @@ _HAVE_NONE = {("shares",)}  # where `none` is a word of its own
 def changed(tree: Tree, changes: Tree) -> Tree:
     """The tree with every change of a mapping of dotted paths made; faults go to the new tree's `faults`."""
     result = tree.copy()
+    result.faults += changes.faults
     for key in changes.plain:
         address = str(key)
         try:

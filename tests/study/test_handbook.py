@@ -1,0 +1,74 @@
+"""The handbook of studies: every word and default in it is that of the models."""
+
+from __future__ import annotations
+
+import re
+from pathlib import Path
+from typing import Any
+
+import pytest
+
+from hedgerow.rules.document import tree_of_text
+from hedgerow.study.declare import read_study
+from hedgerow.study.words import AccountWords, CostWords, PricingWords, StudyWords, WindowWords
+from hedgerow.volatility.model import PRESETS, RANGES
+from rule_words import collar
+
+CONFIGS = Path(__file__).parents[2] / "configs"
+HANDBOOK = (CONFIGS / "README.md").read_text(encoding="utf-8")
+ROWS = {
+    cells[1].strip("` "): [cell.strip() for cell in cells[2:-1]]
+    for cells in (line.split("|") for line in HANDBOOK.splitlines())
+    if len(cells) > 4 and cells[1].startswith(" `")
+}
+FIRST, VARIANTS = re.findall(r"```yaml\n(.*?)```", HANDBOOK, flags=re.DOTALL)
+
+
+@pytest.mark.parametrize("model", [StudyWords, AccountWords, CostWords])
+def test_every_word_has_a_row(model: Any) -> None:
+    """Tables hold every word of the models."""
+    assert set(model.words()) <= set(ROWS)
+
+
+def test_every_word_of_pricing_is_there() -> None:
+    """The words of the surface have their rows, those of pricing and of the window are in the text."""
+    assert {*RANGES, "preset", "blend", "observed"} <= set(ROWS)
+    assert all(f"`{word}" in HANDBOOK for word in PricingWords.words())
+    assert all(f"{word}: " in HANDBOOK for word in WindowWords.words())
+    assert all(f"`{name}`" in HANDBOOK for name in PRESETS)
+
+
+@pytest.mark.parametrize("model", [AccountWords, CostWords])
+def test_defaults_in_the_tables(model: Any) -> None:
+    """Compares the column of defaults with the defaults of the models, as they are written."""
+    written = model().model_dump()
+    for word in model.words():
+        value = written[word]
+        shown = str(value).lower() if isinstance(value, bool) else f"{value}"
+        assert ROWS[word][1].strip("`") == shown, word
+
+
+@pytest.mark.parametrize("name", sorted(set(RANGES) - {"history"}))
+def test_defaults_of_the_surface(name: str) -> None:
+    """Compares with the default preset; percents as percents."""
+    value = getattr(PRESETS["default"], name)
+    assert ROWS[name][1] == (f"{value * 100:g}%" if RANGES[name].percent else f"{value:g}")
+
+
+def test_first_example_is_right() -> None:
+    """Read as if it stood beside the shipped studies."""
+    study, faults = read_study(tree_of_text(FIRST, "README.md"), CONFIGS)
+    assert [str(fault) for fault in faults] == []
+    assert study is not None
+    assert [name for name, _ in study.variants] == ["one week", "three weeks"]
+
+
+def test_example_of_variants_is_right() -> None:
+    """Every kind of change in it can be made on a collar with an exit called `cut`."""
+    base = collar(exit=[{"name": "cut", "if": {"loss": {"at_least": "2%"}}}])
+    tree = tree_of_text("name: a\nmarket: ../datasets/orchard-bay\n" + VARIANTS, "README.md")
+    tree.plain["strategy"] = base
+    study, faults = read_study(tree, CONFIGS)
+    assert [str(fault) for fault in faults] == []
+    assert study is not None
+    assert len(study.variants) == 8
