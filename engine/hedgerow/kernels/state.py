@@ -6,11 +6,11 @@ Prices are per share as traded, dates proleptic ordinals, quantities shares (sig
 
 from __future__ import annotations
 
-from typing import NamedTuple
+from typing import Any, NamedTuple
 
 import numpy as np
 
-from hedgerow.kernels.layout import Bytes, Costs, Floats, Ints, Records, SmileModel
+from hedgerow.kernels.layout import MAX_LEGS, Bytes, Costs, Floats, Ints, Records, SmileModel
 
 # what a symbol looks like at one close
 BAR = np.dtype(
@@ -47,6 +47,7 @@ SESSION = np.dtype(
         ("low_tick", np.float64),  # of premiums below 3.00
         ("high_tick", np.float64),
         ("exercise_threshold", np.float64),
+        ("expiry", np.int64, (MAX_LEGS,)),  # chosen for a leg made at this close, ordinal; 0 none listed
     ],
     align=True,
 )
@@ -73,9 +74,14 @@ LEG_SPEC = np.dtype(
     align=True,
 )
 
+MOST_EXITS = 24
+
 OP = np.dtype([("value", np.float64), ("code", np.int32), ("arg", np.int32)], align=True)
 
 # the rule as a whole, the account and the walk's own switches
+COSTS = np.dtype([(name, np.float64) for name in Costs._fields])
+SMILE = np.dtype([(name, np.float64) for name in SmileModel._fields])
+
 PLAN = np.dtype(
     [
         ("shares", np.float64),  # +1 long, -1 short, 0 none
@@ -103,13 +109,34 @@ PLAN = np.dtype(
         ("ladder", np.int32),  # positions a symbol at once
         ("spacing", np.int32),  # sessions between entries of one symbol
         ("cooling", np.int32),  # sessions without entry after a losing position
-        ("settle_cash", np.int32),
+        ("moves", np.int32),  # 1: some leg is rolled or added later
+        ("order", np.int32, (MAX_LEGS,)),  # legs in the order in which their strikes are chosen
+        ("exit_start", np.int32, (MOST_EXITS,)),  # of each exit rule, in the operations
+        ("exit_length", np.int32, (MOST_EXITS,)),
+        ("specs", LEG_SPEC, (MAX_LEGS,)),
     ],
     align=True,
 )
 
 FLAT, ORDERED, OPEN = 0, 1, 2  # a slot's position
 NONE, LIVE, WANTED, LEAVING, MOVING = 0, 1, 2, 3, 4  # a slot's leg: none, held, to open, to close, to roll
+
+LEG_STATE = np.dtype(
+    [
+        ("quantity", np.float64),
+        ("strike", np.float64),
+        ("entry_price", np.float64),
+        ("mid", np.float64),
+        ("wanted_strike", np.float64),
+        ("volatility", np.float64),
+        ("moneyness", np.float64),  # standardized, absolute
+        ("expiry", np.int32),
+        ("wanted_expiry", np.int32),
+        ("status", np.int32),
+        ("right", np.int32),
+    ],
+    align=True,
+)
 
 POSITION = np.dtype(
     [
@@ -136,23 +163,10 @@ POSITION = np.dtype(
         ("left", np.int32),  # session of the last close; -1 never
         ("lost", np.int32),  # 1: the last position of this slot lost
         ("stop_from", np.int32),  # first session at which the stop rests
-    ],
-    align=True,
-)
-
-LEG_STATE = np.dtype(
-    [
-        ("quantity", np.float64),
-        ("strike", np.float64),
-        ("entry_price", np.float64),
-        ("mid", np.float64),
-        ("wanted_strike", np.float64),
-        ("volatility", np.float64),
-        ("moneyness", np.float64),  # standardized, absolute
-        ("expiry", np.int32),
-        ("wanted_expiry", np.int32),
-        ("status", np.int32),
-        ("right", np.int32),
+        ("soonest", np.int32),  # ordinal of the nearest expiry held; 0 none
+        ("orders", np.int32),  # legs to be traded at the next fill
+        ("written_put", np.int32),  # 1: a put is owed
+        ("legs", LEG_STATE, (MAX_LEGS,)),
     ],
     align=True,
 )
@@ -171,6 +185,7 @@ TOTALS = np.dtype(
         ("open", np.int32),
         ("ordered", np.int32),
         ("new_today", np.int32),
+        ("waiting", np.int32),  # entries ordered for the next open
     ],
     align=True,
 )
@@ -187,34 +202,48 @@ class Clock(NamedTuple):
     high_tick: float
 
 
-class Book(NamedTuple):
-    """Where a step writes what happened."""
+class Scene(NamedTuple):
+    """One symbol at one session: today's records and yesterday's (today's again in a walk's first session)."""
 
+    session: int
+    american: int
+    before: Any  # BAR
+    yesterday: Any  # SESSION
+    bar: Any  # BAR
+    today: Any  # SESSION
+
+
+class Desk(NamedTuple):
+    """What every step may need: the plan, the account's totals, and where events are written."""
+
+    plan: Any  # PLAN
+    costs: Any  # COSTS
+    smile: Any  # SMILE
+    totals: Any  # TOTALS
     events: Records
     terms: Records
-    totals: Records  # one record
+    ops: Records
+    scratch: Floats  # (64,)
 
 
 class World(NamedTuple):
-    """Everything the walk needs, by name."""
+    """Everything the walk reads and keeps, by name."""
 
     bars: Records  # (T, N)
     actions: Records  # (T, N)
     sessions: Records  # (T,)
     american: Bytes  # (N,)
-    plan: Records  # (1,)
-    specs: Records  # (legs,)
-    expiries: Ints  # (legs, T)
-    ops: Records
-    exits: Ints  # (exits, 2) start and length into ops
     may_enter: Bytes  # (T, N)
     words: Ints  # (T, N) bits of the day's signals, or (1, 1)
     rank: Floats  # (T, N) score, or (1, 1)
-    costs: Costs
-    smile: SmileModel
+    ops: Records
+    plan: Records  # (1,)
+    costs: Records  # (1,)
+    smile: Records  # (1,)
+    totals: Records  # (1,)
     positions: Records  # (slots,)
-    legs: Records  # (slots, 4)
-    book: Book
+    events: Records
+    terms: Records
     days: Records
     marks: Records
-    scratch: Floats  # (64 + 2 * slots,)
+    scratch: Floats  # (64,)

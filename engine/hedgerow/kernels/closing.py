@@ -1,0 +1,150 @@
+"""The close of one open position: expiries, exit rules, rolls, legs added later."""
+
+from __future__ import annotations
+
+from typing import Any
+
+from hedgerow.kernels.holding import close_clock, leave, move_legs, settle_expired
+from hedgerow.kernels.jit import step
+from hedgerow.kernels.layout import KIND_SIGNALLED, WHY_ADDED, WHY_EXIT_RULE, WHY_ROLL
+from hedgerow.kernels.state import LIVE, MOVING, NONE, OPEN, WANTED, Clock, Desk, Scene
+from hedgerow.kernels.structure import find_strike, leg_price, price_leg
+from hedgerow.kernels.trades import write
+from hedgerow.kernels.triggers import holds
+
+__all__ = ["at_close"]
+
+
+@step
+def _value(desk: Desk, position: Any, bar: Any, clock: Clock) -> float:
+    """Price every leg held at this close; return the position's gain so far."""
+    gain = position.flows + position.shares * bar.close
+    for k in range(desk.plan.legs):
+        leg = position.legs[k]
+        if leg.quantity != 0.0:
+            price_leg(leg, bar.close, bar, clock, desk.smile)
+            gain += leg.quantity * leg.mid
+    return gain
+
+
+@step
+def exit_reason(desk: Desk, position: Any, scene: Scene, word: int) -> int:
+    """The code of the first exit rule that holds, in the order of the file; 0 when none does."""
+    plan = desk.plan
+    moment = (scene.session, scene.today.ordinal)
+    for rule in range(plan.exits):
+        start = plan.exit_start[rule]
+        stop = start + plan.exit_length[rule]
+        if holds(desk.ops[start:stop], position, position.legs, plan.legs, moment, word):
+            return WHY_EXIT_RULE + rule
+    return 0
+
+
+@step
+def _new_terms(desk: Desk, position: Any, scene: Scene, number: int, clock: Clock) -> bool:
+    """Choose expiry and strike for a leg to be written or bought again; whether they are listed."""
+    spec, leg, bar = desk.plan.specs[number], position.legs[number], scene.bar
+    expiry = scene.today.expiry[number]
+    if spec.with_leg >= 0 and position.legs[spec.with_leg].quantity != 0.0:
+        expiry = position.legs[spec.with_leg].expiry
+    leg.wanted_strike = 0.0
+    if expiry <= clock.ordinal:
+        return False
+    leg.wanted_strike = find_strike(desk, position, number, expiry, bar.close, bar, clock)
+    leg.wanted_expiry = expiry
+    return leg.wanted_strike > 0.0
+
+
+@step
+def _brings_money(desk: Desk, position: Any, number: int, bar: Any, clock: Clock) -> bool:
+    """Whether rolling a leg brings in more than leaving it costs; the leg itself is left as it was."""
+    leg = position.legs[number]
+    strike, expiry = leg.strike, leg.expiry
+    leaving = -leg.quantity * leg_price(leg, -leg.quantity, clock, desk.costs)
+    leg.strike, leg.expiry = leg.wanted_strike, leg.wanted_expiry
+    price_leg(leg, bar.close, bar, clock, desk.smile)
+    entering = leg.quantity * leg_price(leg, leg.quantity, clock, desk.costs)
+    leg.strike, leg.expiry = strike, expiry
+    price_leg(leg, bar.close, bar, clock, desk.smile)
+    return leaving + entering < 0.0
+
+
+@step
+def _wants_move(desk: Desk, position: Any, scene: Scene, number: int, word: int) -> bool:
+    """Whether a leg's own roll condition holds, or its condition for being added."""
+    spec = desk.plan.specs[number]
+    start, length = spec.roll_start, spec.roll_length
+    if position.legs[number].status == NONE:
+        start, length = spec.add_start, spec.add_length
+    if length == 0:
+        return False
+    moment = (scene.session, scene.today.ordinal)
+    return holds(desk.ops[start : start + length], position, position.legs, desk.plan.legs, moment, word)
+
+
+@step
+def _note_order(desk: Desk, position: Any, scene: Scene, number: int, reason: int) -> None:
+    """Write that a leg is to be rolled or added."""
+    leg = position.legs[number]
+    row = write(desk, scene.session, position.symbol, position.position, KIND_SIGNALLED, reason)
+    row.leg = number
+    row.strike = leg.wanted_strike
+    row.expiry = leg.wanted_expiry
+    row.spot = scene.bar.close
+    position.orders += 1
+
+
+@step
+def order_legs(desk: Desk, position: Any, scene: Scene, clock: Clock, word: int) -> None:
+    """Choose the legs to be rolled, written again after expiry, or added; they fill with the next orders."""
+    for place in range(desk.plan.legs):
+        k = desk.plan.order[place]
+        leg, spec = position.legs[k], desk.plan.specs[k]
+        again = leg.status == WANTED and leg.quantity == 0.0
+        if not again and not _wants_move(desk, position, scene, k, word):
+            continue
+        if not _new_terms(desk, position, scene, k, clock):
+            continue
+        if leg.status == LIVE:
+            same = leg.wanted_strike == leg.strike and leg.wanted_expiry == leg.expiry
+            if same or (spec.roll_credit == 1 and not _brings_money(desk, position, k, scene.bar, clock)):
+                leg.wanted_strike = 0.0
+                continue
+            leg.status = MOVING
+        else:
+            leg.status = WANTED
+        added = spec.add_length > 0 and leg.status == WANTED and not again
+        _note_order(desk, position, scene, k, WHY_ADDED if added else WHY_ROLL)
+
+
+@step
+def _ask_exits(desk: Desk, position: Any, scene: Scene, word: int) -> None:
+    """Order the position to be closed when an exit rule holds."""
+    reason = exit_reason(desk, position, scene, word)
+    if reason != 0:
+        row = write(desk, scene.session, position.symbol, position.position, KIND_SIGNALLED, reason)
+        row.spot = scene.bar.close
+        position.closing = reason
+
+
+@step
+def at_close(desk: Desk, position: Any, scene: Scene, word: int) -> None:
+    """Everything that happens to one open position at the close of a session with a bar."""
+    plan, bar = desk.plan, scene.bar
+    position.last_close = bar.close
+    position.silent = 0
+    if position.soonest != 0 and position.soonest <= scene.today.ordinal:
+        settle_expired(desk, position, scene, bar.close, scene.today.ordinal)
+        if position.status != OPEN:
+            return
+    clock = close_clock(scene)
+    position.gain = _value(desk, position, bar, clock)
+    if position.closing == 0 and plan.exits > 0:
+        _ask_exits(desk, position, scene, word)
+    if position.closing == 0:
+        if plan.moves == 1:
+            order_legs(desk, position, scene, clock, word)
+            if plan.fill_close == 1 and position.orders > 0:
+                move_legs(desk, position, scene.session, bar.close, bar, clock)
+    elif plan.fill_close == 1:
+        leave(desk, position, scene.session, position.closing, bar.close, bar, clock)

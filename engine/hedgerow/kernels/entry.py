@@ -1,0 +1,206 @@
+"""Entries: an order decided at a close, and its fill."""
+
+from __future__ import annotations
+
+import math
+from typing import Any
+
+from hedgerow.kernels.jit import step
+from hedgerow.kernels.layout import (
+    KIND_DECLINED,
+    KIND_OPENED,
+    LOT_SHARES,
+    WHY_ENTRY,
+    WHY_GONE_ORDER,
+    WHY_NO_CASH,
+    WHY_NO_LOT,
+    WHY_NO_VOLATILITY,
+    WHY_NONE,
+)
+from hedgerow.kernels.payoff import first_expiry, measure
+from hedgerow.kernels.quote import at_the_money_for
+from hedgerow.kernels.state import FLAT, OPEN, ORDERED, WANTED, Clock, Desk, Scene
+from hedgerow.kernels.structure import capital_of, choose_legs, judge, lot_cost, price_leg, spread_share
+from hedgerow.kernels.trades import share_price, trade_leg, trade_shares, write
+
+__all__ = ["consider", "decline", "drop_order", "fill_entry", "take_stock"]
+
+
+@step
+def decline(desk: Desk, session: int, symbol: int, reason: int, quantity: float, spot: float) -> None:
+    """Write that an entry was not made; `symbol` -1 stands for several."""
+    row = write(desk, session, symbol, -1, KIND_DECLINED, reason)
+    row.quantity = quantity
+    row.spot = spot
+
+
+@step
+def consider(desk: Desk, position: Any, scene: Scene, clock: Clock) -> int:
+    """Choose strikes and lots for one candidate at this close; return why not, or 0 when it is ordered."""
+    plan, totals, bar = desk.plan, desk.totals, scene.bar
+    if math.isnan(bar.level) and plan.legs > 0:
+        return WHY_NO_VOLATILITY
+    spot = bar.close
+    why = choose_legs(desk, position, scene.today, spot, bar, clock)
+    if why != WHY_NONE:
+        return why
+    debit, credit, fees = lot_cost(desk, position, spot, clock)
+    shares = plan.shares * LOT_SHARES
+    horizon = first_expiry(position.legs, plan.legs)
+    moment = (spot, bar, clock, desk.smile)
+    figures = measure(position.legs, plan.legs, shares, debit, horizon, moment, desk.scratch)
+    owed = figures[5]
+    wide = spread_share(desk, position, clock)
+    why = judge(plan, debit + owed, credit, LOT_SHARES * spot, figures, wide)
+    if why != WHY_NONE:
+        return why
+    capital = capital_of(debit, owed, fees, shares, spot)
+    budget = plan.per_position * totals.equity
+    free = totals.cash - totals.reserved - totals.promised
+    lots = math.floor(min(budget, free - desk.costs.trade_fee) / capital + 1e-9)
+    if lots < 1.0:
+        return WHY_NO_LOT if budget < capital else WHY_NO_CASH
+    position.lots = lots
+    position.status = ORDERED
+    position.decided = scene.session
+    position.promised = lots * capital
+    totals.promised += position.promised
+    totals.ordered += 1
+    totals.new_today += 1
+    return WHY_NONE
+
+
+@step
+def _take_back(desk: Desk, position: Any) -> None:
+    """Free the cash that an order had been promised."""
+    desk.totals.promised -= position.promised
+    desk.totals.ordered -= 1
+    position.promised = 0.0
+
+
+@step
+def drop_order(desk: Desk, position: Any, session: int) -> None:
+    """Take back an ordered entry whose symbol did not trade."""
+    _take_back(desk, position)
+    position.status = FLAT
+    decline(desk, session, position.symbol, WHY_GONE_ORDER, 1.0, 0.0)
+
+
+@step
+def _begin(desk: Desk, position: Any, session: int, lots: float) -> None:
+    """Give a slot its next position number and clear what the last one left."""
+    totals = desk.totals
+    position.position = totals.next_position
+    totals.next_position += 1
+    totals.open += 1
+    position.status = OPEN
+    position.lots = lots
+    position.entered = session
+    position.shares = 0.0
+    position.flows = 0.0
+    position.outlay = 0.0
+    position.gain = 0.0
+    position.closing = 0
+    position.orders = 0
+    position.silent = 0
+
+
+@step
+def _write_terms(desk: Desk, position: Any, session: int, lot: Any, figures: Any, volatility: float) -> Any:
+    """Write a position's terms; `lot` is (debit, credit, stock price), money and price of one lot."""
+    terms = desk.terms[desk.totals.terms]
+    desk.totals.terms += 1
+    debit, credit, price = lot
+    best, worst, even, odds, gain, owed = figures
+    lots = position.lots
+    terms.session = session
+    terms.symbol = position.symbol
+    terms.position = position.position
+    terms.decided = position.decided
+    terms.first_expiry = first_expiry(position.legs, desk.plan.legs)
+    terms.pad = 0
+    terms.lots = lots
+    terms.shares = desk.plan.shares * LOT_SHARES * lots
+    terms.stock_price = price
+    terms.net_debit = debit * lots
+    terms.option_credit = credit * lots
+    terms.best_gain = best * lots
+    terms.worst_loss = worst * lots
+    terms.break_even = even
+    terms.odds_of_best = odds
+    terms.odds_of_gain = gain
+    terms.reserve = owed * lots
+    terms.volatility = volatility
+    return terms
+
+
+@step
+def _remember(desk: Desk, position: Any, terms: Any, session: int) -> None:
+    """Keep the terms that exits and stops look at."""
+    plan = desk.plan
+    position.stock_price = terms.stock_price
+    position.stop_price = terms.stock_price * (1.0 - plan.shares * plan.stop) if plan.stop > 0.0 else 0.0
+    position.stop_from = session + plan.fill_close
+    position.base = terms.net_debit + terms.reserve
+    position.best_gain = terms.best_gain
+    position.worst_loss = terms.worst_loss
+    position.reserve = terms.reserve
+    desk.totals.reserved += terms.reserve
+
+
+@step
+def take_stock(position: Any, count: int) -> None:
+    """Note the nearest expiry held and whether a put is owed, so that quiet sessions need not look."""
+    position.soonest = first_expiry(position.legs, count)
+    position.written_put = 0
+    for k in range(count):
+        if position.legs[k].quantity < 0.0 and position.legs[k].right == 1:
+            position.written_put = 1
+
+
+@step
+def _buy(desk: Desk, position: Any, session: int, spot: float, clock: Clock) -> None:
+    """Trade the shares and the wanted legs of a position that begins."""
+    shares = desk.plan.shares * LOT_SHARES * position.lots
+    if shares != 0.0:
+        trade_shares(desk, position, session, WHY_ENTRY, shares, spot)
+    for k in range(desk.plan.legs):
+        leg = position.legs[k]
+        if leg.status == WANTED:
+            wanted = leg.quantity * position.lots
+            leg.quantity = 0.0
+            trade_leg(desk, position, k, session, WHY_ENTRY, wanted, clock, spot)
+            leg.entry_price = leg.mid
+    take_stock(position, desk.plan.legs)
+
+
+@step
+def fill_entry(desk: Desk, position: Any, session: int, spot: float, bar: Any, clock: Clock) -> None:
+    """Fill an ordered position at `spot`, with as many of its lots as the cash allows; `bar` knows volatility."""
+    plan, totals = desk.plan, desk.totals
+    _take_back(desk, position)
+    for k in range(plan.legs):
+        if position.legs[k].status == WANTED:
+            price_leg(position.legs[k], spot, bar, clock, desk.smile)
+    debit, credit, fees = lot_cost(desk, position, spot, clock)
+    shares = plan.shares * LOT_SHARES
+    horizon = first_expiry(position.legs, plan.legs)
+    moment = (spot, bar, clock, desk.smile)
+    figures = measure(position.legs, plan.legs, shares, debit, horizon, moment, desk.scratch)
+    capital = capital_of(debit, figures[5], fees, shares, spot)
+    free = totals.cash - totals.reserved - desk.costs.trade_fee
+    lots = min(position.lots, math.floor(free / capital + 1e-9))
+    if lots < 1.0:
+        position.status = FLAT
+        decline(desk, session, position.symbol, WHY_NO_CASH, 1.0, spot)
+        return
+    _begin(desk, position, session, lots)
+    volatility = at_the_money_for(bar, horizon, clock, desk.smile) if horizon > 0 else 0.0
+    price = share_price(shares, spot, desk.costs)
+    terms = _write_terms(desk, position, session, (debit, credit, price), figures, volatility)
+    _remember(desk, position, terms, session)
+    row = write(desk, session, position.symbol, position.position, KIND_OPENED, WHY_ENTRY)
+    row.quantity = lots
+    row.spot = spot
+    position.last_close = spot
+    _buy(desk, position, session, spot, clock)

@@ -1,0 +1,131 @@
+"""What is done to a position as a whole: leaving it, settling its legs, moving them, measuring it again."""
+
+from __future__ import annotations
+
+from typing import Any
+
+from hedgerow.kernels.entry import take_stock
+from hedgerow.kernels.jit import step
+from hedgerow.kernels.layout import LOT_SHARES, WHY_ADDED, WHY_EXPIRY, WHY_LEFT_OVER, WHY_ROLL
+from hedgerow.kernels.payoff import first_expiry, measure
+from hedgerow.kernels.state import MOVING, NONE, WANTED, Clock, Desk, Scene
+from hedgerow.kernels.structure import price_leg
+from hedgerow.kernels.trades import close_position, settle_leg, trade_leg, trade_shares
+
+__all__ = ["after_delivery", "close_clock", "leave", "move_legs", "open_clock", "restate", "settle_expired"]
+
+OPEN_TO_CLOSE_DAYS = 6.5 / 24.0
+
+
+@step
+def open_clock(scene: Scene) -> Clock:
+    """The open of today: yesterday's rate, six and a half hours still to go."""
+    today = scene.today
+    rate = scene.yesterday.rate
+    return Clock(today.ordinal, OPEN_TO_CLOSE_DAYS, rate, scene.american, today.low_tick, today.high_tick)
+
+
+@step
+def close_clock(scene: Scene) -> Clock:
+    """The close of today."""
+    today = scene.today
+    return Clock(today.ordinal, 0.0, today.rate, scene.american, today.low_tick, today.high_tick)
+
+
+@step
+def leave(desk: Desk, position: Any, session: int, reason: int, price: float, bar: Any, clock: Clock) -> None:
+    """Close every leg at its value for the stock at `price`, then the shares, and end the position."""
+    for k in range(desk.plan.legs):
+        leg = position.legs[k]
+        if leg.quantity != 0.0:
+            price_leg(leg, price, bar, clock, desk.smile)
+            trade_leg(desk, position, k, session, reason, -leg.quantity, clock, price)
+        leg.status = NONE
+    if position.shares != 0.0:
+        trade_shares(desk, position, session, reason, -position.shares, price)
+    close_position(desk, position, session, reason)
+
+
+@step
+def after_delivery(desk: Desk, position: Any, session: int, reason: int) -> None:
+    """The shares are gone: end the position, or order what is left of it to be closed."""
+    left = 0
+    for k in range(desk.plan.legs):
+        leg = position.legs[k]
+        if leg.quantity != 0.0:
+            left += 1
+        else:
+            leg.status = NONE
+    position.orders = 0
+    if left == 0:
+        close_position(desk, position, session, reason)
+    elif position.closing == 0:
+        position.closing = WHY_LEFT_OVER
+
+
+@step
+def restate(desk: Desk, position: Any, spot: float, bar: Any, clock: Clock) -> None:
+    """Work out best gain, worst loss, reserve and nearest expiry again after legs have changed."""
+    count = desk.plan.legs
+    horizon = first_expiry(position.legs, count)
+    moment = (spot, bar, clock, desk.smile)
+    figures = measure(position.legs, count, position.shares, position.outlay, horizon, moment, desk.scratch)
+    desk.totals.reserved += figures[5] - position.reserve
+    position.best_gain = figures[0]
+    position.worst_loss = figures[1]
+    position.reserve = figures[5]
+    take_stock(position, count)
+
+
+@step
+def settle_expired(desk: Desk, position: Any, scene: Scene, close: float, last: int) -> None:
+    """Settle every leg that expires on or before the ordinal `last`, and end what ends with it."""
+    plan, session = desk.plan, scene.session
+    held = position.shares
+    again, live = 0, 0
+    for k in range(plan.legs):
+        leg = position.legs[k]
+        if leg.quantity != 0.0 and leg.expiry <= last:
+            least = scene.today.exercise_threshold
+            settle_leg(desk, position, k, session, WHY_EXPIRY, close, least, scene.american == 1)
+            if plan.specs[k].roll_at_expiry == 1:
+                leg.status = WANTED
+                leg.wanted_strike = 0.0
+        again += 1 if leg.status == WANTED else 0
+        live += 1 if leg.quantity != 0.0 else 0
+    take_stock(position, plan.legs)
+    if held != 0.0 and position.shares == 0.0:
+        after_delivery(desk, position, session, WHY_EXPIRY)
+    elif live == 0 and again == 0:
+        if position.shares != 0.0:
+            trade_shares(desk, position, session, WHY_EXPIRY, -position.shares, close)
+        close_position(desk, position, session, WHY_EXPIRY)
+
+
+@step
+def units(position: Any, plan: Any) -> float:
+    """Shares' worth of one contract per 100 shares: the shares held, or the lots where there are none."""
+    return abs(position.shares) if plan.shares != 0.0 else position.lots * LOT_SHARES
+
+
+@step
+def move_legs(desk: Desk, position: Any, session: int, spot: float, bar: Any, clock: Clock) -> None:
+    """Fill the leg orders of a position: buy back what is rolled, then write or buy what is wanted."""
+    for k in range(desk.plan.legs):
+        leg, spec = position.legs[k], desk.plan.specs[k]
+        if leg.wanted_strike <= 0.0 or (leg.status != WANTED and leg.status != MOVING):
+            continue
+        reason = WHY_ADDED if spec.add_length > 0 and leg.status == WANTED else WHY_ROLL
+        if leg.quantity != 0.0:
+            price_leg(leg, spot, bar, clock, desk.smile)
+            trade_leg(desk, position, k, session, reason, -leg.quantity, clock, spot)
+        leg.right = spec.right
+        leg.strike = leg.wanted_strike
+        leg.expiry = leg.wanted_expiry
+        price_leg(leg, spot, bar, clock, desk.smile)
+        wanted = spec.side * spec.ratio * units(position, desk.plan)
+        trade_leg(desk, position, k, session, reason, wanted, clock, spot)
+        leg.entry_price = leg.mid
+        leg.wanted_strike = 0.0
+    position.orders = 0
+    restate(desk, position, spot, bar, clock)

@@ -1,0 +1,331 @@
+"""Sessions in, events out: the one loop over the calendar and the account's symbols."""
+
+from __future__ import annotations
+
+import math
+from typing import Any
+
+from hedgerow.kernels.closing import at_close
+from hedgerow.kernels.day import at_open, overnight, resting_stop, silence
+from hedgerow.kernels.entry import consider, decline, drop_order, fill_entry
+from hedgerow.kernels.holding import close_clock, open_clock
+from hedgerow.kernels.jit import compiled, step
+from hedgerow.kernels.layout import (
+    DAYS_A_YEAR,
+    HAS_BAR,
+    KIND_INTEREST,
+    KIND_SIGNALLED,
+    PAYS,
+    SPLITS,
+    WHY_ENTRY,
+    WHY_FULL,
+    WHY_NONE,
+    Floats,
+)
+from hedgerow.kernels.state import FLAT, OPEN, ORDERED, Desk, Scene, World
+from hedgerow.kernels.trades import cents, post, write
+
+__all__ = ["EVENTS_A_SLOT", "walk"]
+
+EVENTS_A_SLOT = 40  # more than one slot can write in one session
+
+
+@step
+def _earn(world: World, desk: Desk, session: int) -> None:
+    """Interest on yesterday's cash; the part set aside for a position is that position's."""
+    totals, yesterday = desk.totals, world.sessions[session - 1]
+    days = world.sessions[session].ordinal - yesterday.ordinal
+    growth = math.expm1(yesterday.rate * days / DAYS_A_YEAR)
+    if growth == 0.0:
+        return
+    free = totals.cash - totals.reserved
+    if cents(free * growth) != 0.0:
+        row = write(desk, session, -1, -1, KIND_INTEREST, WHY_NONE)
+        row.price = growth
+        row.quantity = free
+        post(desk, row, free * growth)
+    if totals.reserved <= 0.0:
+        return
+    for slot in range(world.positions.shape[0]):
+        position = world.positions[slot]
+        if position.status == OPEN and position.reserve > 0.0:
+            row = write(desk, session, position.symbol, position.position, KIND_INTEREST, WHY_NONE)
+            row.price = growth
+            row.quantity = position.reserve
+            position.flows += post(desk, row, position.reserve * growth)
+
+
+@step
+def _morning(world: World, desk: Desk, session: int) -> None:
+    """Overnight events and closing or leg orders of every open position that has any."""
+    ordinal, before = world.sessions[session].ordinal, session - 1
+    for slot in range(world.positions.shape[0]):
+        position = world.positions[slot]
+        if position.status != OPEN:
+            continue
+        flags = world.bars[session, position.symbol].flags
+        if flags & HAS_BAR == 0:
+            continue
+        passed = position.soonest != 0 and position.soonest < ordinal
+        if passed or position.written_put == 1 or flags & (PAYS | SPLITS) != 0:
+            scene = Scene(
+                session,
+                world.american[position.symbol],
+                world.bars[before, position.symbol],
+                world.sessions[before],
+                world.bars[session, position.symbol],
+                world.sessions[session],
+            )
+            overnight(desk, position, scene, world.actions[session, position.symbol])
+        if position.status == OPEN and (position.closing != 0 or position.orders != 0):
+            at_open(
+                desk,
+                position,
+                Scene(
+                    session,
+                    world.american[position.symbol],
+                    world.bars[before, position.symbol],
+                    world.sessions[before],
+                    world.bars[session, position.symbol],
+                    world.sessions[session],
+                ),
+            )
+
+
+@step
+def _fill_orders(world: World, desk: Desk, session: int, queue: Floats) -> None:
+    """Fill the entries ordered at yesterday's close, in their order."""
+    before = session - 1
+    for n in range(desk.totals.waiting):
+        position = world.positions[int(queue[n])]
+        bar = world.bars[session, position.symbol]
+        if bar.flags & HAS_BAR == 0:
+            drop_order(desk, position, session)
+            continue
+        if bar.flags & SPLITS:
+            _restrike(desk, position, world.actions[session, position.symbol].split)
+        scene = Scene(
+            session,
+            world.american[position.symbol],
+            world.bars[before, position.symbol],
+            world.sessions[before],
+            world.bars[session, position.symbol],
+            world.sessions[session],
+        )
+        fill_entry(desk, position, session, bar.open, scene.before, open_clock(scene))
+    desk.totals.waiting = 0
+
+
+@step
+def _restrike(desk: Desk, position: Any, ratio: float) -> None:
+    """Restate an order's strikes in the new shares of a split."""
+    for k in range(desk.plan.legs):
+        position.legs[k].strike /= ratio
+
+
+@step
+def _evening(world: World, desk: Desk, session: int) -> None:
+    """Stops during the session, then the close, of every open position."""
+    signals, before = world.words.shape[0] > 1, session - 1
+    for slot in range(world.positions.shape[0]):
+        position = world.positions[slot]
+        if position.status != OPEN:
+            continue
+        symbol = position.symbol
+        if world.bars[session, symbol].flags & HAS_BAR == 0:
+            silence(desk, position, session)
+            continue
+        scene = Scene(
+            session,
+            world.american[symbol],
+            world.bars[before, symbol],
+            world.sessions[before],
+            world.bars[session, symbol],
+            world.sessions[session],
+        )
+        if position.stop_price > 0.0 and session >= position.stop_from:
+            resting_stop(desk, position, scene)
+        if position.status == OPEN:
+            at_close(desk, position, scene, world.words[session, symbol] if signals else 0)
+
+
+@step
+def _waits(world: World, plan: Any, session: int, slot: int) -> bool:
+    """Whether a slot may not enter: busy, too soon after its symbol's last entry, or cooling after a loss."""
+    position = world.positions[slot]
+    if position.status != FLAT:
+        return True
+    if plan.cooling > 0 and position.lost == 1 and session - position.left < plan.cooling:
+        return True
+    if plan.ladder == 1:
+        return False
+    first = slot - slot % plan.ladder
+    for other in range(first, first + plan.ladder):
+        held = world.positions[other]
+        if held.status == ORDERED or (held.status == OPEN and session - held.decided < plan.spacing):
+            return True
+    return False
+
+
+@step
+def _free_slot(world: World, plan: Any, session: int, symbol: int) -> int:
+    """A slot of the symbol that may enter; -1 when there is none."""
+    for slot in range(symbol * plan.ladder, (symbol + 1) * plan.ladder):
+        if not _waits(world, plan, session, slot):
+            return slot
+    return -1
+
+
+@step
+def list_candidates(world: World, plan: Any, session: int, queue: Floats) -> int:
+    """Write the slots that may enter into `queue`, best rank first, ties by symbol; return how many."""
+    size = 0
+    ranked = world.rank.shape[0] > 1
+    for symbol in range(world.bars.shape[1]):
+        if world.may_enter[session, symbol] == 0 or world.bars[session, symbol].flags & HAS_BAR == 0:
+            continue
+        slot = _free_slot(world, plan, session, symbol)
+        if slot < 0 or (ranked and math.isnan(world.rank[session, symbol])):
+            continue
+        at = size
+        if ranked:
+            while (
+                at > 0
+                and world.rank[session, int(queue[at - 1]) // plan.ladder] < world.rank[session, symbol]
+            ):
+                queue[at] = queue[at - 1]
+                at -= 1
+        queue[at] = slot
+        size += 1
+    return size
+
+
+@step
+def _decide(world: World, desk: Desk, session: int, queue: Floats) -> None:
+    """Order (fill: open) or fill (fill: close) new positions at this close.
+
+    The ordered slots then stand first in `queue`, in the order in which they are to be filled.
+    """
+    plan, totals, before = desk.plan, desk.totals, max(session - 1, 0)
+    totals.new_today = 0
+    size = list_candidates(world, plan, session, queue)
+    kept = 0
+    for n in range(size):
+        if totals.open + totals.ordered >= plan.most_positions or totals.new_today >= plan.most_new:
+            decline(desk, session, -1, WHY_FULL, float(size - n), 0.0)
+            break
+        slot = int(queue[n])
+        position = world.positions[slot]
+        scene = Scene(
+            session,
+            world.american[position.symbol],
+            world.bars[before, position.symbol],
+            world.sessions[before],
+            world.bars[session, position.symbol],
+            world.sessions[session],
+        )
+        clock = close_clock(scene)
+        why = consider(desk, position, scene, clock)
+        if why != WHY_NONE:
+            decline(desk, session, position.symbol, why, 1.0, scene.bar.close)
+        elif plan.fill_close == 1:
+            fill_entry(desk, position, session, scene.bar.close, scene.bar, clock)
+        else:
+            row = write(desk, session, position.symbol, -1, KIND_SIGNALLED, WHY_ENTRY)
+            row.quantity = position.lots
+            row.spot = scene.bar.close
+            queue[kept] = slot
+            kept += 1
+    totals.waiting = kept
+
+
+@step
+def _mark(world: World, desk: Desk, session: int, keep: bool) -> tuple[float, float]:
+    """Value of shares and of legs at this close, money; keep one mark a position when asked to."""
+    stock, options = 0.0, 0.0
+    totals, count = desk.totals, desk.plan.legs
+    for slot in range(world.positions.shape[0]):
+        position = world.positions[slot]
+        if position.status != OPEN:
+            continue
+        held, written = position.shares * position.last_close, 0.0
+        for k in range(count):
+            written += position.legs[k].quantity * position.legs[k].mid
+        stock += held
+        options += written
+        if keep:
+            row = world.marks[totals.marks]
+            totals.marks += 1
+            row.session = session
+            row.position = position.position
+            row.shares = position.shares
+            row.spot = position.last_close
+            row.gain = position.flows + held + written
+            legs = position.legs
+            row.leg0 = legs[0].quantity * legs[0].mid
+            row.leg1 = legs[1].quantity * legs[1].mid
+            row.leg2 = legs[2].quantity * legs[2].mid
+            row.leg3 = legs[3].quantity * legs[3].mid
+    totals.equity = totals.cash + stock + options
+    return stock, options
+
+
+@step
+def _night(world: World, desk: Desk, session: int, queue: Floats) -> None:
+    """Entries at this close and the day's record."""
+    plan, totals = desk.plan, desk.totals
+    later = plan.fill_close == 1
+    stock, options = _mark(world, desk, session, plan.marks == 1 and not later)
+    _decide(world, desk, session, queue)
+    if later:
+        stock, options = _mark(world, desk, session, plan.marks == 1)
+    day = world.days[totals.days]
+    totals.days += 1
+    day.session = session
+    day.positions = totals.open
+    day.cash = totals.cash
+    day.stock = stock
+    day.options = options
+    day.reserved = totals.reserved
+    day.equity = totals.equity
+
+
+@step
+def _has_room(world: World, desk: Desk) -> bool:
+    """Whether every buffer can take the most that one session can write."""
+    totals, slots = desk.totals, world.positions.shape[0]
+    if totals.events + slots * EVENTS_A_SLOT + 64 > world.events.shape[0]:
+        return False
+    if totals.days >= world.days.shape[0] or totals.terms + slots > world.terms.shape[0]:
+        return False
+    return desk.plan.marks == 0 or totals.marks + slots <= world.marks.shape[0]
+
+
+@compiled
+def walk(world: World, start: int, stop: int, first: int, queue: Floats) -> int:
+    """Walk sessions `start` to `stop` (excluded) of a walk that began at `first`; return where it halted.
+
+    It halts before a session for which the buffers might not suffice; the caller empties them and goes on.
+    `queue` has one place a slot and keeps the order of entries between calls.
+    """
+    desk = Desk(
+        world.plan[0],
+        world.costs[0],
+        world.smile[0],
+        world.totals[0],
+        world.events,
+        world.terms,
+        world.ops,
+        world.scratch,
+    )
+    for session in range(start, stop):
+        if not _has_room(world, desk):
+            return session
+        if session > first:
+            if desk.plan.interest == 1:
+                _earn(world, desk, session)
+            _morning(world, desk, session)
+            _fill_orders(world, desk, session, queue)
+            _evening(world, desk, session)
+        _night(world, desk, session, queue)
+    return stop

@@ -1,0 +1,1 @@
+"""The walk: from a market, a surface and a strategy to an event log."""

@@ -1,0 +1,218 @@
+"""Running the walk: buffers, chunks, progress, and the log that comes out."""
+
+from __future__ import annotations
+
+import pickle
+from collections.abc import Callable
+from dataclasses import dataclass
+
+import numpy as np
+
+from hedgerow.errors import StudyError
+from hedgerow.events.log import EventLog, LegName, LogMeta
+from hedgerow.kernels.jit import COMPILED, forget_cache
+from hedgerow.kernels.layout import (
+    DAY,
+    EVENT,
+    KIND_DEPOSIT,
+    MARK,
+    NO_ROW,
+    TERMS,
+    Bytes,
+    Costs,
+    Floats,
+    Records,
+)
+from hedgerow.kernels.state import COSTS, POSITION, SMILE, TOTALS, World
+from hedgerow.market.table import Market
+from hedgerow.rules.program import Program
+from hedgerow.walk.account import Account
+from hedgerow.walk.inputs import Tape
+
+__all__ = ["Window", "walk_program"]
+
+CHUNK_SESSIONS = 256  # between two looks at the keyboard and the progress bar
+LEAST_EVENTS = 1 << 14
+EVENTS_A_SLOT = 40  # as in `kernels.loop`, which is imported only when it is to run
+BROKEN_CACHE = (EOFError, pickle.UnpicklingError, ImportError, IndexError, KeyError)
+
+Progress = Callable[[int, int], None]
+
+
+@dataclass(frozen=True, slots=True)
+class Window:
+    """The sessions walked: from `start` up to and without `stop`, numbers on the market's axis."""
+
+    start: int
+    stop: int
+
+    @classmethod
+    def of(cls, market: Market, first: str | None = None, last: str | None = None) -> Window:
+        """The window of two ISO dates, both included; None is the market's own end.
+
+        Raises StudyError when it holds no session or reaches outside the data.
+        """
+        dates = market.dates
+        begin = dates[0] if first is None else np.datetime64(first, "D")
+        end = dates[-1] if last is None else np.datetime64(last, "D")
+        span = f"the data hold {dates[0]} to {dates[-1]}"
+        if begin < dates[0] or end > dates[-1]:
+            raise StudyError.one(
+                "window", "outside", f"the window {begin} to {end} reaches outside the data", span
+            )
+        start, stop = np.searchsorted(dates, begin), np.searchsorted(dates, end, side="right")
+        if stop <= start:
+            raise StudyError.one("window", "empty", f"the window {begin} to {end} holds no session", span)
+        return cls(int(start), int(stop))
+
+
+def _plan(program: Program, account: Account, regime: str, marks: bool) -> Records:
+    """The program's plan with the account's part filled in."""
+    plans = program.plan.copy()
+    plan = plans[0]
+    plan["opening_cash"], plan["per_position"] = account.cash, account.per_position
+    plan["most_positions"], plan["most_new"] = account.most_positions, account.most_new_a_day
+    plan["interest"], plan["marks"] = int(account.interest), int(marks)
+    plan["modern"] = int(regime == "modern")
+    return plans
+
+
+def _records(size: int | tuple[int, int], layout: np.dtype[np.void]) -> Records:
+    """Zeroed records with fields as attributes, which uncompiled kernels need."""
+    return np.zeros(size, layout).view(np.recarray)
+
+
+def _sessions(tape: Tape, program: Program) -> Records:
+    """The tape's sessions with the expiry chosen for each leg at each close."""
+    sessions = tape.sessions.copy()
+    for leg in range(program.expiries.shape[0]):
+        sessions["expiry"][:, leg] = program.expiries[leg]
+    return sessions.view(np.recarray)
+
+
+def _one(values: tuple[float, ...], layout: np.dtype[np.void]) -> Records:
+    """One record of plain numbers."""
+    return np.array([tuple(values)], layout).view(np.recarray)
+
+
+def make_world(
+    tape: Tape, program: Program, account: Account, costs: Costs, regime: str, marks: bool
+) -> World:
+    """Everything one walk reads and writes, fresh."""
+    plans = _plan(program, account, regime, marks)
+    ladder = int(plans[0]["ladder"])
+    slots = tape.bars.shape[1] * ladder
+    totals = _records(1, TOTALS)
+    totals[0].cash = account.cash
+    totals[0].equity = account.cash
+    positions = _records(slots, POSITION)
+    positions["symbol"] = np.arange(slots) // ladder
+    positions["left"] = -1
+    return World(
+        bars=tape.bars.view(np.recarray),
+        actions=tape.actions.view(np.recarray),
+        sessions=_sessions(tape, program),
+        american=tape.american,
+        may_enter=program.may_enter,
+        words=program.words,
+        rank=program.rank,
+        ops=program.ops.view(np.recarray),
+        plan=plans.view(np.recarray),
+        costs=_one(costs, COSTS),
+        smile=_one(tape.surface.smile, SMILE),
+        totals=totals,
+        positions=positions,
+        events=_records(max(LEAST_EVENTS, 2 * (slots * EVENTS_A_SLOT + 64)), EVENT),
+        terms=_records(max(4096, 2 * slots), TERMS),
+        days=_records(CHUNK_SESSIONS, DAY),
+        marks=_records(max(4 * slots, CHUNK_SESSIONS * min(slots, 64)) if marks else 1, MARK),
+        scratch=np.zeros(64),
+    )
+
+
+class _Drain:
+    """Empties the walk's buffers into chunks of the log."""
+
+    def __init__(self, world: World) -> None:
+        self.world = world
+        self.chunks: dict[str, list[Records]] = {"events": [], "terms": [], "days": [], "marks": []}
+
+    def take(self) -> None:
+        """Copy what is in the buffers and set them back to empty."""
+        totals = self.world.totals[0]
+        for name in self.chunks:
+            buffer = getattr(self.world, name)
+            self.chunks[name].append(np.array(buffer[: int(totals[name])]).view(np.ndarray))
+            totals[name] = 0
+
+
+def _deposit(world: World, session: int, cash: float) -> None:
+    """Write the opening cash as the first event."""
+    row, totals = world.events[0], world.totals[0]
+    row.session, row.symbol, row.position = session, -1, -1
+    row.kind, row.leg, row.cash = KIND_DEPOSIT, NO_ROW, cash
+    totals.events = 1
+
+
+def _step(world: World, begin: int, end: int, first: int, queue: Floats) -> int:
+    """One call of the compiled walk; a broken cache of compiled code is thrown away and compiled afresh once."""
+    from hedgerow.kernels.loop import walk
+
+    try:
+        return int(walk(world, begin, end, first, queue))
+    except BROKEN_CACHE:
+        if not COMPILED:
+            raise
+        forget_cache()
+        return int(walk(world, begin, end, first, queue))
+
+
+def _meta(market: Market, program: Program, account: Account, variant: str) -> LogMeta:
+    """What the codes of the log stand for."""
+    strategy = program.strategy
+    legs = tuple(LegName(leg.name, "sell" if leg.sold else "buy", leg.right) for leg in strategy.legs)
+    return LogMeta(
+        symbols=market.symbols,
+        dates=market.dates,
+        legs=legs,
+        exits=tuple(rule.name for rule in strategy.exit),
+        strategy=strategy.name,
+        variant=variant,
+        opening_cash=account.cash,
+        currency=market.currency,
+    )
+
+
+def entries_within(may_enter: Bytes, tradable: Bytes) -> Bytes:
+    """The sessions and symbols at which an entry may be decided: the rule's, of the symbols traded."""
+    return np.ascontiguousarray(may_enter & tradable[np.newaxis, :])
+
+
+def walk_program(
+    market: Market,
+    tape: Tape,
+    program: Program,
+    account: Account,
+    costs: Costs,
+    window: Window,
+    *,
+    variant: str = "",
+    regime: str = "modern",
+    marks: bool = True,
+    progress: Progress | None = None,
+) -> EventLog:
+    """Walk a program over a window; return its log. The same inputs give the same bytes.
+
+    `progress` is called with sessions done and to do. The interpreter lock is released while walking.
+    """
+    world = make_world(tape, program, account, costs, regime, marks)
+    drain = _Drain(world)
+    queue = np.zeros(world.positions.shape[0] + 1)
+    _deposit(world, window.start, account.cash)
+    session = window.start
+    while session < window.stop:
+        session = _step(world, session, min(session + CHUNK_SESSIONS, window.stop), window.start, queue)
+        drain.take()
+        if progress is not None:
+            progress(session - window.start, window.stop - window.start)
+    return EventLog.join(_meta(market, program, account, variant), **drain.chunks)
