@@ -150,6 +150,23 @@ def test_a_much_longer_rule_outlasts(long_cycle: str, short_cycle: str) -> None:
     assert not outlasts(shorter, longer)
 
 
+@pytest.mark.parametrize("shorter_days", [20, 60, 120, 300])
+@pytest.mark.parametrize("chooses", list(product(["nearest", "at_least"], repeat=2)))
+def test_just_long_enough(shorter_days: int, chooses: tuple[str, str]) -> None:
+    """Compares, for all pairs of cycles, the first days that are said to outlast with the listed expiries."""
+    for longer_cycle, shorter_cycle in product(LEAST_DAYS, LEAST_DAYS):
+        days = max(shorter_days, LEAST_DAYS[shorter_cycle])
+        shorter = Expiry.model_validate({"days": days, "listed": shorter_cycle, "choose": chooses[1]})
+        near = chosen(shorter)
+        rules = (
+            Expiry.model_validate({"days": longer, "listed": longer_cycle, "choose": chooses[0]})
+            for longer in range(max(days, LEAST_DAYS[longer_cycle]), 1100)
+        )
+        far = chosen(next(rule for rule in rules if outlasts(rule, shorter)))
+        both = (far > 0) & (near > 0)
+        assert (far[both] >= near[both]).all(), (longer_cycle, shorter_cycle)
+
+
 def test_unknown_days_outlast_nothing() -> None:
     """A rule that could not be read, or follows another leg, says nothing by itself."""
     own = Expiry.model_validate({"days": 30})
