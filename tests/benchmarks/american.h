@@ -2,17 +2,15 @@
  *
  * A put may be exercised early for the interest on its strike. Where that is proven to be worth less than half
  * a cent the European value stands. Else the exercise boundary is found by the fixed point of Andersen, Lake
- * & Offengenden 2016 (Journal of Computational Finance 20, system A) in the depth ln(K/B)/sqrt(t), at five
- * times, and early exercise is valued by Kim's integral (Review of Financial Studies 3, 1990).
+ * & Offengenden 2016 (Journal of Computational Finance 20, system A) in the depth ln(K/B)/sqrt(t), at a few
+ * times, and early exercise is valued by Kim's integral (Review of Financial Studies 3, 1990). How many times
+ * and points (NODES, INNER, OUTER) and how many rounds are given to the compiler.
  */
 #ifndef AMERICAN_H
 #define AMERICAN_H
 
 #include <math.h>
 
-#define NODES 5
-#define INNER 7
-#define OUTER 10
 #define ROOT_HALF 0.7071067811865476
 #define DENSITY_AT_ZERO 0.3989422804014327
 #define HALF_TICK 0.005
@@ -123,12 +121,13 @@ static double step(double table[NODES][INNER][NODES], int known, int i, const do
 static void exercise_depths(double *depths, double years, double rate, double volatility) {
     double shortest = years * roots[0] * roots[0], better[NODES];
     depths[0] = first_guess(shortest, rate, volatility) / sqrt(shortest);
-    for (int n = 0; n < 3; n++) depths[0] = step(marching, 1, 0, depths, years, rate, volatility);
+    for (int n = 0; n < FIRST_STEPS; n++) depths[0] = step(marching, 1, 0, depths, years, rate, volatility);
     for (int i = 1; i < NODES; i++) {
         depths[i] = i == 1 ? depths[0] : depths[i - 1] * depths[i - 1] / depths[i - 2];
         depths[i] = step(marching, i + 1, i, depths, years, rate, volatility);
     }
-    for (int n = 0; n < 2; n++) {
+    int rounds = rate > 5.0 * volatility * volatility ? HARD_REFINEMENTS : REFINEMENTS;
+    for (int n = 0; n < rounds; n++) {
         for (int i = 0; i < NODES; i++) better[i] = step(together, NODES, i, depths, years, rate, volatility);
         for (int i = 0; i < NODES; i++) depths[i] = better[i];
     }

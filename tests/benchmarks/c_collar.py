@@ -13,12 +13,21 @@ from pathlib import Path
 import numpy as np
 from bench_market import PUT_DISTANCE, Inputs
 
+from hedgerow.kernels import boundary
 from hedgerow.kernels.layout import Costs, Floats, SmileModel
 
 __all__ = ["COMPILER", "run_c"]
 
 COMPILER = shutil.which("gcc")
 SOURCE = Path(__file__).with_name("collar.c")
+SIZES = (
+    "NODES",
+    "INNER",
+    "OUTER",
+    "FIRST_STEPS",
+    "REFINEMENTS",
+    "HARD_REFINEMENTS",
+)  # of the exercise boundary
 DOUBLES = ctypes.POINTER(ctypes.c_double)
 LONGS = ctypes.POINTER(ctypes.c_int64)
 BYTES = ctypes.POINTER(ctypes.c_uint8)
@@ -66,18 +75,9 @@ def _library() -> ctypes.CDLL:
         raise RuntimeError("the C loop needs gcc, and there is no gcc on the search path of this machine")
     with tempfile.TemporaryDirectory() as folder:
         library = Path(folder) / "collar.so"
-        command = [
-            COMPILER,
-            "-O3",
-            "-std=c11",
-            "-Wall",
-            "-Wextra",
-            "-Werror",
-            "-shared",
-            "-fPIC",
-            "-o",
-            str(library),
-        ]
+        sizes = [f"-D{name}={getattr(boundary, name)}" for name in SIZES]
+        flags = ["-O3", "-std=c11", "-Wall", "-Wextra", "-Werror", "-shared", "-fPIC", *sizes]
+        command = [COMPILER, *flags, "-o", str(library)]
         done = subprocess.run([*command, str(SOURCE), "-lm"], capture_output=True, text=True, check=False)
         if done.returncode != 0:
             raise RuntimeError(f"gcc could not compile the C loop of the benchmark: {done.stderr}")

@@ -1,8 +1,9 @@
 """One option on a stock without dividends in plain Python: European, American where a put may be exercised.
 
 The method is that of Andersen, Lake & Offengenden 2016 (Journal of Computational Finance 20, system A) for
-the exercise boundary, in the depth ln(K/B)/sqrt(t) at five times, and Kim's integral (Review of Financial
-Studies 3, 1990) for what early exercise adds. Where that is proven under half a cent it is left out.
+the exercise boundary, in the depth ln(K/B)/sqrt(t) at a few times, and Kim's integral (Review of Financial
+Studies 3, 1990) for what early exercise adds. Where that is proven under half a cent it is left out. The
+numbers of times, points and rounds are those of the compiled kernel, so that both do the same work.
 """
 
 from __future__ import annotations
@@ -11,9 +12,10 @@ import math
 
 import numpy as np
 
+from hedgerow.kernels.boundary import FIRST_STEPS, HARD_REFINEMENTS, INNER, NODES, OUTER, REFINEMENTS
+
 __all__ = ["american_or_european"]
 
-NODES, INNER, OUTER = 5, 7, 10
 ROOT_HALF = math.sqrt(0.5)
 DENSITY_AT_ZERO = 1.0 / math.sqrt(2.0 * math.pi)
 HALF_TICK = 0.005
@@ -118,16 +120,17 @@ def _step(table: Table, known: int, i: int, depths: list[float], put: tuple[floa
 
 
 def _exercise_depths(put: tuple[float, float, float]) -> list[float]:
-    """Scaled depths of the exercise boundary at five times; `put` is (years, rate, volatility)."""
+    """Scaled depths of the exercise boundary at a few times; `put` is (years, rate, volatility)."""
     years, rate, volatility = put
     shortest = years * ROOTS[0] * ROOTS[0]
     depths = [_first_guess(shortest, rate, volatility) / math.sqrt(shortest)] + [0.0] * (NODES - 1)
-    for _ in range(3):
+    for _ in range(FIRST_STEPS):
         depths[0] = _step(MARCHING, 1, 0, depths, put)
     for i in range(1, NODES):
         depths[i] = depths[0] if i == 1 else depths[i - 1] ** 2 / depths[i - 2]
         depths[i] = _step(MARCHING, i + 1, i, depths, put)
-    for _ in range(2):
+    hard = rate > 5.0 * volatility * volatility
+    for _ in range(HARD_REFINEMENTS if hard else REFINEMENTS):
         depths = [_step(TOGETHER, NODES, i, depths, put) for i in range(NODES)]
     return depths
 
