@@ -64,6 +64,10 @@ def _listed(ordinals: Ints) -> str:
     return f"{shown} and {more:,} more" if more > 0 else shown
 
 
+def _sessions(count: int) -> str:
+    return f"{count:,} session{'' if count == 1 else 's'}"
+
+
 def _presence(market: Market) -> tuple[Mask, Mask]:
     """Return where a symbol has a bar, and where it is between its first and last one, (T, N)."""
     has = ~np.isnan(market.close)
@@ -88,7 +92,7 @@ def extra_sessions(market: Market) -> list[Finding]:
     days = market.ordinals[few]
     if len(days) == 0:
         return []
-    text = f"{len(days):,} sessions on which at most half of the symbols have a price: {_listed(days)}"
+    text = f"{_sessions(len(days))} on which at most half of the symbols have a price: {_listed(days)}"
     return [Finding("extra-session", "warning", "", iso(days[0]), text)]
 
 
@@ -104,7 +108,7 @@ def calendar_sessions(market: Market, calendar: str) -> list[Finding]:
     findings = []
     for code, found, word in (("missing-session", missing, "missing"), ("extra-session", extra, "extra")):
         if len(found):
-            text = f"{len(found):,} sessions {word} against the US calendar: {_listed(found)}"
+            text = f"{_sessions(len(found))} {word} against the US calendar: {_listed(found)}"
             findings.append(Finding(code, "warning", "", iso(found[0]), text))
     return findings
 
@@ -164,7 +168,7 @@ def jumps(market: Market) -> list[Finding]:
             text = f"the price opens at {1.0 / ratio:.4g} times the close before; no split is recorded"
             day = iso(market.ordinals[session])
             findings.append(Finding("unrecorded-split", "warning", market.symbols[index], day, text))
-    moved = (np.abs(whole) > LARGE_MOVE) & ~seen
+    moved = (np.abs(whole) > LARGE_MOVE) & ~seen & (market.split == 1.0)
     return findings + _by_symbol(
         market, moved, "large-move", "note", "{n:,} move{s} beyond +60 % or -37 % in one session"
     )

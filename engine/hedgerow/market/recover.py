@@ -24,7 +24,7 @@ SPLIT_RATIOS = np.array(
 )
 RATIOS = np.concatenate([SPLIT_RATIOS, 1.0 / SPLIT_RATIOS])
 REINVESTED = ("close before", "ex-date close")
-MOST_DECIMALS = 8
+LEAST_DECIMALS, MOST_DECIMALS = 2, 8
 NEAR_RATIO = 0.02
 NEAR_PRICE = 0.25
 CENT = 0.01
@@ -94,8 +94,8 @@ def _steps_at(bar: Ints, close: Floats, low: Floats, high: Floats) -> Steps:
 
 
 def _decimals(values: Floats) -> int:
-    """Return how many decimals the numbers are written with, at most 8."""
-    for decimals in range(MOST_DECIMALS):
+    """Return how many decimals the numbers are written with, from 2 to 8."""
+    for decimals in range(LEAST_DECIMALS, MOST_DECIMALS):
         scaled = values * 10.0**decimals
         if np.all(np.abs(scaled - np.round(scaled)) < 1e-7 + 1e-9 * np.abs(scaled)):
             return decimals
