@@ -26,7 +26,7 @@ class WordReader:
 
     def mapping(self, node: Node | None, allowed: Iterable[str] | None, what: str) -> dict[str, Node]:
         """Return a mapping whose keys are known words; `allowed` of None lets every key pass."""
-        if node is None:
+        if node is None or node.value is None:
             return {}
         if not isinstance(node.value, dict):
             self.refuse(node, "not-a-mapping", f"{what} holds {node.kind}", "words and values are wanted")
@@ -51,8 +51,10 @@ class WordReader:
     def choice(self, node: Node | None, what: str, allowed: Sequence[str], default: str) -> str:
         """Return one of some words, `default` where nothing is written."""
         word = self.text(node, what)
-        if node is None or word in allowed:
-            return word or default
+        if node is None or not word:
+            return default
+        if word in allowed:
+            return word
         told = (f"one of {', '.join(allowed)} is allowed", nearest_word(word, allowed))
         self.refuse(node, "unknown-word", f"`{word}` stands for {what}", *told)
         return default
@@ -60,15 +62,17 @@ class WordReader:
     def flag(self, node: Node | None, what: str, default: bool) -> bool:
         """Return a yes or a no, `default` where nothing is written."""
         word = self.text(node, what).lower()
-        if node is None or word in _YES + _NO:
-            return word in _YES if node is not None else default
+        if node is None or not word:
+            return default
+        if word in _YES + _NO:
+            return word in _YES
         self.refuse(node, "not-a-flag", f"`{word}` stands for {what}", "true or false is allowed")
         return default
 
     def percent(self, node: Node | None, what: str) -> float | None:
         """Return a percentage as a fraction, None where nothing is written; the sign % is wanted."""
         word = self.text(node, what)
-        if node is None:
+        if node is None or not word:
             return None
         found = _PERCENT.fullmatch(word)
         if found is None:
