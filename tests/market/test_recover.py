@@ -57,7 +57,7 @@ def test_the_dividends_of_ibm(real: Market) -> None:
 
 
 def test_the_dividends_of_microsoft(real: Market) -> None:
-    """Microsoft's dividend history, from memory: 0.08 in 2003, its first; 3.00 special with 0.08 on 2004-11-15."""
+    """Microsoft's dividend history, from memory: 0.08 in 2003, its first; 3.00 special on 2004-11-15."""
     regular = on(real, "MSFT", "dividend")
     assert on(real, "MSFT", "special") == {"2004-11-15": 3.0}
     assert regular["2003-02-19"] == 0.08
@@ -184,7 +184,7 @@ def test_what_is_not_wanted_is_not_recovered() -> None:
     assert (alone.split[10, 0], alone.dividend.sum()) == (2.0, 0.0)
     given_splits = Market.from_frame(after, adjustment="none", recover={"splits": False}, splits=splits)
     assert (given_splits.split[10, 0], given_splits.dividend[20, 0]) == (2.0, 0.5)
-    with pytest.raises(DataError, match="say `splits: false` there"):
+    with pytest.raises(DataError, match="or say `splits: false` or"):
         Market.from_frame(after, adjustment="none", recover={}, splits=splits)
 
 

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import json
 from pathlib import Path
-from typing import TYPE_CHECKING, Annotated, Any
+from typing import TYPE_CHECKING, Annotated, Any, NoReturn
 
 import typer
 
@@ -38,11 +38,15 @@ def check(
         market = load_market(place)
     except DataError as error:
         _print_faults(error, place, as_json)
-        raise typer.Exit(error.exit_code) from None
+        _end(error.exit_code)
     if as_json:
         typer.echo(json.dumps(summary(market), ensure_ascii=False, indent=2))
         return
     _print(_described(market), _findings(market))
+
+
+def _end(code: int) -> NoReturn:
+    raise typer.Exit(code)
 
 
 def summary(market: Market) -> dict[str, Any]:

@@ -174,9 +174,12 @@ def _add_recovered(draft: _Draft, axis: Axis, close: Floats, adjusted: Floats) -
     closes = Closes(close, adjusted, axis.ordinals, draft.bars.names)
     found, findings = recovered(closes, draft.actions, draft.dataset)
     if np.isin(draft.actions.kind, np.unique(found.kind)).any():
-        text = "dividends or splits are given and also to be recovered from the adjusted close"
         raise DataError.one(
-            draft.source, "two-places", text, "one place is read", "say `splits: false` there"
+            draft.source,
+            "two-places",
+            "dividends or splits are given, and also to be recovered from the adjusted close",
+            "one place is read",
+            "take the table away, or say `splits: false` or `dividends: false` under `recover`",
         )
     draft.actions = draft.actions.joined(found)
     draft.findings += findings

@@ -38,9 +38,12 @@ def _text(package: str, inner: str) -> str:
     paths = [Path(folder) / inner for folder in folders]
     found = next((path for path in paths if path.is_file()), None)
     if found is None:
-        told = ("the sample prices come from it", "install it with: pip install 'hedgerow[samples]'")
         raise DataError.one(
-            package, "sample-missing", f"the package {package} has no file {inner} here", *told
+            package,
+            "sample-missing",
+            f"the package {package} has no file {inner} here",
+            "the sample prices come from it",
+            "install it with: pip install 'hedgerow[samples]'",
         )
     return gzip.decompress(found.read_bytes()).decode("utf-8")
 

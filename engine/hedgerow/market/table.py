@@ -107,8 +107,12 @@ class Market:
         for name, expected in wanted.items():
             array = np.ascontiguousarray(getattr(self, name))
             if array.shape != expected:
-                found = f"the array `{name}` has the shape {array.shape}"
-                raise DataError.one("market", "market-shape", found, f"{expected} belongs to this market")
+                raise DataError.one(
+                    "market",
+                    "market-shape",
+                    f"the array `{name}` has the shape {array.shape}",
+                    f"{expected} belongs to this market",
+                )
             array.setflags(write=False)
             object.__setattr__(self, name, array)
 
@@ -177,8 +181,13 @@ class Market:
         last = _as_day(date)
         count = int(np.searchsorted(self.ordinals, last.toordinal(), side="right"))
         if count == 0:
-            found, allowed = f"no session up to {last}", f"the first session is {self.dates[0]}"
-            raise DataError.one(self.source, "before-history", found, allowed, "name a later date")
+            raise DataError.one(
+                self.source,
+                "before-history",
+                f"there is no session up to {last}",
+                f"the first session is {self.dates[0]}",
+                "name a later date",
+            )
         ordinal = last.toordinal()
         known = (r for r in self.reports if r.announced_ordinal <= ordinal)
         first, final = bar_range(self.close[:count])
@@ -266,5 +275,6 @@ def _as_day(date: str | datetime.date | np.datetime64) -> datetime.date:
             return datetime.date.fromordinal(date.toordinal())
         return datetime.date.fromisoformat(str(date)[:10] if isinstance(date, np.datetime64) else date)
     except ValueError:
-        found, allowed = f"{date!r} is not a date", "a date is written like 2012-03-30"
-        raise DataError.one("date", "bad-date", found, allowed) from None
+        raise DataError.one(
+            "date", "bad-date", f"{date!r} is not a date", "a date is written like 2012-03-30"
+        ) from None
