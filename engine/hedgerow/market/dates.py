@@ -93,6 +93,10 @@ def _far(cells: Cells, ordinals: Ints) -> list[Fault]:
 def _from_text(cells: Cells, order: str) -> tuple[Ints, list[Fault]]:
     encoded = pc.utf8_trim_whitespace(cells.column.cast(pa.string())).combine_chunks().dictionary_encode()
     codes = pc.fill_null(encoded.indices, -1).to_numpy()
+    plain = _all_iso(encoded.dictionary)
+    if plain is not None and (codes >= 0).all():
+        rows = plain[codes]
+        return rows, _far(cells, rows)
     words: list[str] = encoded.dictionary.to_pylist()
     form, doubt = _common_form([word for word in words if word], order)
     if doubt:
@@ -105,6 +109,15 @@ def _from_text(cells: Cells, order: str) -> tuple[Ints, list[Fault]]:
     rows = table[codes]
     faults = cells.faults(rows == NO_DATE, "bad-date", lambda cell: _told(cell, form))
     return rows, faults + _far(cells, rows)
+
+
+def _all_iso(words: pa.Array) -> Ints | None:
+    """Return the ordinals of words that are all written like 2012-03-30, None when some is not."""
+    try:
+        days = words.cast(pa.date32()).cast(pa.int32())
+    except pa.ArrowInvalid:
+        return None
+    return np.asarray(days.to_numpy(), dtype=np.int64) + EPOCH_ORDINAL
 
 
 def _common_form(words: list[str], order: str) -> tuple[Form, tuple[str, str, str] | None]:
