@@ -16,7 +16,7 @@ from hedgerow.rules.schema import SignalValue
 from hedgerow.volatility.surface import SurfaceModel, build
 from hedgerow.walk.account import DEFAULT_COSTS, Account
 from hedgerow.walk.inputs import Tape, make_tape
-from hedgerow.walk.run import Window, walk_program
+from hedgerow.walk.run import Terms, Window, walk_program
 
 __all__ = ["COLLAR", "PUT_DISTANCE", "Inputs", "Stage", "make_market", "make_stage", "run_walk"]
 
@@ -148,6 +148,6 @@ def make_stage(sessions: int, symbols: int, seed: int = 1, *, rate: float = 0.03
 def run_walk(stage: Stage) -> tuple[Floats, int]:
     """Equity at every close (T,) and how many positions were opened, by the walk."""
     window = Window(0, stage.inputs.shape[0])
-    account, costs = stage.inputs.account, stage.inputs.costs
-    log = walk_program(stage.market, stage.tape, stage.program, account, costs, window, marks=False)
+    terms = Terms(account=stage.inputs.account, costs=stage.inputs.costs, window=window, marks=False)
+    log = walk_program(stage.market, stage.tape, stage.program, terms)
     return np.array(log.days["equity"]), len(log.terms)

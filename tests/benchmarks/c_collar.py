@@ -16,7 +16,7 @@ from bench_market import PUT_DISTANCE, Inputs
 from hedgerow.kernels import boundary
 from hedgerow.kernels.layout import Costs, Floats, SmileModel
 
-__all__ = ["COMPILER", "run_c"]
+__all__ = ["COMPILER", "prepare_c", "run_c"]
 
 COMPILER = shutil.which("gcc")
 SOURCE = Path(__file__).with_name("collar.c")

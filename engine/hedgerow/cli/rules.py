@@ -86,7 +86,7 @@ def words() -> None:
         typer.echo("\n".join(_table(section)) + "\n")
 
 
-def _is_study(tree: Tree) -> bool:
+def is_study(tree: Tree) -> bool:
     plain = tree.plain
     return isinstance(plain, dict) and "legs" not in plain and any(word in plain for word in STUDY_WORDS)
 
@@ -98,7 +98,7 @@ def _checked(path: Path) -> tuple[str, list[Fault]]:
     from hedgerow.textfile import capped
 
     tree = tree_of_file(path)
-    if _is_study(tree):
+    if is_study(tree):
         from hedgerow.study.declare import read_study
 
         study, faults = read_study(tree, path.parent, path)
@@ -117,7 +117,7 @@ def _strategies(path: Path) -> Iterator[Strategy]:
     from hedgerow.rules.load import load_strategy
     from hedgerow.study.declare import load_study
 
-    if not _is_study(tree_of_file(path)):
+    if not is_study(tree_of_file(path)):
         yield load_strategy(path)
         return
     for name, strategy in load_study(path).variants:

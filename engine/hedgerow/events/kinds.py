@@ -72,6 +72,7 @@ WHY_WORDS: tuple[str, ...] = (
     "margin too small",
     "limit reached",
     "market gone before the fill",
+    "no bid for a leg to be sold",
 )
 """Word of each WHY_ code below WHY_EXIT_RULE, by the code."""
 
@@ -81,6 +82,7 @@ DECLINED_REASONS: tuple[int, ...] = (
     at.WHY_MARGIN,
     at.WHY_LIMIT,
     at.WHY_GONE_ORDER,
+    at.WHY_NO_BID,
 )
 """Codes that say why an entry was not made."""
 

@@ -12,6 +12,7 @@ from hedgerow.kernels.layout import (
     LOT_SHARES,
     WHY_ENTRY,
     WHY_GONE_ORDER,
+    WHY_NO_BID,
     WHY_NO_CASH,
     WHY_NO_LOT,
     WHY_NO_VOLATILITY,
@@ -20,7 +21,15 @@ from hedgerow.kernels.layout import (
 from hedgerow.kernels.payoff import first_expiry, measure
 from hedgerow.kernels.quote import at_the_money_for
 from hedgerow.kernels.state import FLAT, OPEN, ORDERED, WANTED, Clock, Desk, Scene
-from hedgerow.kernels.structure import capital_of, choose_legs, judge, lot_cost, price_leg, spread_share
+from hedgerow.kernels.structure import (
+    capital_of,
+    choose_legs,
+    has_bids,
+    judge,
+    lot_cost,
+    price_leg,
+    spread_share,
+)
 from hedgerow.kernels.trades import share_price, trade_leg, trade_shares, write
 
 __all__ = ["consider", "decline", "drop_order", "fill_entry", "take_stock"]
@@ -190,9 +199,10 @@ def fill_entry(desk: Desk, position: Any, session: int, spot: float, bar: Any, c
     capital = capital_of(debit, figures[5], fees, shares, spot)
     free = totals.cash - totals.reserved - desk.costs.trade_fee
     lots = min(position.lots, math.floor(free / capital + 1e-9))
-    if lots < 1.0:
+    bid = has_bids(desk, position, clock)
+    if lots < 1.0 or not bid:
         position.status = FLAT
-        decline(desk, session, position.symbol, WHY_NO_CASH, 1.0, spot)
+        decline(desk, session, position.symbol, WHY_NO_CASH if bid else WHY_NO_BID, 1.0, spot)
         return
     _begin(desk, position, session, lots)
     volatility = at_the_money_for(bar, horizon, clock, desk.smile) if horizon > 0 else 0.0

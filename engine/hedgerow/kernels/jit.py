@@ -17,7 +17,7 @@ from collections.abc import Callable
 from pathlib import Path
 from typing import Any, TypeVar
 
-__all__ = ["COMPILED", "cache_folder", "compiled", "forget_cache", "step"]
+__all__ = ["COMPILED", "cache_folder", "compiled", "forget_cache", "is_compiled", "step"]
 
 F = TypeVar("F", bound=Callable[..., Any])
 
@@ -71,6 +71,11 @@ def cache_folder() -> Path:
     return _folder
 
 
+def is_compiled() -> bool:
+    """Whether the walk has been compiled on this machine, or need not be."""
+    return not COMPILED or any(cache_folder().rglob("loop.walk*.nbc"))
+
+
 def forget_cache() -> None:
     """Empty the folder of compiled code, so that the next call compiles afresh."""
     shutil.rmtree(cache_folder(), ignore_errors=True)
@@ -98,7 +103,7 @@ def compiled(function: F) -> F:
 
     No fast-math, so that compiled and uncompiled runs agree to the last bit; the interpreter lock is released.
     """
-    return _wrap(function)
+    return _wrap(function, _nrt=True)  # said aloud: a caller's flags would be taken over otherwise
 
 
 def step(function: F) -> F:

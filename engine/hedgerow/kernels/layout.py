@@ -69,7 +69,7 @@ SNAP_NEAREST, SNAP_UP, SNAP_DOWN = 0, 1, 2
     KIND_BORROW,  # cost of shares sold short
     KIND_DECLINED,  # an entry not made, with its reason; quantity = how many
     KIND_SIGNALLED,  # an exit, roll or entry decided at this close, to fill later
-    KIND_CLOSED,  # a position is over; cash = its whole result
+    KIND_CLOSED,  # a position is over; price = its whole result
     KIND_GONE,  # the history of a symbol ended
 ) = range(15)
 
@@ -103,7 +103,8 @@ SNAP_NEAREST, SNAP_UP, SNAP_DOWN = 0, 1, 2
     WHY_MARGIN,
     WHY_LIMIT,
     WHY_GONE_ORDER,  # an order dropped because its market was gone
-) = range(28)
+    WHY_NO_BID,  # nobody would pay a tick for a leg to be sold
+) = range(29)
 WHY_EXIT_RULE = 100  # + the number of the exit rule, in the order of the file
 
 SHARES_ROW = -1  # `leg` of an event about shares

@@ -11,8 +11,8 @@ from typing import Any
 
 from hedgerow.kernels.jit import step
 from hedgerow.kernels.layout import CALL, DAYS_A_YEAR, Floats
-from hedgerow.kernels.lognormal import chance_above, european
-from hedgerow.kernels.quote import at_the_money_for, escrow, intrinsic
+from hedgerow.kernels.lognormal import chance_above, european, intrinsic
+from hedgerow.kernels.quote import at_the_money_for, escrow
 from hedgerow.kernels.smile import volatility_at
 from hedgerow.kernels.state import Clock
 

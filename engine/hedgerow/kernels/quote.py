@@ -6,22 +6,16 @@ import math
 from typing import Any
 
 from hedgerow.kernels.american import american_or_european
+from hedgerow.kernels.cash import american_cash
 from hedgerow.kernels.jit import step
-from hedgerow.kernels.layout import CALL, DAYS_A_YEAR
-from hedgerow.kernels.lognormal import european
+from hedgerow.kernels.layout import DAYS_A_YEAR
+from hedgerow.kernels.lognormal import european, intrinsic
 from hedgerow.kernels.smile import at_the_money, volatility_at
 from hedgerow.kernels.state import Clock
 
-__all__ = ["at_the_money_for", "escrow", "forward_of", "intrinsic", "quote"]
+__all__ = ["at_the_money_for", "escrow", "forward_of", "next_dividend", "quote"]
 
 EXERCISE_TICK = 0.01  # an early exercise premium under half of this is left out
-
-
-@step
-def intrinsic(right: int, spot: float, strike: float) -> float:
-    """What exercise at once brings, per share; never below zero."""
-    gap = spot - strike if right == CALL else strike - spot
-    return gap if gap > 0.0 else 0.0
 
 
 @step
@@ -55,12 +49,33 @@ def at_the_money_for(bar: Any, expiry: int, clock: Clock, smile: Any) -> float:
 
 
 @step
-def _before_dividend(spot: float, strike: float, bar: Any, clock: Clock, volatility: float) -> float:
-    """A call's value when exercised just before the next projected dividend; zero when none is ahead."""
-    ahead = bar.pay_ordinal - clock.ordinal + clock.extra_days
-    if bar.pay_ordinal <= clock.ordinal:
-        return 0.0
-    return european(CALL, spot, strike, ahead / DAYS_A_YEAR, clock.rate, 0.0, volatility)
+def next_dividend(bar: Any, clock: Clock) -> int:
+    """Ordinal of the first projected dividend after the clock's day; 0 when none is projected."""
+    due = bar.pay_ordinal
+    while 0 < due <= clock.ordinal:
+        if bar.pay_gap <= 0:
+            return 0
+        due += bar.pay_gap
+    return due
+
+
+@step
+def _american(
+    right: int,
+    spot: float,
+    strike: float,
+    years: float,
+    bar: Any,
+    clock: Clock,
+    volatility: float,
+    held: float,
+) -> float:
+    """Value of an American option whose life holds projected dividends of present value `held`, or none."""
+    if held == 0.0:
+        return american_or_european(right, spot, strike, years, clock.rate, 0.0, volatility, EXERCISE_TICK)
+    years_to_ex = (next_dividend(bar, clock) - clock.ordinal + clock.extra_days) / DAYS_A_YEAR
+    amount = held * math.exp(clock.rate * years_to_ex)
+    return american_cash(right, spot, strike, years, clock.rate, volatility, years_to_ex, amount)
 
 
 @step
@@ -86,7 +101,4 @@ def quote(
     deviations = abs(away) / (atm * math.sqrt(years))
     if clock.american == 0:
         return european(right, base, strike, years, clock.rate, 0.0, volatility), volatility, deviations
-    mid = american_or_european(right, base, strike, years, clock.rate, 0.0, volatility, EXERCISE_TICK)
-    if right == CALL and held > 0.0:
-        mid = max(mid, _before_dividend(spot, strike, bar, clock, volatility))
-    return mid, volatility, deviations
+    return _american(right, spot, strike, years, bar, clock, volatility, held), volatility, deviations

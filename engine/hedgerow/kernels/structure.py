@@ -12,6 +12,7 @@ from hedgerow.kernels.layout import (
     WHY_BEST_OVER_WORST,
     WHY_NET_CREDIT,
     WHY_NET_DEBIT,
+    WHY_NO_BID,
     WHY_NO_EXPIRY,
     WHY_NO_STRIKE,
     WHY_NONE,
@@ -29,6 +30,7 @@ __all__ = [
     "capital_of",
     "choose_legs",
     "find_strike",
+    "has_bids",
     "judge",
     "leg_price",
     "lot_cost",
@@ -101,7 +103,17 @@ def choose_legs(desk: Desk, position: Any, today: Any, spot: float, bar: Any, cl
         leg.quantity = spec.side * spec.ratio * LOT_SHARES
         leg.status = WANTED
         price_leg(leg, spot, bar, clock, desk.smile)
-    return WHY_NONE
+    return WHY_NONE if has_bids(desk, position, clock) else WHY_NO_BID
+
+
+@step
+def has_bids(desk: Desk, position: Any, clock: Clock) -> bool:
+    """Whether every wanted leg that is to be sold finds somebody who pays for it."""
+    for k in range(desk.plan.legs):
+        leg = position.legs[k]
+        if leg.status == WANTED and leg.quantity < 0.0 and leg_price(leg, -1.0, clock, desk.costs) <= 0.0:
+            return False
+    return True
 
 
 @step

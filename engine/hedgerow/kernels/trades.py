@@ -19,7 +19,7 @@ from hedgerow.kernels.layout import (
     SHARES_ROW,
 )
 from hedgerow.kernels.listing import fill_price
-from hedgerow.kernels.quote import intrinsic
+from hedgerow.kernels.lognormal import intrinsic
 from hedgerow.kernels.state import FLAT, LIVE, NONE, Clock, Desk
 
 __all__ = [
@@ -133,7 +133,8 @@ def trade_leg(
     row.quantity = quantity
     row.mid = leg.mid
     row.price = fill_price(quantity, leg.mid, leg.moneyness, clock.low_tick, clock.high_tick, desk.costs)
-    row.fee = desk.costs.contract_fee * abs(quantity) / LOT_SHARES
+    if row.price > 0.0:  # a leg without a bid is left to lapse, which costs nothing
+        row.fee = desk.costs.contract_fee * abs(quantity) / LOT_SHARES
     position.flows += post(desk, row, -quantity * row.price - row.fee)
     position.outlay += quantity * row.price
     leg.quantity += quantity

@@ -7,7 +7,7 @@ the position is left to the walk.
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -16,7 +16,7 @@ from hedgerow.errors import RulesError
 from hedgerow.kernels import layout
 from hedgerow.kernels.layout import Bytes, Floats, Ints, Records
 from hedgerow.kernels.state import MOST_EXITS, OP, PLAN
-from hedgerow.market.sessions import choose_expiries
+from hedgerow.market.sessions import Regime, choose_expiries
 from hedgerow.rules.base import Bounds
 from hedgerow.rules.condition import walked
 from hedgerow.rules.schema import (
@@ -76,6 +76,10 @@ class Program:
     words: Ints  # (T, N), or (1, 1) without signals in exits and rolls
     rank: Floats  # (T, N), or (1, 1) without ranking
 
+    def entering(self, traded: Bytes) -> Program:
+        """The same program, entering only symbols marked in `traded`, shape (N,)."""
+        return replace(self, may_enter=np.ascontiguousarray(self.may_enter & traded[np.newaxis, :]))
+
 
 @dataclass
 class _Bits:
@@ -125,9 +129,9 @@ def signal_truth(test: SignalTest, values: Values) -> Truth:
 def truth_of(condition: Condition, values: Values) -> Truth:
     """Where a condition about the market alone holds, shape (T, N)."""
     if isinstance(condition, AllOf):
-        return np.logical_and.reduce([truth_of(part, values) for part in condition.conditions])
+        return np.asarray(np.logical_and.reduce([truth_of(part, values) for part in condition.conditions]))
     if isinstance(condition, AnyOf):
-        return np.logical_or.reduce([truth_of(part, values) for part in condition.conditions])
+        return np.asarray(np.logical_or.reduce([truth_of(part, values) for part in condition.conditions]))
     if isinstance(condition, NotOf):
         return ~truth_of(condition.condition, values)
     assert isinstance(condition, SignalTest)
@@ -273,12 +277,12 @@ def _plan(strategy: Strategy, bits: _Bits) -> Records:
     plan["shares"] = {"long": 1.0, "short": -1.0, "none": 0.0}[strategy.shares]
     plan["stop"] = 0.0 if strategy.stop is None else strategy.stop.distance
     plan["net_credit"] = float(accept is not None and accept.net_credit is True)
-    _bounds(plan, "", "net_debit_most", accept and accept.net_debit)
-    _bounds(plan, "worst_least", "worst_most", accept and accept.worst_loss)
-    _bounds(plan, "best_least", "best_most", accept and accept.best_gain)
-    _bounds(plan, "odds_least", "odds_most", accept and accept.odds_of_best)
-    _bounds(plan, "ratio_least", "", accept and accept.best_over_worst)
-    _bounds(plan, "", "spread_most", accept and accept.spread_to_premium)
+    _bounds(plan, "", "net_debit_most", None if accept is None else accept.net_debit)
+    _bounds(plan, "worst_least", "worst_most", None if accept is None else accept.worst_loss)
+    _bounds(plan, "best_least", "best_most", None if accept is None else accept.best_gain)
+    _bounds(plan, "odds_least", "odds_most", None if accept is None else accept.odds_of_best)
+    _bounds(plan, "ratio_least", "", None if accept is None else accept.best_over_worst)
+    _bounds(plan, "", "spread_most", None if accept is None else accept.spread_to_premium)
     plan["fill_close"] = int(strategy.fill == "close")
     plan["legs"], plan["exits"] = len(strategy.legs), len(strategy.exit)
     plan["ladder"] = 1

@@ -24,12 +24,13 @@ from hedgerow.kernels.layout import (
     Records,
 )
 from hedgerow.kernels.state import COSTS, POSITION, SMILE, TOTALS, World
+from hedgerow.market.sessions import Regime
 from hedgerow.market.table import Market
 from hedgerow.rules.program import Program
 from hedgerow.walk.account import Account
 from hedgerow.walk.inputs import Tape
 
-__all__ = ["Window", "walk_program"]
+__all__ = ["Terms", "Window", "walk_program"]
 
 CHUNK_SESSIONS = 256  # between two looks at the keyboard and the progress bar
 LEAST_EVENTS = 1 << 14
@@ -66,6 +67,17 @@ class Window:
         return cls(int(start), int(stop))
 
 
+@dataclass(frozen=True, slots=True)
+class Terms:
+    """What a walk is run with; `marks` keeps one mark a position and close, not only those of the last."""
+
+    account: Account
+    costs: Costs
+    window: Window
+    regime: Regime = "modern"
+    marks: bool = True
+
+
 def _plan(program: Program, account: Account, regime: str, marks: bool) -> Records:
     """The program's plan with the account's part filled in."""
     plans = program.plan.copy()
@@ -95,11 +107,10 @@ def _one(values: tuple[float, ...], layout: np.dtype[np.void]) -> Records:
     return np.array([tuple(values)], layout).view(np.recarray)
 
 
-def make_world(
-    tape: Tape, program: Program, account: Account, costs: Costs, regime: str, marks: bool
-) -> World:
+def make_world(tape: Tape, program: Program, terms: Terms) -> World:
     """Everything one walk reads and writes, fresh."""
-    plans = _plan(program, account, regime, marks)
+    account, marks = terms.account, terms.marks
+    plans = _plan(program, account, terms.regime, marks)
     ladder = int(plans[0]["ladder"])
     slots = tape.bars.shape[1] * ladder
     totals = _records(1, TOTALS)
@@ -118,14 +129,14 @@ def make_world(
         rank=program.rank,
         ops=program.ops.view(np.recarray),
         plan=plans.view(np.recarray),
-        costs=_one(costs, COSTS),
+        costs=_one(terms.costs, COSTS),
         smile=_one(tape.surface.smile, SMILE),
         totals=totals,
         positions=positions,
         events=_records(max(LEAST_EVENTS, 2 * (slots * EVENTS_A_SLOT + 64)), EVENT),
         terms=_records(max(4096, 2 * slots), TERMS),
         days=_records(CHUNK_SESSIONS, DAY),
-        marks=_records(max(4 * slots, CHUNK_SESSIONS * min(slots, 64)) if marks else 1, MARK),
+        marks=_records(max(4 * slots, CHUNK_SESSIONS * min(slots, 64)) if marks else slots, MARK),
         scratch=np.zeros(64),
     )
 
@@ -183,35 +194,31 @@ def _meta(market: Market, program: Program, account: Account, variant: str) -> L
     )
 
 
-def entries_within(may_enter: Bytes, tradable: Bytes) -> Bytes:
-    """The sessions and symbols at which an entry may be decided: the rule's, of the symbols traded."""
-    return np.ascontiguousarray(may_enter & tradable[np.newaxis, :])
-
-
 def walk_program(
     market: Market,
     tape: Tape,
     program: Program,
-    account: Account,
-    costs: Costs,
-    window: Window,
-    *,
+    terms: Terms,
     variant: str = "",
-    regime: str = "modern",
-    marks: bool = True,
     progress: Progress | None = None,
 ) -> EventLog:
     """Walk a program over a window; return its log. The same inputs give the same bytes.
 
     `progress` is called with sessions done and to do. The interpreter lock is released while walking.
     """
-    world = make_world(tape, program, account, costs, regime, marks)
+    account, window = terms.account, terms.window
+    world = make_world(tape, program, terms)
     drain = _Drain(world)
     queue = np.zeros(world.positions.shape[0] + 1)
     _deposit(world, window.start, account.cash)
     session = window.start
     while session < window.stop:
-        session = _step(world, session, min(session + CHUNK_SESSIONS, window.stop), window.start, queue)
+        if session + CHUNK_SESSIONS < window.stop:
+            stop = session + CHUNK_SESSIONS
+        else:  # the last session is always marked, so that what is still open has a value
+            stop = window.stop - 1 if session < window.stop - 1 else window.stop
+            world.plan[0].marks = int(terms.marks or stop == window.stop)
+        session = _step(world, session, stop, window.start, queue)
         drain.take()
         if progress is not None:
             progress(session - window.start, window.stop - window.start)

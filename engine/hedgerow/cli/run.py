@@ -1,0 +1,130 @@
+"""`hedgerow run`: replay a study, or one strategy on a market."""
+
+from __future__ import annotations
+
+import json
+import sys
+from pathlib import Path
+from typing import TYPE_CHECKING, Annotated, Any
+
+import typer
+
+if TYPE_CHECKING:
+    from hedgerow.study.compare import StudyResult
+    from hedgerow.study.declare import Study
+
+__all__ = ["run"]
+
+File = Annotated[
+    Path, typer.Argument(help="A study file, or a strategy file with --market.", show_default=False)
+]
+MarketOption = Annotated[
+    Path | None, typer.Option("--market", help="Prices for a strategy file: a folder, CSV or Parquet.")
+]
+Out = Annotated[Path | None, typer.Option("--out", help="Folder for the ledgers; runs/NAME when not given.")]
+Replace = Annotated[bool, typer.Option("--replace", help="Overwrite a finished run in that folder.")]
+Json = Annotated[bool, typer.Option("--json", help="Print one JSON object for programs.")]
+Quiet = Annotated[bool, typer.Option("--quiet", help="Write the folder and print only its name.")]
+Workers = Annotated[int, typer.Option("--workers", min=1, max=64, help="Threads for the variants.")]
+
+
+def run(
+    file: File,
+    market: MarketOption = None,
+    out: Out = None,
+    replace: Replace = False,
+    as_json: Json = False,
+    quiet: Quiet = False,
+    workers: Workers = 2,
+) -> None:
+    """Replay a study and compare its variants; leave a folder of ledgers."""
+    from hedgerow.report.files import check_place, write_run
+
+    study = _study(file, market)
+    place = out or _usual_place(study.name)
+    check_place(place, replace)
+    result = _walked(study, workers)
+    ledgers = [one.ledger for one in result.results]
+    summaries = [one.summary for one in result.results]
+    write_run(place, ledgers, summaries, result.record(), replace=replace)
+    if as_json:
+        described = {"folder": str(place), "variants": {one.variant: one.as_dict() for one in summaries}}
+        typer.echo(
+            json.dumps(described | {"cautions": list(_cautions(result))}, ensure_ascii=False, indent=2)
+        )
+    elif quiet:
+        typer.echo(place)
+    else:
+        _show(result, place)
+
+
+def _study(file: Path, market: Path | None) -> Study:
+    """The study of a file; a strategy file needs the market beside it. Raises InputError."""
+    from hedgerow.cli.rules import is_study
+    from hedgerow.errors import StudyError
+    from hedgerow.rules.document import tree_of_file
+    from hedgerow.study.declare import load_study, study_of_strategy
+
+    if is_study(tree_of_file(file)):
+        if market is not None:
+            found = "a study file names its own market, and --market was given too"
+            raise StudyError.one(str(file), "two-markets", found, "either is enough", "leave --market out")
+        return load_study(file)
+    if market is None:
+        found = "this is a strategy file, which does not say on which prices to run"
+        raise StudyError.one(str(file), "no-market", found, "a market is needed", "add --market FOLDER")
+    return study_of_strategy(file, market)
+
+
+def _usual_place(name: str) -> Path:
+    """runs/ and the study's name as a file name; a number is added where a run stands already."""
+    plain = "".join(letter if letter.isalnum() else "-" for letter in name.lower()).strip("-") or "run"
+    place, number = Path("runs") / plain, 2
+    while place.exists():
+        place, number = Path("runs") / f"{plain}-{number}", number + 1
+    return place
+
+
+def _walked(study: Study, workers: int) -> StudyResult:
+    """Run a study behind a progress bar."""
+    from hedgerow.cli.progress import progress
+    from hedgerow.kernels.jit import is_compiled
+    from hedgerow.study.compare import bench_of, run_study
+
+    if not is_compiled() and sys.stderr.isatty():
+        typer.echo(
+            "First run on this machine: compiling, about a minute; later runs start at once.", err=True
+        )
+    bench, window = bench_of(study)
+    whole = (window.stop - window.start) * len(study.variants)
+    with progress("Replaying", whole) as counter:
+        return run_study(study, market=bench.market, workers=workers, progress=counter.advance)
+
+
+def _cautions(result: StudyResult) -> tuple[str, ...]:
+    """The cautions of this result."""
+    from hedgerow.report.cautions import Basis, cautions
+
+    return cautions(Basis(len(result.results), result.assumptions, result.ended))
+
+
+def _show(result: StudyResult, place: Path) -> None:
+    """Print the comparison, what the data check found, and where the ledgers lie."""
+    from hedgerow.report.text import Comparison, print_comparison
+
+    study = result.study
+    summaries = [one.summary for one in result.results]
+    print_comparison(Comparison(summaries, study.name, study.question, _cautions(result)))
+    warnings = sum(finding.severity == "warning" for finding in result.market.findings)
+    if warnings:
+        typer.echo(f"\nThe data check has {warnings} warnings: hedgerow data check {study.market}")
+    typer.echo(f"\nEvery trade and every cent: {place}")
+    _hint(summaries)
+
+
+def _hint(summaries: list[Any]) -> None:
+    """Say what to change where nothing was ever traded."""
+    for summary in summaries:
+        if summary.positions == 0:
+            reasons = ", ".join(f"{word} ({count:,})" for word, count in summary.declined.items())
+            typer.echo(f"{summary.variant}: no position was ever opened. Declined: {reasons or 'nothing'}.")

@@ -1,0 +1,122 @@
+"""A study run: every variant on the same market and days, side by side."""
+
+from __future__ import annotations
+
+import importlib.metadata
+import platform
+from collections.abc import Callable
+from concurrent.futures import ThreadPoolExecutor
+from dataclasses import dataclass
+from pathlib import Path
+from typing import Any
+
+from hedgerow.errors import StudyError
+from hedgerow.market import Market, load_market
+from hedgerow.rules.schema import Strategy
+from hedgerow.study.declare import Study
+from hedgerow.study.one import Bench, Result
+from hedgerow.walk.run import Window
+
+__all__ = ["StudyResult", "bench_of", "run_study"]
+
+Progress = Callable[[int], None]
+VERSIONED = ("hedgerow", "numpy", "pandas", "numba", "pyarrow")
+
+
+@dataclass(frozen=True, eq=False)
+class StudyResult:
+    """A study, the market it ran on, and one result a variant, in the order of the file."""
+
+    study: Study
+    bench: Bench
+    results: tuple[Result, ...]
+
+    @property
+    def market(self) -> Market:
+        """The market of the study."""
+        return self.bench.market
+
+    @property
+    def assumptions(self) -> tuple[str, ...]:
+        """What was assumed about premiums and costs, in words."""
+        surface, costs = self.study.surface, self.study.costs
+        terms = ", ".join(f"{term.estimator} {term.parameter:g}" for term in surface.terms)
+        source = f"volatility from {terms} sessions" if surface.observed == "none" else "observed volatility"
+        spread = f"half-spread {costs.half_spread:.1%} of the premium at the money"
+        return (
+            source,
+            f"implied over realized {surface.ratio:g} {surface.points:+.1%}",
+            f"skew {surface.skew:+.2f} and curvature {surface.curvature:+.2f} a standard deviation",
+            f"{spread}, {costs.contract_fee:g} a contract, slippage {costs.slippage:.2%} of the stock's price",
+            f"{self.study.listings} listings",
+        )
+
+    @property
+    def ended(self) -> int:
+        """How many traded symbols have a history that ends before the market's."""
+        last = self.market.last_bar[self.bench.traded.astype(bool)]
+        return int((last < len(self.market.dates) - 1).sum())
+
+    def record(self) -> dict[str, Any]:
+        """Everything needed to repeat the run, plain values."""
+        market = self.market
+        return {
+            "study": self.study.plain(),
+            "data": {
+                "source": market.source,
+                "fingerprint": market.fingerprint,
+                "symbols": list(market.symbols),
+                "first": str(market.dates[0]),
+                "last": str(market.dates[-1]),
+                "findings": [f"{f.severity}: {f.text}" for f in market.findings],
+            },
+            "versions": versions(),
+        }
+
+
+def versions() -> dict[str, str]:
+    """The versions a result depends on."""
+    found = {name: importlib.metadata.version(name) for name in VERSIONED}
+    return found | {"python": platform.python_version()}
+
+
+def bench_of(study: Study, market: Market | None = None) -> tuple[Bench, Window]:
+    """The study's market made ready, and its window. Raises DataError or StudyError."""
+    source = Path(study.market)
+    loaded = load_market(source) if market is None else market
+    bench = Bench(loaded, study.surface, study.listings, study.symbols)
+    if not bench.traded.any():
+        found = "no symbol is left to trade"
+        raise StudyError.one(
+            "symbols", "no-symbol", found, "at least one is needed", "name one of the market's"
+        )
+    return bench, Window.of(loaded, study.first, study.last)
+
+
+def run_study(
+    study: Study, *, market: Market | None = None, workers: int = 2, progress: Progress | None = None
+) -> StudyResult:
+    """Run every variant of a study. The results do not depend on the number of `workers`, threads.
+
+    `progress` is called with the number of sessions newly walked. Raises DataError, StudyError, RulesError or
+    ReconcileError.
+    """
+    bench, window = bench_of(study, market)
+    _ = bench.tape  # prepared once, before the threads share it
+
+    def one(variant: tuple[str, Strategy]) -> Result:
+        name, strategy = variant
+        done = 0
+
+        def tell(walked: int, _whole: int) -> None:
+            nonlocal done
+            if progress is not None:
+                progress(walked - done)
+            done = walked
+
+        return bench.run(strategy, study.account, study.costs, window, name, tell)
+
+    first = one(study.variants[0])  # compiles, when that is due, once
+    with ThreadPoolExecutor(max(workers, 1)) as pool:
+        rest = list(pool.map(one, study.variants[1:]))
+    return StudyResult(study, bench, (first, *rest))

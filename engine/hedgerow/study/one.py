@@ -1,0 +1,169 @@
+"""One rule on one market: everything prepared, walked, checked and summed up."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass, field
+from functools import cached_property
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+import pandas as pd
+from numpy.typing import NDArray
+
+from hedgerow.errors import StudyError, nearest_word
+from hedgerow.events.log import EventLog
+from hedgerow.evidence import Summary, summarise
+from hedgerow.kernels.layout import Bytes, Costs, Floats
+from hedgerow.ledger import Ledger
+from hedgerow.market.sessions import Regime
+from hedgerow.market.table import Market
+from hedgerow.rules.load import load_strategy
+from hedgerow.rules.program import Program, compile_strategy
+from hedgerow.rules.schema import SignalValue, Strategy
+from hedgerow.signals.panel import Panel
+from hedgerow.study.words import CostWords
+from hedgerow.study.yardstick import buy_and_hold
+from hedgerow.volatility.surface import SurfaceModel, build
+from hedgerow.volatility.words import surface_words
+from hedgerow.walk.account import NO_COSTS, Account
+from hedgerow.walk.inputs import Tape, make_tape
+from hedgerow.walk.run import Terms, Window, walk_program
+
+__all__ = ["Bench", "Result", "run"]
+
+Progress = Callable[[int, int], None]
+
+
+@dataclass(frozen=True, eq=False)
+class Result:
+    """What a rule did: the log, and everything that is read off it.
+
+    `events`, `trades`, `legs`, `equity` are frames; `summary` holds every figure with its unit and meaning.
+    """
+
+    log: EventLog
+    rate: Floats = field(repr=False)
+    yardstick: Floats = field(repr=False)
+
+    @cached_property
+    def ledger(self) -> Ledger:
+        """The ledger of the log, its money and quantities checked. Raises ReconcileError when they are off."""
+        return Ledger.checked(self.log)
+
+    @property
+    def events(self) -> pd.DataFrame:
+        """Every event in words, one a row."""
+        return self.log.to_frame()
+
+    @property
+    def trades(self) -> pd.DataFrame:
+        """One row a position."""
+        return self.ledger.trades
+
+    @property
+    def legs(self) -> pd.DataFrame:
+        """One row a life of a leg."""
+        return self.ledger.legs
+
+    @property
+    def equity(self) -> pd.DataFrame:
+        """One row a session."""
+        return self.ledger.equity
+
+    @cached_property
+    def summary(self) -> Summary:
+        """Every figure of the run, beside buy and hold of the same universe on the same days."""
+        return summarise(self.ledger, rate=self.rate, yardstick=self.yardstick)
+
+
+@dataclass(frozen=True, eq=False)
+class Bench:
+    """A market made ready to run rules on: its surface, its records and its signals, each worked out once."""
+
+    market: Market
+    surface: SurfaceModel
+    listings: Regime = "modern"
+    symbols: tuple[str, ...] | None = None  # None: all stocks, or all where there is no stock
+
+    @cached_property
+    def tape(self) -> Tape:
+        """The walk's records of market and surface."""
+        return make_tape(self.market, build(self.surface, self.market), self.listings)
+
+    @cached_property
+    def panel(self) -> Panel:
+        """The market as signals see it."""
+        return Panel(self.market)
+
+    @cached_property
+    def traded(self) -> Bytes:
+        """Which symbols may be traded, shape (N,). Raises StudyError for one that is not in the market."""
+        names = self.market.symbols
+        if self.symbols is None:
+            stocks = np.array([kind == "stock" for kind in self.market.kinds], np.uint8)
+            return stocks if stocks.any() else np.ones(len(names), np.uint8)
+        unknown = [name for name in self.symbols if name not in names]
+        if unknown:
+            found = f"the market has no symbol {', '.join(unknown)}"
+            allowed = f"it has {', '.join(names[:12])}{' and others' if len(names) > 12 else ''}"
+            raise StudyError.one("symbols", "unknown-symbol", found, allowed, nearest_word(unknown[0], names))
+        return np.array([name in self.symbols for name in names], np.uint8)
+
+    def values(self, wanted: SignalValue) -> NDArray[np.bool_] | Floats:
+        """A signal's array of shape (T, N)."""
+        return self.panel.evaluate(wanted.signal, wanted.arguments, wanted.of)
+
+    def program(self, strategy: Strategy) -> Program:
+        """A strategy as arrays for this market, entering only what may be traded."""
+        market = self.market
+        program = compile_strategy(strategy, self.values, market.ordinals, len(market.symbols), self.listings)
+        return program.entering(self.traded)
+
+    def run(
+        self,
+        strategy: Strategy,
+        account: Account,
+        costs: Costs,
+        window: Window,
+        variant: str = "",
+        progress: Progress | None = None,
+    ) -> Result:
+        """Walk one strategy over a window."""
+        terms = Terms(account, costs, window, self.listings)
+        log = walk_program(self.market, self.tape, self.program(strategy), terms, variant, progress)
+        yardstick = buy_and_hold(self.market, self.traded, window, account.cash)
+        return Result(log, self.market.rate, yardstick)
+
+
+def run(
+    market: Market,
+    strategy: Strategy | Mapping[str, Any] | str | Path,
+    *,
+    account: Account | None = None,
+    pricing: SurfaceModel | Mapping[str, Any] | str | None = None,
+    costs: Costs | Mapping[str, Any] | str | None = None,
+    first: str | None = None,
+    last: str | None = None,
+) -> Result:
+    """Run one strategy on a market.
+
+    `strategy` is a strategy, its words or its file; `pricing` a surface model, its words or a preset's name;
+    `costs` are costs, their words or "none"; `first` and `last` are ISO dates within the data. Raises
+    RulesError, StudyError or ReconcileError.
+    """
+    rule = strategy if isinstance(strategy, Strategy) else load_strategy(strategy)
+    model = pricing if isinstance(pricing, SurfaceModel) else surface_words(pricing)
+    bench = Bench(market, model)
+    window = Window.of(market, first, last)
+    return bench.run(rule, account or Account(), _costs(costs), window, rule.name)
+
+
+def _costs(costs: Costs | Mapping[str, Any] | str | None) -> Costs:
+    """Costs as the walk takes them."""
+    if isinstance(costs, Costs):
+        return costs
+    if costs == "none":
+        return NO_COSTS
+    return CostWords.model_validate(costs or {}).costs()

@@ -1,0 +1,232 @@
+"""Which strikes and expiries a rule leads to at a close, what a lot costs, and how many lots are bought."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+from hedgerow.kernels import layout
+from oracle import listed
+from oracle.moment import Moment, Pricer, Quote, Sight
+from oracle.values import CALL, normal_cdf
+from oracle.words import LegRule, Rules, Setting, number
+
+CHOICES = {"nearest": False, "at_least": True}
+
+
+@dataclass(frozen=True)
+class Chosen:
+    """A listed option chosen for a leg."""
+
+    rule: LegRule
+    strike: float
+    expiry: int
+
+
+@dataclass
+class Trader:
+    """Prices fills of shares and legs at a moment, by the costs of a setting."""
+
+    pricer: Pricer
+    setting: Setting
+
+    def share_fill(self, side: float, price: float) -> float:
+        """Price a share after slippage."""
+        slip = self.setting.cost("slippage")
+        return price * (1.0 + slip) if side > 0.0 else price * (1.0 - slip)
+
+    def share_fee(self, shares: float) -> float:
+        """Commission on a stock trade."""
+        return self.setting.cost("share_fee") * abs(shares) + self.setting.cost("trade_fee")
+
+    def leg_fee(self, quantity: float) -> float:
+        """Commission on so many shares' worth of contracts."""
+        return self.setting.cost("contract_fee") * abs(quantity) / 100.0
+
+    def leg_fill(self, side: float, quote: Quote) -> float:
+        """Premium a share at which a leg is bought (side > 0) or sold."""
+        tick = 0.01 if quote.mid < 3.0 else 0.05
+        share = self.setting.cost("half_spread") * (1.0 + self.setting.cost("spread_rise") * quote.deviations)
+        half = max(quote.mid * share, self.setting.cost("floor_ticks") * tick)
+        price = quote.mid + half if side > 0.0 else max(0.0, quote.mid - half)
+        return self._on_tick(price, side) if self.setting.cost("use_ticks") else price
+
+    @staticmethod
+    def _on_tick(price: float, side: float) -> float:
+        """The tick at or above what is paid, at or below what is received; counted in cents."""
+        cents = price * 100.0
+        unit = 1 if price < 3.0 else 5
+        whole = round(cents / unit)
+        if abs(cents / unit - whole) > 1e-9 * max(1.0, cents / unit):
+            whole = math.ceil(cents / unit) if side > 0.0 else math.floor(cents / unit)
+        return whole * unit / 100.0
+
+
+@dataclass
+class Chooser:
+    """Chooses strikes and expiries of a rule's legs at one close."""
+
+    rules: Rules
+    trader: Trader
+    sight: Sight
+    moment: Moment
+
+    def expiry(self, rule: LegRule, chosen: dict[str, int]) -> int:
+        """The expiry of a leg, its own or another leg's; 0 none."""
+        words = rule.expiry
+        if "with" in words:
+            other = next(leg for leg in self.rules.legs if leg.name == words["with"])
+            return chosen[other.name] if other.name in chosen else self.expiry(other, chosen)
+        cycle = words.get("listed", "monthly")
+        choice = CHOICES[words.get("choose", "nearest")]
+        return listed.choose_expiry(cycle, int(words["days"]), choice, self.moment.ordinal)
+
+    def cycle(self, rule: LegRule) -> str:
+        """The cycle on whose grid a leg's strike lies."""
+        if "with" in rule.expiry:
+            other = next(leg for leg in self.rules.legs if leg.name == rule.expiry["with"])
+            return self.cycle(other)
+        return str(rule.expiry.get("listed", "monthly"))
+
+    def strike(self, rule: LegRule, expiry: int, chosen: dict[str, float]) -> float:
+        """The listed strike of a leg; 0 when there is none."""
+        words, spot = rule.strike, self.moment.spot
+        snap = words.get("snap", "nearest")
+        step = listed.strike_step(spot, self.cycle(rule))
+        if "same_as" in words:
+            return chosen[words["same_as"]]
+        if "steps" in words:
+            strike = listed.on_grid(spot, step, snap) + int(words["steps"]) * step
+        elif "from_spot" in words:
+            strike = listed.on_grid(spot * (1.0 + number(words["from_spot"])), step, snap)
+        else:
+            strike = listed.on_grid(self.wanted(rule, expiry), step, snap)
+        return strike if listed.is_listed(strike, spot) else 0.0
+
+    def wanted(self, rule: LegRule, expiry: int) -> float:
+        """The strike of a wanted delta, chance or number of deviations, found by halving."""
+        base, forward = self.trader.pricer.spot_and_forward(self.sight, expiry, self.moment)
+        years = (expiry - self.moment.ordinal) / 365.0
+        sign = 1.0 if rule.right == CALL else -1.0
+        words = rule.strike
+        if "deviations" in words:
+            atm = self.trader.pricer.at_the_money(self.sight, expiry, self.moment)
+            return forward * math.exp(float(words["deviations"]) * atm * math.sqrt(years))
+
+        def short_of(strike: float) -> bool:
+            """Whether the wanted strike lies above this one."""
+            quote = self.trader.pricer.quote(self.sight, rule.right, strike, expiry, self.moment)
+            spread = quote.volatility * math.sqrt(years)
+            d2 = (math.log(forward / strike)) / spread - 0.5 * spread
+            chance = normal_cdf(sign * (d2 + spread if "delta" in words else d2))
+            want = number(words.get("delta", words.get("odds")))
+            return chance > want if rule.right == CALL else chance < want
+
+        low, high = 0.05 * base, 20.0 * base
+        for _ in range(80):
+            middle = math.sqrt(low * high)
+            low, high = (middle, high) if short_of(middle) else (low, middle)
+        return math.sqrt(low * high)
+
+    def all_legs(self) -> tuple[list[Chosen | None], int]:
+        """Every leg that opens with the position, and why not (0 when all are listed)."""
+        expiries: dict[str, int] = {}
+        strikes: dict[str, float] = {}
+        for rule in self.rules.legs:
+            if rule.add_when is None:
+                expiries[rule.name] = self.expiry(rule, expiries)
+                if expiries[rule.name] == 0:
+                    return [], layout.WHY_NO_EXPIRY
+        waiting = [rule for rule in self.rules.legs if rule.add_when is None]
+        while waiting:
+            rule = next(r for r in waiting if r.strike.get("same_as", "") not in {w.name for w in waiting})
+            waiting.remove(rule)
+            strikes[rule.name] = self.strike(rule, expiries[rule.name], strikes)
+            if strikes[rule.name] == 0.0:
+                return [], layout.WHY_NO_STRIKE
+        return [
+            Chosen(rule, strikes[rule.name], expiries[rule.name]) if rule.name in strikes else None
+            for rule in self.rules.legs
+        ], 0
+
+
+@dataclass(frozen=True)
+class Lot:
+    """What one lot of a structure costs and can come to, money."""
+
+    debit: float
+    credit: float
+    fees: float
+    reserve: float
+    best: float
+    worst: float
+    base_price: float  # of a lot's stock
+
+    @property
+    def capital(self) -> float:
+        """Cash that a lot ties up."""
+        return max(self.debit + self.reserve + self.fees, 0.01 * self.base_price)
+
+
+def measure(
+    trader: Trader, rules: Rules, sight: Sight, moment: Moment, legs: list[Chosen | None], lots: float = 1.0
+) -> Lot:
+    """Cost, reserve, best and worst of `lots` lots at this moment's fills."""
+    shares = 100.0 * rules.shares * lots
+    price = trader.share_fill(shares, moment.spot)
+    debit, credit = shares * price, 0.0
+    fees = trader.setting.cost("share_fee") * abs(shares)  # the fee of a whole trade is none of a lot's
+    held = []
+    for chosen in legs:
+        if chosen is None:
+            continue
+        quantity = 100.0 * chosen.rule.sign * chosen.rule.ratio * lots
+        quote = trader.pricer.quote(sight, chosen.rule.right, chosen.strike, chosen.expiry, moment)
+        premium = trader.leg_fill(quantity, quote)
+        debit += quantity * premium
+        credit -= quantity * premium
+        fees += trader.leg_fee(quantity)
+        held.append((quantity, chosen.rule.right, chosen.strike, chosen.expiry))
+    least, most = range_of_payoff(shares, held)
+    return Lot(
+        debit=debit,
+        credit=credit,
+        fees=fees,
+        reserve=max(0.0, -least),
+        best=most - debit,
+        worst=debit - least,
+        base_price=100.0 * moment.spot,
+    )
+
+
+def range_of_payoff(shares: float, legs: list[tuple[float, int, float, int]]) -> tuple[float, float]:
+    """Least and most that shares and legs are worth at the first expiry, over every price of the stock.
+
+    A leg of a later expiry that is held counts as its intrinsic value, the least it can be worth.
+    """
+    corners = [0.0, *(strike for _, _, strike, _ in legs)]
+    values = []
+    for price in corners:
+        value = shares * price
+        for quantity, right, strike, _ in legs:
+            value += quantity * max(0.0, price - strike if right == CALL else strike - price)
+        values.append(value)
+    slope = shares + sum(quantity for quantity, right, _, _ in legs if right == CALL)
+    least = -math.inf if slope < 0.0 else min(values)
+    most = math.inf if slope > 0.0 else max(values)
+    return least, most
+
+
+def declined(rules: Rules, lot: Lot) -> int:
+    """The reason for which the structure's own conditions decline it; 0 none."""
+    words = rules.accept
+    if words.get("net_credit") and not lot.credit > 0.0:
+        return layout.WHY_NET_CREDIT
+    if "net_debit" in words and not -lot.credit / lot.base_price <= number(words["net_debit"]["at_most"]):
+        return layout.WHY_NET_DEBIT
+    base = lot.debit + lot.reserve
+    if "worst_loss" in words and not lot.worst / base <= number(words["worst_loss"]["at_most"]):
+        return layout.WHY_WORST_LOSS
+    if "best_gain" in words and not lot.best / base >= number(words["best_gain"]["at_least"]):
+        return layout.WHY_BEST_GAIN
+    return 0
