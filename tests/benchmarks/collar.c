@@ -135,7 +135,7 @@ int64_t collar(const Tape *tape, const Account *account, const Smile *smile, con
             Quote put = value(1, held->put_strike, days, spot, level[s - size], anchor[s - size], before, smile);
             double capital = lot_cost(spot, call, put, low, high, costs, &call_price, &put_price);
             double lots = fmin(held->lots, floor((cash - costs->trade_fee) / capital + 1e-9));
-            if (lots < 1.0) { held->status = 0; continue; }
+            if (lots < 1.0 || call_price <= 0.0) { held->status = 0; continue; }
             held->status = 2;
             held->shares = LOT * lots;
             double shares_fee = costs->share_fee * held->shares + costs->trade_fee;
@@ -191,7 +191,7 @@ int64_t collar(const Tape *tape, const Account *account, const Smile *smile, con
             double capital = lot_cost(spot, call, put, low, high, costs, &call_price, &put_price);
             double budget = account->per_position * equity, left = cash - promised - costs->trade_fee;
             double lots = floor(fmin(budget, left) / capital + 1e-9);
-            if (lots < 1.0) continue;
+            if (lots < 1.0 || call_price <= 0.0) continue; /* nobody buys a call that has no bid */
             held->lots = lots;
             held->status = 1;
             promised += lots * capital;

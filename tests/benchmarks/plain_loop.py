@@ -137,7 +137,7 @@ class Loop:
             sold, bought = self.prices(t, *self.quotes(held, spot, (t - 1, s, days)))
             afford = math.floor((self.cash - costs.trade_fee) / self.lot(spot, sold, bought) + 1e-9)
             held.lots = min(held.lots, float(afford))
-            if held.lots < 1.0:
+            if held.lots < 1.0 or sold <= 0.0:
                 del self.held[s]
                 continue
             shares, fee = LOT * held.lots, costs.contract_fee * held.lots
@@ -196,7 +196,7 @@ class Loop:
             lot = self.lot(spot, sold, bought)
             left = self.cash - promised - costs.trade_fee
             held.lots = float(math.floor(min(account.per_position * equity, left) / lot + 1e-9))
-            if held.lots >= 1.0:
+            if held.lots >= 1.0 and sold > 0.0:  # nobody buys a call that has no bid
                 self.held[s] = held
                 promised += held.lots * lot
                 made += 1
