@@ -21,7 +21,7 @@ HULL_CLOSES = [
 def test_the_textbook_example_of_historical_volatility() -> None:
     """Daily deviation .01216, 19.3 % a year: Hull, Options, Futures and Other Derivatives (from memory)."""
     market = array_market(np.array(HULL_CLOSES).reshape(-1, 1))
-    value = named_estimator("close").volatility(Bars.of(market), 20.0)[-1, 0]
+    value = named_estimator("close_about_mean").volatility(Bars.of(market), 20.0)[-1, 0]
     assert value == pytest.approx(0.193, abs=0.0005)
     assert value / math.sqrt(252.0) == pytest.approx(0.01216, abs=0.000005)
 
