@@ -74,8 +74,17 @@ def test_counts_by_hand() -> None:
     assert list(summary.declined.items()) == [("not a net credit", 5), ("capital too small for one lot", 3)]
 
 
-def test_forecast_against_what_happened() -> None:
+def test_no_fact_is_shown_where_many_left_early() -> None:
+    """Compares with what is honest: two of four left early, so those that stayed are a choice, no sample."""
+    summary = summarise(Ledger(shares_book().log()))
+    assert summary.odds_positions == 2
+    assert math.isnan(summary.odds_observed)
+    assert math.isnan(summary.odds_low)
+
+
+def test_forecast_against_what_happened(monkeypatch: pytest.MonkeyPatch) -> None:
     """Compares the two positions that ran to expiry: forecast (50 % + 30 %) / 2, seen one of two."""
+    monkeypatch.setattr("hedgerow.evidence.summary.LEAST_RUN_OUT", 0.0)
     summary = summarise(Ledger(shares_book().log()))
     assert summary.odds_positions == 2
     assert summary.odds_forecast == pytest.approx(0.4)

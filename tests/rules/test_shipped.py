@@ -42,7 +42,9 @@ def test_weekly_collar() -> None:
     assert (call.expiry.days, call.expiry.listed, put.expiry.with_leg) == (7, "weekly", "call")
     assert (call.strike.from_spot, call.strike.snap) == (0.0, "up")
     assert (put.strike.from_spot, put.strike.snap) == (-0.04, "down")
-    assert strategy.accept is None
+    assert strategy.accept is not None
+    assert strategy.accept.net_credit is True
+    assert strategy.fill == "close"
     assert strategy.exit == ()
 
 

@@ -131,7 +131,10 @@ class Summary:
         metadata=_says("fraction", "mean odds of the best gain at entry, of those positions")
     )
     odds_observed: float = field(
-        metadata=_says("fraction", "share of those positions that ended at the best gain")
+        metadata=_says(
+            "fraction",
+            "share of those positions that ended at the best gain; unknown where over a tenth left early",
+        )
     )
     odds_low: float = field(
         metadata=_says("fraction", "lower end of the 95 % interval of the observed share (Wilson)")

@@ -22,6 +22,9 @@ from hedgerow.units import CENTS
 
 __all__ = ["curve_of", "declined_entries", "summarise"]
 
+LEAST_RUN_OUT = 0.9  # share of positions that must run to their end before odds and fact are compared: what
+# is left when a rule cuts or rolls many is a choice of its making, mostly winners or mostly losers
+
 Floats = NDArray[np.float64]
 Dates = NDArray[np.datetime64]
 
@@ -163,12 +166,14 @@ def _odds_figures(ledger: Ledger) -> dict[str, Any]:
     counted, best = ran_to_first_expiry(ledger.postings)
     forecast = ledger.log.terms["odds_of_best"]
     counted = counted & ~np.isnan(forecast)
+    over = ledger.trades["outcome"].to_numpy() != kinds.OPEN
+    fair = counted.sum() >= LEAST_RUN_OUT * (over & ~np.isnan(forecast)).sum()
     times, trials = int((best & counted).sum()), int(counted.sum())
-    low, high = odds.frequency_interval(times, trials)
+    low, high = odds.frequency_interval(times, trials) if fair else (math.nan, math.nan)
     return {
         "odds_positions": trials,
         "odds_forecast": _mean(forecast[counted]),
-        "odds_observed": times / trials if trials else math.nan,
+        "odds_observed": times / trials if trials and fair else math.nan,
         "odds_low": low,
         "odds_high": high,
     }

@@ -90,7 +90,7 @@ SECTIONS: tuple[tuple[str, tuple[Row, ...]], ...] = (
         (
             Row("Ran to their end", "positions", _number("odds_positions", 0)),
             Row("Forecast at entry", "mean odds", _percent("odds_forecast")),
-            Row("Seen", "of those", _percent("odds_observed")),
+            Row("Seen (if 9 in 10 ran)", "of those", _percent("odds_observed")),
             Row("Seen, 95% interval", "of those", _interval),
         ),
     ),
