@@ -16,9 +16,9 @@ from hedgerow.volatility.registry import Bars, total_return_logs
 
 
 def plain_volatility(market: Market, session: int, horizon: int, symbol: int = 0) -> float:
-    """Annualised sample deviation of the last returns, with numpy alone."""
+    """Annualised root of the mean square of the last returns, with numpy alone."""
     returns = np.diff(np.log(market.close[session - horizon : session + 1, symbol]))
-    return float(returns.std(ddof=1) * np.sqrt(252.0))
+    return float(np.sqrt(np.mean(returns**2) * 252.0))
 
 
 def test_the_default_level_is_a_mean_of_logarithms() -> None:

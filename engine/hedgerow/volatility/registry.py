@@ -96,7 +96,10 @@ class Estimator:
         return (1.0 + parameter) / (1.0 - parameter) if self.parameter == "decay" else parameter
 
     def least_known(self, parameter: float) -> int:
-        """How many values must be known before the estimate is: two thirds of the horizon, at least two."""
+        """How many values must be known before the estimate is: two thirds of the horizon, at least two.
+
+        One would do for a mean square, but the size of a single move says next to nothing of the next ones.
+        """
         return max(2, math.ceil(LEAST_KNOWN_SHARE * self.horizon_sessions(parameter) - 1e-9))
 
     def volatility(self, bars: Bars, parameter: float) -> Floats:

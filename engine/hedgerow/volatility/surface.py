@@ -6,7 +6,8 @@ Why the default is what it is. None of it was fitted to a result of this program
   quarter, a year). Against the 30-day at-the-money implied volatility of five large US stocks in 2023 such a
   blend was off by 12 % (median absolute error), a 21-session estimate by 23 %, a 63-session one by 13 %
   (recomputed from chains). Traders price the recent past and its habit of going away together: the short
-  term answers a shock within days, the long ones remember what is normal.
+  term answers a shock within days, the long ones remember what is normal. About zero, not about the mean:
+  the mean of ten moves is mostly noise, and taking it out would cost a tenth of what they know.
 - Ratio 1, points 0: implied over that blend was 1.00 for those stocks; single stocks held no significant
   premium in 1996-2003 (Driessen, Maenhout & Vilkov 2009). Index options do hold one: at-the-money implied
   stood near 1.10 of realized (recomputed from public index levels since 1990). Who writes index options can
