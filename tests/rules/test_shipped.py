@@ -54,8 +54,7 @@ def test_buy_write_follows_the_published_rule() -> None:
     (call,) = strategy.legs
     assert (call.expiry.days, call.expiry.listed) == (30, "monthly")
     assert (call.strike.steps, call.strike.snap) == (0, "up")
-    assert call.roll is not None
-    assert call.roll.at_expiry
+    assert call.roll is None  # the position ends, and all of it is put into the next one
     assert strategy.fill == "close"
     assert strategy.exit == ()
 
@@ -68,6 +67,7 @@ def test_different_month_collar_outlives_its_calls() -> None:
     assert put.expiry.days is not None
     assert put.expiry.days >= 3 * call.expiry.days
     assert call.roll is not None
+    assert call.roll.at_expiry
     assert put.roll is None
 
 
