@@ -43,6 +43,11 @@ def gap(found: Floats, expected: Floats) -> float:
     return float(np.abs(found / expected - 1.0).max())
 
 
+def peak_gigabytes() -> float:
+    """The most memory this process has held so far."""
+    return round(resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 2**20, 2)
+
+
 def at_once(job: Callable[[], object], threads: int) -> None:
     """Run a job on several threads at the same time."""
     with ThreadPoolExecutor(threads) as pool:
@@ -68,6 +73,7 @@ def measure(sessions: int, symbols: int, rate: float, times: int) -> dict[str, f
     stage = make_stage(sessions, symbols, rate=rate)
     prepared = time.perf_counter() - start
     difference = same_result(stage)  # compiles, and warms every cache
+    memory = peak_gigabytes()
     cells = sessions * symbols
     walk = best(lambda: run_walk(stage), times)
     plain_c = best(prepare_c(stage.inputs), times)
@@ -88,7 +94,8 @@ def measure(sessions: int, symbols: int, rate: float, times: int) -> dict[str, f
         "prepare_seconds": round(prepared, 2),
         "walk_seconds": round(walk, 3),
         "largest_equity_difference": difference,
-        "peak_memory_gb": round(resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 2**20, 2),
+        "peak_memory_gb": memory,
+        "peak_memory_two_walks_gb": peak_gigabytes(),
     }
 
 
