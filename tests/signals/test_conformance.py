@@ -37,6 +37,7 @@ PROMISED = {
     "eps_growth",
     "sessions_to_report",
     "sessions_since_report",
+    "sessions_to_ex_dividend",
     "weekday",
 }
 
@@ -52,15 +53,17 @@ def bits(name: str, market: Market, sessions: int | None = None) -> bytes:
 
 
 def reporting_market(seed: int, sessions: int = 340, holes: float = 0.03) -> Market:
-    """Draw a market whose symbols report every 63 sessions, announced 15 days ahead."""
+    """Draw a market whose symbols report every 63 sessions, announced 15 days ahead, and pay as often."""
     market = random_market(seed, sessions, 2, holes)
+    dividend = np.zeros_like(market.close)
+    dividend[20::63, 0], dividend[41::60, 1] = 0.5, 0.25
     rng = np.random.default_rng(seed)
     reports = [
         report(market, session, float(rng.normal(1.0, 0.5)), symbol, 15)
         for symbol in (0, 1)
         for session in range(5 + 3 * symbol, sessions, 63)
     ]
-    return replace(market, reports=tuple(sorted(reports)))
+    return replace(market, reports=tuple(sorted(reports)), dividend=dividend)
 
 
 def changed_after(market: Market, sessions: int, seed: int) -> Market:
@@ -70,6 +73,7 @@ def changed_after(market: Market, sessions: int, seed: int) -> Market:
         field: np.vstack([getattr(market, field)[:sessions], getattr(other, field)[sessions:] * 9.0])
         for field in ("open", "high", "low", "close")
     }
+    mixed["dividend"] = np.vstack([market.dividend[:sessions], np.full_like(market.close[sessions:], 0.1)])
     today = int(market.ordinals[sessions - 1])
     reports: list[Report] = []
     for item in market.reports:

@@ -150,3 +150,23 @@ def test_sessions_since_the_last_report() -> None:
     assert found[4] == 999.0
     assert found[5:9].tolist() == [0.0, 1.0, 2.0, 3.0]
     assert found[19:22].tolist() == [14.0, 0.0, 1.0]
+
+
+def test_the_next_dividend_is_expected_after_two() -> None:
+    """Hand-worked: paid on Monday 5 January and 6 April 2015, so expected 91 days later, on Monday 6 July.
+
+    On Thursday 2 July, the eve (the 3rd is a holiday), 1 session is left; a late one is expected every next
+    day for 45 days, up to 20 August, then no more.
+    """
+    market = yearly_market(200)
+    dividend = np.zeros_like(market.close)
+    dividend[[0, 65]] = 0.5
+    assert str(market.dates[65]) == "2015-04-06"
+    found = Panel(replace(market, dividend=dividend)).evaluate("sessions_to_ex_dividend")[:, 0]
+    at = {str(date): value for date, value in zip(market.dates, found, strict=True)}
+    assert (found[:65] == 999.0).all()
+    assert at["2015-04-06"] == 63.0  # 13 weeks less Memorial Day and 3 July
+    assert [at[f"2015-06-{day}"] for day in (29, 30)] == [4.0, 3.0]
+    assert at["2015-07-02"] == 1.0
+    assert at["2015-07-06"] == at["2015-07-07"] == at["2015-08-20"] == 1.0
+    assert at["2015-08-21"] == 999.0

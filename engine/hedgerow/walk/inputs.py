@@ -8,10 +8,10 @@ import numpy as np
 
 from hedgerow.kernels.layout import HAS_BAR, PAYS, REPORTS, SPLITS, Bytes, Floats, Records, Small
 from hedgerow.kernels.state import ACTION, BAR, SESSION
+from hedgerow.market.expected import expected_dividends
 from hedgerow.market.sessions import exercise_threshold, tick_rules
 from hedgerow.market.table import Market
 from hedgerow.volatility.surface import Surface
-from hedgerow.walk.dividends import expected_dividends
 
 __all__ = ["Tape", "make_tape"]
 
@@ -91,7 +91,7 @@ def _bars(market: Market, actions: Records, surface: Surface) -> Records:
     flags |= np.where(actions["dividend"] != 0.0, PAYS, 0)
     flags |= np.where(actions["split"] != 1.0, SPLITS, 0)
     flags |= np.where(bars["report"] > 0, REPORTS, 0)
-    bars["flags"] = flags
+    bars["signs"] = flags
     return bars
 
 
