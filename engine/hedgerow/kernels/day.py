@@ -27,7 +27,7 @@ from hedgerow.kernels.quote import quote
 from hedgerow.kernels.state import NONE, OPEN, Clock, Desk, Scene
 from hedgerow.kernels.trades import close_position, deliver, post, settle_leg, write
 
-__all__ = ["at_open", "overnight", "resting_stop", "silence"]
+__all__ = ["at_open", "off_strikes", "overnight", "resting_stop", "silence"]
 
 LONGEST_SILENCE = 5  # sessions without a bar after which a history is taken as ended
 SPECIAL_RULE_FROM = 733439  # 2009-02-01: from here specials of 0.125 a share or more adjust strikes
@@ -54,12 +54,21 @@ def silence(desk: Desk, position: Any, session: int) -> None:
 
 
 @step
-def _due_early(leg: Any, bar: Any, clock: Clock, action: Any, smile: Any) -> bool:
-    """Whether the holder of a leg we wrote exercises it after yesterday's close (`bar`, `clock`)."""
+def off_strikes(special: float, close: float, ordinal: int) -> float:
+    """The part of a special dividend, per share, that comes off the strikes: all of it, or nothing."""
+    least = SPECIAL_LEAST if ordinal >= SPECIAL_RULE_FROM else SPECIAL_LEAST_SHARE * close
+    return special if special >= least else 0.0
+
+
+@step
+def _due_early(leg: Any, bar: Any, clock: Clock, paid: float, smile: Any) -> bool:
+    """Whether the holder of a leg we wrote exercises it after yesterday's close (`bar`, `clock`).
+
+    `paid` is the dividend a share that a holder of the option does without.
+    """
     if leg.status == NONE or leg.quantity >= 0.0 or leg.expiry <= clock.ordinal:
         return False
     years = (leg.expiry - clock.ordinal) / DAYS_A_YEAR
-    paid = action.dividend * action.split
     if leg.right == CALL and (paid <= 0.0 or bar.close <= leg.strike):
         return False
     if leg.right == PUT and bar.close >= leg.strike:
@@ -78,8 +87,10 @@ def _assigned_overnight(desk: Desk, position: Any, scene: Scene, action: Any) ->
     yesterday, bar = scene.yesterday, scene.before
     clock = Clock(yesterday.ordinal, 0.0, yesterday.rate, 1, 0.0, 0.0)
     held = position.shares
+    kept = off_strikes(action.special, bar.close / action.split, scene.today.ordinal)
+    paid = (action.dividend - kept) * action.split
     for k in range(desk.plan.legs):
-        if _due_early(position.legs[k], bar, clock, action, desk.smile):
+        if _due_early(position.legs[k], bar, clock, paid, desk.smile):
             settle_leg(desk, position, k, scene.session, WHY_ASSIGNED_EARLY, bar.close, 0.0, True)
     if held != 0.0 and position.shares == 0.0:
         after_delivery(desk, position, scene.session, WHY_ASSIGNED_EARLY)
@@ -106,8 +117,8 @@ def _split(desk: Desk, position: Any, session: int, ratio: float) -> None:
 @step
 def _special(desk: Desk, position: Any, special: float, ordinal: int) -> None:
     """Lower strikes by a special dividend large enough to adjust the contracts."""
-    least = SPECIAL_LEAST if ordinal >= SPECIAL_RULE_FROM else SPECIAL_LEAST_SHARE * position.last_close
-    if special < least:
+    special = off_strikes(special, position.last_close, ordinal)
+    if special == 0.0:
         return
     for k in range(desk.plan.legs):
         leg = position.legs[k]
@@ -130,7 +141,7 @@ def _pay(desk: Desk, position: Any, session: int, amount: float) -> None:
 @step
 def overnight(desk: Desk, position: Any, scene: Scene, action: Any) -> None:
     """What happens between yesterday's close and today's open: early exercise, split, dividend."""
-    flags = scene.bar.flags
+    flags = scene.bar.signs
     if position.soonest != 0 and position.soonest < scene.today.ordinal:
         settle_expired(desk, position, scene, position.last_close, scene.today.ordinal - 1)
     if position.status == OPEN and scene.american == 1 and not math.isnan(scene.before.close):

@@ -6,7 +6,7 @@ import math
 from typing import Any
 
 from hedgerow.kernels.closing import at_close
-from hedgerow.kernels.day import at_open, overnight, resting_stop, silence
+from hedgerow.kernels.day import at_open, off_strikes, overnight, resting_stop, silence
 from hedgerow.kernels.entry import consider, decline, drop_order, fill_entry
 from hedgerow.kernels.holding import close_clock, open_clock
 from hedgerow.kernels.jit import compiled, step
@@ -63,7 +63,7 @@ def _morning(world: World, desk: Desk, session: int) -> None:
         position = world.positions[slot]
         if position.status != OPEN:
             continue
-        flags = world.bars[session, position.symbol].flags
+        flags = world.bars[session, position.symbol].signs
         if flags & HAS_BAR == 0:
             continue
         passed = position.soonest != 0 and position.soonest < ordinal
@@ -99,11 +99,12 @@ def _fill_orders(world: World, desk: Desk, session: int, queue: Floats) -> None:
     for n in range(desk.totals.waiting):
         position = world.positions[int(queue[n])]
         bar = world.bars[session, position.symbol]
-        if bar.flags & HAS_BAR == 0:
+        if bar.signs & HAS_BAR == 0:
             drop_order(desk, position, session)
             continue
-        if bar.flags & SPLITS:
-            _restrike(desk, position, world.actions[session, position.symbol].split)
+        if bar.signs & (PAYS | SPLITS):
+            close, ordinal = world.bars[before, position.symbol].close, world.sessions[session].ordinal
+            _restrike(desk, position, world.actions[session, position.symbol], close, ordinal)
         scene = Scene(
             session,
             world.american[position.symbol],
@@ -117,10 +118,11 @@ def _fill_orders(world: World, desk: Desk, session: int, queue: Floats) -> None:
 
 
 @step
-def _restrike(desk: Desk, position: Any, ratio: float) -> None:
-    """Restate an order's strikes in the new shares of a split."""
+def _restrike(desk: Desk, position: Any, action: Any, close: float, ordinal: int) -> None:
+    """Restate an order's strikes in the new shares of a split, less what a special dividend takes off them."""
+    off = off_strikes(action.special, close / action.split, ordinal)
     for k in range(desk.plan.legs):
-        position.legs[k].strike /= ratio
+        position.legs[k].strike = position.legs[k].strike / action.split - off
 
 
 @step
@@ -132,7 +134,7 @@ def _evening(world: World, desk: Desk, session: int) -> None:
         if position.status != OPEN:
             continue
         symbol = position.symbol
-        if world.bars[session, symbol].flags & HAS_BAR == 0:
+        if world.bars[session, symbol].signs & HAS_BAR == 0:
             silence(desk, position, session)
             continue
         scene = Scene(
@@ -182,7 +184,7 @@ def list_candidates(world: World, plan: Any, session: int, queue: Floats) -> int
     size = 0
     ranked = world.rank.shape[0] > 1
     for symbol in range(world.bars.shape[1]):
-        if world.may_enter[session, symbol] == 0 or world.bars[session, symbol].flags & HAS_BAR == 0:
+        if world.may_enter[session, symbol] == 0 or world.bars[session, symbol].signs & HAS_BAR == 0:
             continue
         slot = _free_slot(world, plan, session, symbol)
         if slot < 0 or (ranked and math.isnan(world.rank[session, symbol])):
