@@ -215,3 +215,34 @@ class Costs(NamedTuple):
     assignment_fee: float  # money an assignment or exercise of one leg
     slippage: float  # share of the stock's price
     borrow: float  # annual fraction of the value of shares sold short
+
+# further operations of a condition; codes go on from those above
+OP_HOLDS_SHARES = 13  # the position holds shares now
+
+# what candidates are ranked by, when by a figure of their own structure, per lot at the close that decides
+(
+    RANK_NONE,  # by the day's score, or by symbol
+    RANK_ODDS,  # odds of the best gain, fraction
+    RANK_BEST_OVER_WORST,  # best gain over worst loss
+    RANK_CREDIT,  # net premium received, over the stock's price
+    RANK_BEST,  # best gain, over what the position ties up
+    RANK_WORST,  # worst loss, over what the position ties up
+) = range(6)
+
+# which way a live leg may be rolled
+(
+    ROLL_ANY,
+    ROLL_UP,  # to a higher strike only
+    ROLL_DOWN,  # to a lower strike only
+    ROLL_OUT,  # to a later expiry only
+    ROLL_UP_AND_OUT,
+    ROLL_DOWN_AND_OUT,
+) = range(6)
+
+# what an account must have for what could be owed
+(
+    MARGIN_CASH,  # all of it, in cash
+    MARGIN_REGULATION,  # what the regulation's table of strategies asks for
+) = range(2)
+
+NO_SECTOR = -1  # a symbol whose sector is not known

@@ -70,6 +70,7 @@ LEG_SPEC = np.dtype(
         ("roll_length", np.int32),
         ("add_start", np.int32),
         ("add_length", np.int32),
+        ("roll_way", np.int32),  # the only way a live leg may be rolled, ROLL_ANY when free
     ],
     align=True,
 )
@@ -114,6 +115,11 @@ PLAN = np.dtype(
         ("exit_start", np.int32, (MOST_EXITS,)),  # of each exit rule, in the operations
         ("exit_length", np.int32, (MOST_EXITS,)),
         ("specs", LEG_SPEC, (MAX_LEGS,)),
+        ("rank_figure", np.int32),  # figure of the structure by which candidates are ranked, RANK_NONE: score
+        ("rank_low", np.int32),  # 1: the lowest figure comes first
+        ("keep_shares", np.int32),  # 1: shares that an assignment brings are kept, where the rule holds none
+        ("most_sector", np.int32),  # positions a sector at once
+        ("margin", np.int32),  # what must stand behind what could be owed
     ],
     align=True,
 )
