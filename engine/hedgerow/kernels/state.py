@@ -25,7 +25,7 @@ BAR = np.dtype(
         ("pay_ordinal", np.int32),  # when; 0 none
         ("pay_gap", np.int32),  # calendar days between dividends; 0 only once
         ("report", np.int32),  # ordinal of the next announced report's reaction; 0 none known
-        ("flags", np.int32),
+        ("signs", np.int32),  # HAS_BAR and its like; `flags` would be a name of numpy's own records
     ],
     align=True,
 )
@@ -152,7 +152,7 @@ POSITION = np.dtype(
         ("stop_price", np.float64),  # 0 none
         ("flows", np.float64),  # every cash flow so far
         ("outlay", np.float64),  # paid for shares and legs before fees, received counted off
-        ("base", np.float64),  # money the gain is measured on
+        ("stake", np.float64),  # money the gain is measured on
         ("best_gain", np.float64),
         ("worst_loss", np.float64),
         ("reserve", np.float64),

@@ -60,9 +60,9 @@ def _figure(op: Any, position: Any, legs: Any, count: int, moment: tuple[int, in
     session, ordinal = moment
     code = op.code
     if code == OP_GAIN_OF_DEBIT:
-        return _share(position.gain, position.base)
+        return _share(position.gain, position.stake)
     if code == OP_LOSS_OF_DEBIT:
-        return _share(-position.gain, position.base)
+        return _share(-position.gain, position.stake)
     if code == OP_GAIN_OF_BEST:
         return _share(position.gain, position.best_gain)
     if code == OP_LOSS_OF_WORST:
