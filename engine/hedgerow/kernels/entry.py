@@ -150,7 +150,7 @@ def _remember(desk: Desk, position: Any, terms: Any, session: int) -> None:
     position.stock_price = terms.stock_price
     position.stop_price = terms.stock_price * (1.0 - plan.shares * plan.stop) if plan.stop > 0.0 else 0.0
     position.stop_from = session + plan.fill_close
-    position.base = terms.net_debit + terms.reserve
+    position.stake = terms.net_debit + terms.reserve
     position.best_gain = terms.best_gain
     position.worst_loss = terms.worst_loss
     position.reserve = terms.reserve
@@ -206,7 +206,7 @@ def fill_entry(desk: Desk, position: Any, session: int, spot: float, bar: Any, c
         return
     _begin(desk, position, session, lots)
     volatility = at_the_money_for(bar, horizon, clock, desk.smile) if horizon > 0 else 0.0
-    price = share_price(shares, spot, desk.costs)
+    price = share_price(shares, spot, desk.costs) if shares != 0.0 else spot
     terms = _write_terms(desk, position, session, (debit, credit, price), figures, volatility)
     _remember(desk, position, terms, session)
     row = write(desk, session, position.symbol, position.position, KIND_OPENED, WHY_ENTRY)
