@@ -100,26 +100,34 @@ def chance_beyond(price: float, horizon: int, moment: tuple[float, Any, Clock, A
 
 @step
 def _odds_of_best(
-    nodes: Floats, values: Floats, size: int, horizon: int, moment: tuple[float, Any, Clock, Any]
+    nodes: Floats,
+    values: Floats,
+    size: int,
+    slope: float,
+    horizon: int,
+    moment: tuple[float, Any, Clock, Any],
 ) -> float:
-    """Chance of ending where the payoff is greatest: beyond its corner, on whichever side it is flat."""
+    """Chance of ending where the payoff is greatest: in its flat parts, or beyond its peak where it has none."""
     best = values[0]
     for i in range(1, size):
         best = max(best, values[i])
-    dust = _DUST * max(1.0, abs(best))
-    i = size - 1
-    if values[i] >= best - dust:
-        while i > 0 and values[i - 1] >= best - dust:
-            i -= 1
-        return chance_beyond(nodes[i], horizon, moment)
-    i = 0
-    if values[0] >= best - dust:
-        while values[i + 1] >= best - dust:
-            i += 1
-        return 1.0 - chance_beyond(nodes[i], horizon, moment)
-    while values[i] < best - dust:
-        i += 1
-    return chance_beyond(nodes[i], horizon, moment)
+    least = best - _DUST * max(1.0, abs(best))
+    odds, peak, i = 0.0, -1, 0
+    while i < size:
+        j = i
+        if values[i] >= least:
+            while j + 1 < size and values[j + 1] >= least:
+                j += 1
+            if j == size - 1 and slope >= -_DUST:
+                odds += chance_beyond(nodes[i], horizon, moment)
+            elif j > i:
+                odds += chance_beyond(nodes[i], horizon, moment) - chance_beyond(nodes[j], horizon, moment)
+            elif peak < 0:
+                peak = i
+        i = j + 1
+    if peak >= 0 and odds == 0.0:
+        return chance_beyond(nodes[peak], horizon, moment)
+    return odds
 
 
 @step
@@ -158,8 +166,8 @@ def measure(
     """Best gain, worst loss, break-even, odds of best, odds of gain, and the most that could be owed.
 
     Money of the whole position at `horizon`, an ordinal, before costs and dividends, having paid `outlay`.
-    A loss is positive. An unbounded best has odds NaN. Without legs nothing bounds the best, the worst is the
-    outlay, and the odds are NaN.
+    A loss is positive. An unbounded best has odds NaN. Without legs nothing bounds the best of shares held or
+    the worst of shares sold short, and the odds are NaN.
     """
     spot, _, clock, _ = moment
     nodes, values = scratch[0:24], scratch[24:48]
@@ -172,10 +180,14 @@ def measure(
         best, worst = max(best, values[i]), min(worst, values[i])
     slope = slope_above(legs, count, shares)
     if horizon == 0:
-        return math.inf, -worst, outlay / shares if shares != 0.0 else math.nan, math.nan, math.nan, owed
+        even = outlay / shares if shares != 0.0 else math.nan
+        if shares < 0.0:
+            return best, math.inf, even, math.nan, math.nan, math.inf
+        return math.inf, -worst, even, math.nan, math.nan, owed
     even, gain = _odds_of_gain(nodes, values, size, slope, horizon, moment)
     if slope > _DUST:
         return math.inf, -worst, even, math.nan, gain, owed
     if slope < -_DUST:
-        return best, math.inf, even, _odds_of_best(nodes, values, size, horizon, moment), gain, math.inf
-    return best, -worst, even, _odds_of_best(nodes, values, size, horizon, moment), gain, owed
+        worst, owed = -math.inf, math.inf
+    odds = _odds_of_best(nodes, values, size, slope, horizon, moment)
+    return best, -worst, even, odds, gain, owed
