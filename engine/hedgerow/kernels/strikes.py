@@ -27,6 +27,7 @@ from hedgerow.kernels.state import Clock
 __all__ = ["choose_strike", "premium", "wanted_strike"]
 
 SCAN_STEPS = 120  # listed strikes looked at on either side of the money
+FIXED_POINT_ROUNDS = 24  # leave less than a tenth of a cent of strike, even at a delta of 0.03
 
 
 @step
@@ -62,7 +63,7 @@ def _beyond(spec: Any, expiry: int, spot: float, bar: Any, clock: Clock, smile: 
     distance = quantile(spec.strike_value) * sign
     tilt = 0.5 if spec.strike_rule == DELTA else -0.5
     away = 0.0
-    for _ in range(8):
+    for _ in range(FIXED_POINT_ROUNDS):
         deviation = volatility_at(atm, away, years, days, smile) * math.sqrt(years)
         away = tilt * deviation * deviation - distance * deviation
     return forward * math.exp(away)
