@@ -1,0 +1,7 @@
+"""Steps of the walk have no door from Python once compiled: their tests run in a process that compiles nothing."""
+
+from __future__ import annotations
+
+from hedgerow.kernels.jit import COMPILED
+
+collect_ignore = ["uncompiled"] if COMPILED else []
