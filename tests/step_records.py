@@ -123,10 +123,10 @@ def ops(*items: tuple[float, int, int]) -> Any:
 def plan(*specs: Any, **values: Any) -> Any:
     """A rule on long shares with every condition of entry free."""
     usual: dict[str, Any] = {"shares": 1.0, "opening_cash": 100_000.0, "per_position": 0.5, "modern": 1}
-    usual |= {name: -math.inf for name in ("worst_least", "best_least", "odds_least", "ratio_least")}
-    usual |= {
-        name: math.inf for name in ("net_debit_most", "worst_most", "best_most", "odds_most", "spread_most")
-    }
+    usual |= dict.fromkeys(("worst_least", "best_least", "odds_least", "ratio_least"), -math.inf)
+    usual |= dict.fromkeys(
+        ("net_debit_most", "worst_most", "best_most", "odds_most", "spread_most"), math.inf
+    )
     usual |= {"most_positions": 10, "most_new": 10, "ladder": 1, "legs": len(specs)}
     out = records(PLAN, **(usual | values))[0]
     for number, given in enumerate(specs):

@@ -1,4 +1,4 @@
-"""Steps of the walk have no door from Python once compiled: their tests run in a process that compiles nothing."""
+"""Steps of the walk have no door from Python once compiled: their tests run where nothing is compiled."""
 
 from __future__ import annotations
 

@@ -37,7 +37,7 @@ SPECIAL_LEAST_SHARE = 0.10  # before that day: over a tenth of the price
 
 @step
 def silence(desk: Desk, position: Any, session: int) -> None:
-    """A session without a bar: carry the position, or close it at its last price when the history has ended."""
+    """A session without a bar: carry the position, or close it at its last price when the history is over."""
     position.silent += 1
     if position.silent < LONGEST_SILENCE:
         return
@@ -144,9 +144,9 @@ def overnight(desk: Desk, position: Any, scene: Scene, action: Any) -> None:
     flags = scene.bar.signs
     if position.soonest != 0 and position.soonest < scene.today.ordinal:
         settle_expired(desk, position, scene, position.last_close, scene.today.ordinal - 1)
-    if position.status == OPEN and scene.american == 1 and not math.isnan(scene.before.close):
-        if flags & PAYS != 0 or position.written_put == 1:
-            _assigned_overnight(desk, position, scene, action)
+    asked = flags & PAYS != 0 or position.written_put == 1
+    if asked and position.status == OPEN and scene.american == 1 and not math.isnan(scene.before.close):
+        _assigned_overnight(desk, position, scene, action)
     if position.status != OPEN:
         return
     if flags & SPLITS:

@@ -185,7 +185,7 @@ def _buy(desk: Desk, position: Any, session: int, spot: float, clock: Clock) -> 
 
 @step
 def fill_entry(desk: Desk, position: Any, session: int, spot: float, bar: Any, clock: Clock) -> None:
-    """Fill an ordered position at `spot`, with as many of its lots as the cash allows; `bar` knows volatility."""
+    """Fill an ordered position at `spot`, with as many of its lots as cash allows; `bar` knows volatility."""
     plan, totals = desk.plan, desk.totals
     _take_back(desk, position)
     for k in range(plan.legs):

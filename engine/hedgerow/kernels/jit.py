@@ -101,7 +101,7 @@ def _wrap(function: F, **flags: bool) -> F:
 def compiled(function: F) -> F:
     """Compile a function on first call; keep it as it is when compiling is switched off.
 
-    No fast-math, so that compiled and uncompiled runs agree to the last bit; the interpreter lock is released.
+    No fast-math, so that compiled and uncompiled runs agree to the bit; the interpreter lock is released.
     """
     return _wrap(function, _nrt=True)  # said aloud: a caller's flags would be taken over otherwise
 

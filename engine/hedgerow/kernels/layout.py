@@ -216,6 +216,7 @@ class Costs(NamedTuple):
     slippage: float  # share of the stock's price
     borrow: float  # annual fraction of the value of shares sold short
 
+
 # further operations of a condition; codes go on from those above
 OP_HOLDS_SHARES = 13  # the position holds shares now
 

@@ -119,7 +119,7 @@ def _fill_orders(world: World, desk: Desk, session: int, queue: Floats) -> None:
 
 @step
 def _restrike(desk: Desk, position: Any, action: Any, close: float, ordinal: int) -> None:
-    """Restate an order's strikes in the new shares of a split, less what a special dividend takes off them."""
+    """Restate an order's strikes in the new shares of a split, less what a special dividend takes off."""
     off = off_strikes(action.special, close / action.split, ordinal)
     for k in range(desk.plan.legs):
         position.legs[k].strike = position.legs[k].strike / action.split - off

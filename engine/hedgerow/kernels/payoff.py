@@ -107,7 +107,7 @@ def _odds_of_best(
     horizon: int,
     moment: tuple[float, Any, Clock, Any],
 ) -> float:
-    """Chance of ending where the payoff is greatest: in its flat parts, or beyond its peak where it has none."""
+    """Chance of ending where the payoff is greatest: in its flat parts, or beyond its peak without any."""
     best = values[0]
     for i in range(1, size):
         best = max(best, values[i])

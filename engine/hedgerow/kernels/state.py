@@ -209,7 +209,7 @@ class Clock(NamedTuple):
 
 
 class Scene(NamedTuple):
-    """One symbol at one session: today's records and yesterday's (today's again in a walk's first session)."""
+    """One symbol at one session: today's records and yesterday's (in the first session today's again)."""
 
     session: int
     american: int

@@ -123,7 +123,7 @@ def scan_for_worst(
     market: tuple[float, Any, Clock, Any, Any],
     income: float,
 ) -> float:
-    """The lowest listed put strike whose worst loss stays within the wanted share of the net debit; 0 when none.
+    """The lowest listed put strike whose worst loss stays within the wanted share of the debit; 0 if none.
 
     `income` is the net premium a share of the other legs. Meant for a bought put under shares.
     """
@@ -152,7 +152,7 @@ def choose_strike(
     `market` is (spot, bar, clock, smile, costs); `others` is (strike of the leg referred to, premium of the
     leg referred to times its ratio over this leg's, net premium a share of the legs chosen so far).
     """
-    spot, bar, clock, smile, costs = market
+    spot, bar, clock, smile, _ = market
     reference, money, income = others
     rule = spec.strike_rule
     if rule == SAME_AS:

@@ -1,4 +1,4 @@
-"""The structure of one lot at one moment: its legs chosen and valued, what it costs, and why it is declined."""
+"""The structure of one lot at one moment: legs chosen and valued, what it costs, and why it is declined."""
 
 from __future__ import annotations
 
@@ -60,7 +60,7 @@ def leg_price(leg: Any, side: float, clock: Clock, costs: Any) -> float:
 def find_strike(
     desk: Desk, position: Any, number: int, expiry: int, spot: float, bar: Any, clock: Clock
 ) -> float:
-    """The listed strike for leg `number` at this moment; 0 when none. Legs it refers to are valued already."""
+    """The listed strike for leg `number` at this moment; 0 if none. Legs it refers to are valued already."""
     spec = desk.plan.specs[number]
     reference, money, income = 0.0, 0.0, 0.0
     if spec.strike_leg >= 0:
@@ -78,7 +78,7 @@ def find_strike(
 
 @step
 def choose_legs(desk: Desk, position: Any, today: Any, spot: float, bar: Any, clock: Clock) -> int:
-    """Choose expiry and strike of every leg that opens with the position, for one lot; return why not, or 0."""
+    """Choose expiry and strike of every leg that opens with the position, for one lot; say why not, or 0."""
     plan = desk.plan
     for k in range(plan.legs):
         leg = position.legs[k]

@@ -122,7 +122,7 @@ def trade_leg(
     clock: Clock,
     spot: float,
 ) -> None:
-    """Buy or sell `quantity` shares' worth of leg `number` around its own mid, written at stock price `spot`."""
+    """Buy or sell `quantity` shares' worth of leg `number` around its own mid; the stock is at `spot`."""
     leg = position.legs[number]
     row = write(desk, session, position.symbol, position.position, KIND_LEG, reason)
     row.leg = number

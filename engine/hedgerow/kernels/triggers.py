@@ -57,7 +57,7 @@ def _leg_lost(leg: Any) -> float:
 @step
 def _figure(op: Any, position: Any, legs: Any, count: int, moment: tuple[int, int]) -> float:
     """The number an operation compares with its value; every comparison is `figure >= value`."""
-    session, ordinal = moment
+    session, _ = moment
     code = op.code
     if code == OP_GAIN_OF_DEBIT:
         return _share(position.gain, position.stake)

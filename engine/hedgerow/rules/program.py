@@ -19,6 +19,8 @@ from hedgerow.kernels.state import MOST_EXITS, OP, PLAN
 from hedgerow.market.sessions import Regime, choose_expiries
 from hedgerow.rules.base import Bounds
 from hedgerow.rules.condition import walked
+from hedgerow.rules.entering import Enter, FigureValue
+from hedgerow.rules.occasions import occasions
 from hedgerow.rules.schema import (
     AllOf,
     AnyOf,
@@ -26,6 +28,7 @@ from hedgerow.rules.schema import (
     DaysLeftTest,
     GainTest,
     HeldTest,
+    HoldsSharesTest,
     Leg,
     LegLostTest,
     LossTest,
@@ -60,6 +63,21 @@ STRIKES = {
     "spend": layout.SPEND,
     "zero_cost_with": layout.ZERO_COST,
     "worst_loss_within": layout.WORST_WITHIN,
+}
+FIGURES = {
+    "odds_of_best": layout.RANK_ODDS,
+    "best_over_worst": layout.RANK_BEST_OVER_WORST,
+    "net_credit": layout.RANK_CREDIT,
+    "best_gain": layout.RANK_BEST,
+    "worst_loss": layout.RANK_WORST,
+}
+WAYS = {
+    "any": layout.ROLL_ANY,
+    "up": layout.ROLL_UP,
+    "down": layout.ROLL_DOWN,
+    "out": layout.ROLL_OUT,
+    "up and out": layout.ROLL_UP_AND_OUT,
+    "down and out": layout.ROLL_DOWN_AND_OUT,
 }
 WEEKDAYS = ("monday", "tuesday", "wednesday", "thursday", "friday", "saturday", "sunday")
 
@@ -160,6 +178,8 @@ def _position_op(condition: Condition, legs: dict[str, int]) -> tuple[float, int
         return condition.stock_up.at_least, layout.OP_STOCK_UP, -1
     if isinstance(condition, StockDownTest):
         return condition.stock_down.at_least, layout.OP_STOCK_DOWN, -1
+    if isinstance(condition, HoldsSharesTest):
+        return 1.0, layout.OP_HOLDS_SHARES, -1
     assert isinstance(condition, LegLostTest)
     return condition.leg_lost.at_least, layout.OP_LEG_LOST, legs[condition.leg_lost.leg]
 
@@ -209,6 +229,7 @@ def _spec(spec: Records, leg: Leg, legs: dict[str, int], cycles: dict[str, str],
     spec["snap"] = SNAPS[leg.strike.snap]
     if leg.roll is not None:
         spec["roll_at_expiry"] = int(leg.roll.at_expiry)
+        spec["roll_way"] = WAYS[leg.roll.direction]
         spec["roll_credit"] = int(leg.roll.only_for == "credit")
         spec["roll_start"], spec["roll_length"] = _ops_of(leg.roll.condition, legs, bits)
     spec["add_start"], spec["add_length"] = _ops_of(leg.add_when, legs, bits)
@@ -285,27 +306,43 @@ def _plan(strategy: Strategy, bits: _Bits) -> Records:
     _bounds(plan, "", "spread_most", None if accept is None else accept.spread_to_premium)
     plan["fill_close"] = int(strategy.fill == "close")
     plan["legs"], plan["exits"] = len(strategy.legs), len(strategy.exit)
-    plan["ladder"] = 1
+    plan["keep_shares"] = int(strategy.after_assignment == "keep")
+    _pace(plan, strategy.enter or Enter())
     return plans
 
 
-def _entries(strategy: Strategy, values: Values, shape: tuple[int, int]) -> Bytes:
-    """Where the entry condition holds."""
-    when = None if strategy.enter is None else strategy.enter.when
-    return np.ones(shape, np.uint8) if when is None else truth_of(when, values).astype(np.uint8)
+def _pace(plan: Records, enter: Enter) -> None:
+    """Write how often a symbol is entered, and the figure by which candidates are ranked."""
+    plan["ladder"] = 1 if enter.ladder is None else enter.ladder.positions
+    plan["spacing"] = 0 if enter.ladder is None else enter.ladder.spacing
+    plan["cooling"] = 0 if enter.cool_down is None else enter.cool_down.sessions
+    if enter.rank is not None and isinstance(enter.rank.by, FigureValue):
+        plan["rank_figure"] = FIGURES[enter.rank.by.figure]
+        plan["rank_low"] = int(enter.rank.order == "low")
+
+
+def _entries(strategy: Strategy, values: Values, ordinals: Ints, symbols: int) -> Bytes:
+    """Where a position may be opened: its condition holds, the session is named, and there is one to open."""
+    enter = strategy.enter or Enter()
+    may: Truth = np.full((ordinals.size, symbols), not strategy.holds_nothing)
+    if enter.when is not None:
+        may &= truth_of(enter.when, values)
+    if enter.on is not None:
+        may &= occasions(enter.on, ordinals)[:, np.newaxis]
+    return may.astype(np.uint8)
 
 
 def _ranks(strategy: Strategy, values: Values) -> Floats:
     """The score by which candidates are ranked, high first."""
     rank = None if strategy.enter is None else strategy.enter.rank
-    if rank is None:
+    if rank is None or isinstance(rank.by, FigureValue):
         return np.zeros((1, 1))
     score = np.ascontiguousarray(values(rank.by), dtype=np.float64)
     return score if rank.order == "high" else -score
 
 
 def compile_strategy(
-    strategy: Strategy, values: Values, ordinals: Ints, symbols: int, regime: str
+    strategy: Strategy, values: Values, ordinals: Ints, symbols: int, regime: Regime
 ) -> Program:
     """Turn a strategy into the arrays of the walk.
 
@@ -325,7 +362,7 @@ def compile_strategy(
         plan=plan,
         expiries=expiries,
         ops=np.array(bits.ops or [(0.0, layout.OP_SIGNAL, 0)], OP),
-        may_enter=_entries(strategy, values, shape),
+        may_enter=_entries(strategy, values, ordinals, symbols),
         words=bits.word(shape),
         rank=_ranks(strategy, values),
     )

@@ -41,13 +41,14 @@ class StudyResult:
         """What was assumed about premiums and costs, in words."""
         surface, costs = self.study.surface, self.study.costs
         terms = ", ".join(f"{term.estimator} {term.parameter:g}" for term in surface.terms)
-        source = f"volatility from {terms} sessions" if surface.observed == "none" else "observed volatility"
+        observed = surface.observed != "none"
+        source = "observed volatility" if observed else f"volatility from {terms} sessions"
         spread = f"half-spread {costs.half_spread:.1%} of the premium at the money"
         return (
             source,
             f"implied over realized {surface.ratio:g} {surface.points:+.1%}",
             f"skew {surface.skew:+.2f} and curvature {surface.curvature:+.2f} a standard deviation",
-            f"{spread}, {costs.contract_fee:g} a contract, slippage {costs.slippage:.2%} of the stock's price",
+            f"{spread}, {costs.contract_fee:g} a contract, slippage {costs.slippage:.2%} of the price",
             f"{self.study.listings} listings",
         )
 

@@ -49,7 +49,7 @@ class Result:
 
     @cached_property
     def ledger(self) -> Ledger:
-        """The ledger of the log, its money and quantities checked. Raises ReconcileError when they are off."""
+        """The ledger of the log, money and quantities checked. Raises ReconcileError when they are off."""
         return Ledger.checked(self.log)
 
     @property

@@ -21,7 +21,7 @@ def total_return_index(market: Market) -> Floats:
     growth = np.ones_like(filled)
     before = filled[:-1]
     growth[1:] = np.where(np.isnan(before), 1.0, (filled[1:] + paid[1:]) * market.split[1:] / before)
-    index = np.cumprod(np.where(np.isnan(growth), 1.0, growth), axis=0)
+    index = np.asarray(np.cumprod(np.where(np.isnan(growth), 1.0, growth), axis=0), np.float64)
     index[np.isnan(filled)] = np.nan
     return index
 

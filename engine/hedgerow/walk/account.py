@@ -9,9 +9,10 @@ from hedgerow.kernels.layout import Costs
 
 __all__ = ["DEFAULT_COSTS", "NO_COSTS", "Account"]
 
-# Half-spread: quoted half-spreads of S&P 500 stock options 2004-15 were 8.6 % of the premium over all strikes,
-# effective ones 6.8 %, and patient traders paid less than 40 % of that (Muravyev & Pearson 2020); at the money
-# on liquid names the full spread is 2-4 % of mid, far out 10 % and up. Commissions as of the 2020s, from memory.
+# Half-spread: quoted half-spreads of S&P 500 stock options 2004-15 were 8.6 % of the premium over all
+# strikes, effective ones 6.8 %, and patient traders paid less than 40 % of that (Muravyev & Pearson 2020);
+# at the money on liquid names the full spread is 2-4 % of mid, far out 10 % and up. Commissions as of the
+# 2020s, from memory.
 DEFAULT_COSTS = Costs(
     half_spread=0.03,
     spread_rise=0.5,

@@ -1,4 +1,4 @@
-"""The arrays the walk reads about the world, prepared once for a market and a surface and shared by variants."""
+"""The arrays the walk reads about the world, prepared once for a market and surface, shared by variants."""
 
 from __future__ import annotations
 
@@ -9,7 +9,7 @@ import numpy as np
 from hedgerow.kernels.layout import HAS_BAR, PAYS, REPORTS, SPLITS, Bytes, Floats, Records, Small
 from hedgerow.kernels.state import ACTION, BAR, SESSION
 from hedgerow.market.expected import expected_dividends
-from hedgerow.market.sessions import exercise_threshold, tick_rules
+from hedgerow.market.sessions import Regime, exercise_threshold, tick_rules
 from hedgerow.market.table import Market
 from hedgerow.volatility.surface import Surface
 
@@ -68,7 +68,7 @@ def _carry(column: Records, traded: Bytes) -> None:
 
 
 def _opens(market: Market) -> Floats:
-    """The opens; where one is unknown, the last close before it in today's shares: nothing newer was known."""
+    """The opens; for an unknown one the last close before it in today's shares: nothing newer was known."""
     before = np.full(market.close.shape, np.nan)
     before[1:] = market.close[:-1] / market.split[1:]
     known = np.where(np.isnan(market.open), before, market.open)
@@ -95,7 +95,7 @@ def _bars(market: Market, actions: Records, surface: Surface) -> Records:
     return bars
 
 
-def _sessions(market: Market, regime: str) -> Records:
+def _sessions(market: Market, regime: Regime) -> Records:
     """Date, rate, ticks and exercise threshold of every session."""
     sessions = np.zeros(market.ordinals.shape, SESSION)
     sessions["ordinal"] = market.ordinals
@@ -105,7 +105,7 @@ def _sessions(market: Market, regime: str) -> Records:
     return sessions
 
 
-def make_tape(market: Market, surface: Surface, regime: str = "modern") -> Tape:
+def make_tape(market: Market, surface: Surface, regime: Regime = "modern") -> Tape:
     """Prepare the walk's records. `regime` is that of `market.sessions`; StudyError is raised for another."""
     american = np.array([kind != "index" for kind in market.kinds], np.uint8)
     actions = _actions(market)

@@ -18,7 +18,6 @@ from hedgerow.kernels.layout import (
     MARK,
     NO_ROW,
     TERMS,
-    Bytes,
     Costs,
     Floats,
     Records,
@@ -166,7 +165,7 @@ def _deposit(world: World, session: int, cash: float) -> None:
 
 
 def _step(world: World, begin: int, end: int, first: int, queue: Floats) -> int:
-    """One call of the compiled walk; a broken cache of compiled code is thrown away and compiled afresh once."""
+    """One call of the compiled walk; a broken cache of compiled code is thrown away and compiled afresh."""
     from hedgerow.kernels.loop import walk
 
     try:

@@ -1,4 +1,4 @@
-"""Best, worst, break-even and odds of structures, beside values worked by hand and scipy's normal distribution."""
+"""Best, worst, break-even and odds of structures, beside hand work and scipy's normal distribution."""
 
 from __future__ import annotations
 
@@ -56,7 +56,7 @@ def test_the_nearest_expiry_of_what_is_held() -> None:
 
 
 def test_collar_by_hand() -> None:
-    """100 shares at 100, a 104 call for 1.50, a 95 put for 1.10: debit 9,960, best 440, worst 460, even 99.60."""
+    """Shares at 100, a 104 call for 1.50, a 95 put for 1.10: debit 9,960, best 440, worst 460, even 99.60."""
     found = measured(call(104, -100), put(95, 100), outlay=9960.0)
     assert found["best"] == pytest.approx(440.0)
     assert found["worst"] == pytest.approx(460.0)
@@ -85,7 +85,7 @@ def test_married_put_by_hand() -> None:
 
 
 def test_protected_short_by_hand() -> None:
-    """Short 100 at 100 with a 103 call for 1.20: received 9,880, worst 420, best all of it if the stock dies."""
+    """Short 100 at 100 with a 103 call for 1.20: received 9,880, worst 420, best all of it at zero."""
     found = measured(call(103, 100), shares=-100.0, outlay=-9880.0)
     assert found["best"] == pytest.approx(9880.0)
     assert found["worst"] == pytest.approx(420.0)
@@ -116,7 +116,7 @@ def test_put_spread_is_best_on_the_low_side() -> None:
 
 
 def test_condor_is_best_in_the_middle() -> None:
-    """Written 95 put and 105 call inside a 90 put and a 110 call, for 1.60: best between the written strikes."""
+    """Written 95 put and 105 call inside a 90 put and a 110 call, for 1.60: best between those written."""
     legs = [put(90, 100), put(95, -100), call(105, -100), call(110, 100)]
     found = measured(*legs, shares=0.0, outlay=-160.0)
     assert found["best"] == pytest.approx(160.0)

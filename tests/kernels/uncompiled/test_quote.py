@@ -113,7 +113,7 @@ def test_american_quotes_are_worth_at_least_the_european_ones(strike: float) -> 
 
 
 def test_a_call_may_be_exercised_before_the_dividend() -> None:
-    """Deep in the money before a dividend of 8 a call is worth about the undiminished spot less the strike."""
+    """Deep in the money before a dividend of 8 a call is worth what it is to just before it."""
     rich = bar(pay_cash=8.0, pay_ordinal=TODAY + 2, pay_gap=0, level=0.1, anchor=0.1)
     value, *_ = quote(CALL, 60.0, TODAY + 30, SPOT, rich, clock(american=1), smile())
     expected = black_scholes(CALL, SPOT, 60.0, 2 / 365, 0.02, 0.1)

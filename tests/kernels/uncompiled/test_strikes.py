@@ -1,4 +1,4 @@
-"""Strike rules, beside the figures they ask for: inverted back, or met while the next strike does not meet them."""
+"""Strike rules, beside the figures they ask for: inverted back, or met and not met one strike further."""
 
 from __future__ import annotations
 
@@ -60,7 +60,7 @@ def odds_beyond(right: int, strike: float) -> float:
 @settings(max_examples=25)
 @given(size=st.integers(5, 80).map(lambda n: n / 100))
 def test_delta_inverts_back(right: int, size: float) -> None:
-    """The strike at which the delta is the one asked for, found by bisection, to a tenth of the least step."""
+    """The strike at which the delta is the one asked for, by bisection, to a tenth of a cent."""
     exact = brentq(lambda strike: forward_delta(right, strike) - size, 60.0, 160.0)
     assert wanted(right=right, strike_rule=at.DELTA, strike_value=size) == pytest.approx(exact, abs=0.001)
 
@@ -69,7 +69,7 @@ def test_delta_inverts_back(right: int, size: float) -> None:
 @settings(max_examples=25)
 @given(odds=st.integers(5, 90).map(lambda n: n / 100))
 def test_odds_invert_back(right: int, odds: float) -> None:
-    """The strike at which the chance is the one asked for, found by bisection, to a tenth of the least step."""
+    """The strike at which the chance is the one asked for, by bisection, to a tenth of a cent."""
     exact = brentq(lambda strike: odds_beyond(right, strike) - odds, 60.0, 160.0)
     assert wanted(right=right, strike_rule=at.ODDS, strike_value=odds) == pytest.approx(exact, abs=0.001)
 

@@ -1,4 +1,4 @@
-"""The structure of one lot: legs chosen, what it costs, what it ties up and why it is declined; all by hand."""
+"""The structure of one lot: legs chosen, cost, capital and why it is declined; all by hand."""
 
 from __future__ import annotations
 

@@ -67,7 +67,7 @@ def test_buying_and_selling_shares() -> None:
 
 
 def test_writing_and_buying_back_a_leg() -> None:
-    """200 of a 1.50 mid: half-spread 3 % + half for one deviation = 4.5 %, ticks of a cent against the trader."""
+    """200 of a 1.50 mid: half-spread 3 % and half of it for one deviation, ticks of a cent."""
     books, held = desk(charged=DEAR), position(call(100, 0.0, mid=1.5, moneyness=1.0, volatility=0.3))
     held.legs[0].status = NONE
     trade_leg(books, held, 0, 1, at.WHY_ENTRY, -200.0, clock(), SPOT)
