@@ -15,11 +15,12 @@ import pandas as pd
 from numpy.typing import NDArray
 
 from hedgerow.events.kinds import KIND_WORDS, leg_word, reason_words
-from hedgerow.kernels.layout import DAY, EVENT, MARK, TERMS, Records
+from hedgerow.kernels.layout import DAY, EVENT, MARK, NO_ROW, TERMS, Records
 
 __all__ = ["EventLog", "LegName", "LogMeta", "dates_of"]
 
 Dates = NDArray[np.datetime64]
+_BLOCK_ROWS = 1 << 13
 LAYOUTS: dict[str, np.dtype[np.void]] = {"events": EVENT, "terms": TERMS, "days": DAY, "marks": MARK}
 
 
@@ -184,13 +185,16 @@ def _same_bits(mine: Records, other: Records) -> bool:
 
 
 def _check_codes(log: EventLog) -> None:
-    limits = {"session": len(log.meta.dates), "symbol": len(log.meta.symbols)}
+    """Look through each table once, a block at a time, so that a block is read from memory only once."""
+    meta = log.meta
+    limits = {"session": len(meta.dates), "symbol": len(meta.symbols), "leg": len(meta.legs)}
     for name in LAYOUTS:
         table = getattr(log, name)
-        for field in set(limits) & set(table.dtype.names):
-            codes = table[field]
-            if codes.size and (codes.max() >= limits[field] or codes.min() < -1):
-                raise ValueError(f"the table `{name}` of a log names a {field} that its meta does not have")
-    legs = log.events["leg"]
-    if legs.size and legs.max() >= len(log.meta.legs):
-        raise ValueError("the events of a log name a leg that its meta does not describe")
+        fields = [field for field in limits if field in table.dtype.names]
+        for start in range(0, table.size, _BLOCK_ROWS):
+            for field in fields:
+                codes = table[field][start : start + _BLOCK_ROWS]
+                if codes.max() >= limits[field] or codes.min() < (NO_ROW if field == "leg" else -1):
+                    raise ValueError(
+                        f"the table `{name}` of a log names a {field} that its meta does not have"
+                    )

@@ -11,29 +11,18 @@ import numpy as np
 from hedgerow.errors import StudyError
 from hedgerow.events.log import EventLog, LegName, LogMeta
 from hedgerow.kernels.jit import COMPILED, forget_cache
-from hedgerow.kernels.layout import (
-    DAY,
-    EVENT,
-    KIND_DEPOSIT,
-    MARK,
-    NO_ROW,
-    TERMS,
-    Costs,
-    Floats,
-    Records,
-)
+from hedgerow.kernels.layout import KIND_DEPOSIT, NO_ROW, Costs, Floats, Records
 from hedgerow.kernels.state import COSTS, POSITION, SMILE, TOTALS, World
 from hedgerow.market.sessions import Regime
 from hedgerow.market.table import Market
 from hedgerow.rules.program import Program
 from hedgerow.walk.account import Account
 from hedgerow.walk.inputs import Tape
+from hedgerow.walk.tables import Tables
 
 __all__ = ["Terms", "Window", "walk_program"]
 
 CHUNK_SESSIONS = 256  # between two looks at the keyboard and the progress bar
-LEAST_EVENTS = 1 << 14
-EVENTS_A_SLOT = 40  # as in `kernels.loop`, which is imported only when it is to run
 BROKEN_CACHE = (EOFError, pickle.UnpicklingError, ImportError, IndexError, KeyError)
 
 Progress = Callable[[int, int], None]
@@ -106,10 +95,10 @@ def _one(values: tuple[float, ...], layout: np.dtype[np.void]) -> Records:
     return np.array([tuple(values)], layout).view(np.recarray)
 
 
-def make_world(tape: Tape, program: Program, terms: Terms) -> World:
+def make_world(tape: Tape, program: Program, terms: Terms, tables: Tables) -> World:
     """Everything one walk reads and writes, fresh."""
-    account, marks = terms.account, terms.marks
-    plans = _plan(program, account, terms.regime, marks)
+    account = terms.account
+    plans = _plan(program, account, terms.regime, terms.marks)
     ladder = int(plans[0]["ladder"])
     slots = tape.bars.shape[1] * ladder
     totals = _records(1, TOTALS)
@@ -132,28 +121,12 @@ def make_world(tape: Tape, program: Program, terms: Terms) -> World:
         smile=_one(tape.surface.smile, SMILE),
         totals=totals,
         positions=positions,
-        events=_records(max(LEAST_EVENTS, 2 * (slots * EVENTS_A_SLOT + 64)), EVENT),
-        terms=_records(max(4096, 2 * slots), TERMS),
-        days=_records(CHUNK_SESSIONS, DAY),
-        marks=_records(max(4 * slots, CHUNK_SESSIONS * min(slots, 64)) if marks else slots, MARK),
+        events=tables.view("events"),
+        terms=tables.view("terms"),
+        days=tables.view("days"),
+        marks=tables.view("marks"),
         scratch=np.zeros(64),
     )
-
-
-class _Drain:
-    """Empties the walk's buffers into chunks of the log."""
-
-    def __init__(self, world: World) -> None:
-        self.world = world
-        self.chunks: dict[str, list[Records]] = {"events": [], "terms": [], "days": [], "marks": []}
-
-    def take(self) -> None:
-        """Copy what is in the buffers and set them back to empty."""
-        totals = self.world.totals[0]
-        for name in self.chunks:
-            buffer = getattr(self.world, name)
-            self.chunks[name].append(np.array(buffer[: int(totals[name])]).view(np.ndarray))
-            totals[name] = 0
 
 
 def _deposit(world: World, session: int, cash: float) -> None:
@@ -165,7 +138,7 @@ def _deposit(world: World, session: int, cash: float) -> None:
 
 
 def _step(world: World, begin: int, end: int, first: int, queue: Floats) -> int:
-    """One call of the compiled walk; a broken cache of compiled code is thrown away and compiled afresh."""
+    """One call of the compiled walk; a broken cache of compiled code is thrown away and made afresh once."""
     from hedgerow.kernels.loop import walk
 
     try:
@@ -206,8 +179,8 @@ def walk_program(
     `progress` is called with sessions done and to do. The interpreter lock is released while walking.
     """
     account, window = terms.account, terms.window
-    world = make_world(tape, program, terms)
-    drain = _Drain(world)
+    tables = Tables(tape.bars.shape[1] * int(program.plan[0]["ladder"]))
+    world = make_world(tape, program, terms, tables)
     queue = np.zeros(world.positions.shape[0] + 1)
     _deposit(world, window.start, account.cash)
     session = window.start
@@ -217,8 +190,8 @@ def walk_program(
         else:  # the last session is always marked, so that what is still open has a value
             stop = window.stop - 1 if session < window.stop - 1 else window.stop
             world.plan[0].marks = int(terms.marks or stop == window.stop)
+        world = tables.extend(world)
         session = _step(world, session, stop, window.start, queue)
-        drain.take()
         if progress is not None:
             progress(session - window.start, window.stop - window.start)
-    return EventLog.join(_meta(market, program, account, variant), **drain.chunks)
+    return EventLog(_meta(market, program, account, variant), **tables.cut(world.totals[0]))
