@@ -136,7 +136,8 @@ def test_more_than_four_legs() -> None:
 def test_nothing_held() -> None:
     """No shares and no legs is no position."""
     assert codes_of(strategy(shares="none")) == ["empty-position"]
-    assert codes_of(strategy(shares="none", legs={})) == ["empty-position"]
+    assert only_fault(strategy(shares="none")).remedy == "for cash alone write `legs: {}` beside it"
+    assert codes_of(strategy(shares="none", legs={})) == []
     assert codes_of(strategy()) == []
 
 

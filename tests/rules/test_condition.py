@@ -17,6 +17,7 @@ from hedgerow.rules.condition import (
     DaysLeftTest,
     GainTest,
     HeldTest,
+    HoldsSharesTest,
     LegLostTest,
     LossTest,
     NotOf,
@@ -52,6 +53,7 @@ def faults(words: Any) -> list[Loose]:
         ({"stock_up": {"at_least": "5%"}}, StockUpTest),
         ({"stock_down": {"at_least": "5%"}}, StockDownTest),
         ({"leg_lost": {"leg": "call", "at_least": "80%"}}, LegLostTest),
+        ({"holds_shares": True}, HoldsSharesTest),
     ],
 )
 def test_every_word_has_its_class(words: dict[str, Any], kind: type) -> None:
@@ -65,7 +67,7 @@ def test_every_word_has_its_class(words: dict[str, Any], kind: type) -> None:
 def test_every_word_is_known() -> None:
     """The list of words is that of the classes above."""
     assert set(CONDITION_WORDS) == {"all", "any", "not", "signal", *POSITION_WORDS}
-    assert len(POSITION_WORDS) == 7
+    assert len(POSITION_WORDS) == 8
 
 
 def test_figures_inside() -> None:
@@ -151,6 +153,8 @@ def test_nothing_to_join(word: str) -> None:
         ({"stock_up": "5%"}, ("stock_up",)),
         ({"leg_lost": {"at_least": "80%"}}, ("leg_lost", "leg")),
         ({"leg_lost": {"leg": "NO", "at_least": "80%"}}, ("leg_lost", "leg")),
+        ({"holds_shares": False}, ("holds_shares",)),
+        ({"holds_shares": "yes"}, ("holds_shares",)),
     ],
 )
 def test_wrong_figures(words: dict[str, Any], path: tuple[str, ...]) -> None:

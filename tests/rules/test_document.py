@@ -63,7 +63,7 @@ def test_each_of_the_eight_is_a_sentence() -> None:
     """Compares with sentences by hand: where, what was found, what is allowed, what to do."""
     assert [str(fault) for fault in read(EIGHT)][:3] == [
         "test.yaml:2:1: `share` is not a word of this mapping; allowed: `name`, `about`, `shares`, `legs`, "
-        "`accept`, `enter`, `exit`, `stop`, `fill`; did you mean `shares`?",
+        "`after_assignment`, `accept`, `enter`, `exit`, `stop`, `fill`; did you mean `shares`?",
         "test.yaml:7:25: `legs.call.strike.from_spot` is `4`, a bare number; allowed: a percent from -90% to "
         "500%, written with its % sign; write 4%",
         "test.yaml:10:20: `legs.put.expiry.with` is `cal`, which is no leg of this strategy; allowed: `call`;"

@@ -59,9 +59,9 @@ Best case. Not capped: above every strike the position gains with the stock, wit
 later caps it from then on.
 
 Worst case. Floored by `put`: below its strike a further fall costs nothing more while the put lives, since
-the shares can be sold at that strike. The most that can be lost is the net debit less the strike. A resting
-order in the stock 9% below its price at entry ends the whole position; a gap jumps it, and the fill is then
-the open.
+the shares can be sold at that strike. The most that can be lost is the net debit less the strike. A put
+bought again has its own price and its own floor. A resting order in the stock 9% below its price at entry
+ends the whole position; a gap jumps it, and the fill is then the open.
 
 Obligations. The buyer of `call` may take shares at its strike whenever that pays, most likely the session
 before an ex-dividend date: the shares held are delivered.

@@ -9,15 +9,27 @@ import pytest
 
 from hedgerow.rules.condition import CONDITION_WORDS
 from hedgerow.rules.document import tree_of_text
+from hedgerow.rules.entering import (
+    CYCLES_ENDED,
+    PERIODS,
+    RANK_FIGURES,
+    CoolDown,
+    Enter,
+    FigureValue,
+    Ladder,
+    On,
+    Rank,
+)
 from hedgerow.rules.glossary import Section, sections
 from hedgerow.rules.legs import CYCLES, STRIKE_RULES, Expiry, Leg, Roll, Strike
 from hedgerow.rules.load import read_strategy
-from hedgerow.rules.schema import Accept, Enter, ExitRule, Rank, Stop, Strategy
+from hedgerow.rules.schema import Accept, ExitRule, Stop, Strategy
 from hedgerow.rules.vocabulary import signal_names
 
 ROOT = Path(__file__).parents[2]
 HANDBOOK = (ROOT / "strategies" / "README.md").read_text(encoding="utf-8")
-MODELS = (Strategy, Leg, Expiry, Strike, Roll, Accept, Enter, Rank, ExitRule, Stop)
+MODELS = (Strategy, Leg, Expiry, Strike, Roll, Accept, ExitRule, Stop)
+ENTERING = (Enter, On, Rank, FigureValue, CoolDown, Ladder)
 
 
 def section(title: str) -> Section:
@@ -27,8 +39,9 @@ def section(title: str) -> Section:
 
 def all_words() -> list[str]:
     """Every word of the language: of the models, of conditions, of strikes and cycles, and the signals."""
-    of_models = [word for model in MODELS for word in model.words()]
-    return sorted({*of_models, *CONDITION_WORDS, *STRIKE_RULES, *CYCLES, *signal_names()})
+    of_models = [word for model in (*MODELS, *ENTERING) for word in model.words()]
+    choices = (*STRIKE_RULES, *CYCLES, *PERIODS, *CYCLES_ENDED, *RANK_FIGURES)
+    return sorted({*of_models, *CONDITION_WORDS, *choices, *signal_names()})
 
 
 def test_every_word_has_a_meaning() -> None:
@@ -36,7 +49,7 @@ def test_every_word_has_a_meaning() -> None:
     rows = [row for found in sections() for row in found.rows]
     assert all(row.word and row.allowed and row.meaning for row in rows)
     listed = {row.word for row in rows}
-    assert {word for model in MODELS for word in model.words()} <= listed
+    assert {word for model in (*MODELS, *ENTERING) for word in model.words()} <= listed
     assert {*CONDITION_WORDS, *signal_names()} <= listed
 
 

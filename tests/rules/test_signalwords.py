@@ -24,6 +24,7 @@ NUMBERS = {
     "eps_growth",
     "sessions_to_report",
     "sessions_since_report",
+    "sessions_to_ex_dividend",
 }
 
 

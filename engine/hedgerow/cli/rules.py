@@ -150,7 +150,7 @@ def _table(section: Section) -> Iterator[str]:
 
     yield section.title
     for word, allowed, meaning in section.rows:
-        columns = [textwrap.wrap(word, 21), textwrap.wrap(allowed, 32), textwrap.wrap(meaning, WIDTH - 60)]
+        columns = [textwrap.wrap(word, 24), textwrap.wrap(allowed, 32), textwrap.wrap(meaning, WIDTH - 63)]
         for line in range(max(map(len, columns))):
             first, second, third = (column[line] if line < len(column) else "" for column in columns)
-            yield f"  {first:<21}  {second:<32}  {third}".rstrip()
+            yield f"  {first:<24}  {second:<32}  {third}".rstrip()

@@ -25,6 +25,7 @@ def asking_faults(parts: Parts) -> Iterator[Loose]:
     yield from _contradictions(parts)
     if parts.whole:
         yield from _unbounded(parts)
+        yield from _ranking(parts)
         yield from _accept(parts)
 
 
@@ -87,6 +88,21 @@ def _unbounded(parts: Parts) -> Iterator[Loose]:
             yield Loose(
                 ("accept", str(word)), "unbounded", found, "", "take it out, or add the leg that bounds it"
             )
+
+
+def _ranking(parts: Parts) -> Iterator[Loose]:
+    """A figure that ranks candidates and that no candidate of this structure has."""
+    rank = parts.section("enter").get("rank")
+    by = rank.get("by") if isinstance(rank, Mapping) else None
+    figure = by.get("figure") if isinstance(by, Mapping) else None
+    path = ("enter", "rank", "by", "figure")
+    if (figure in _NEED_BEST and parts.rise > 0) or (figure in _NEED_WORST and parts.rise < 0):
+        end = "best gain" if parts.rise > 0 else "worst loss"
+        found = f"ranks by the {end}, which has no bound in this structure"
+        yield Loose(path, "unbounded", found, "", "rank by another figure, or by a signal")
+    elif figure == "net_credit" and not parts.at_entry:
+        found = "ranks by premium, and no leg is opened at entry"
+        yield Loose(path, "no-legs", found, "", "rank by a signal")
 
 
 def _no_end(path: Path, what: str, instead: str) -> Loose:

@@ -7,6 +7,7 @@ from typing import Any
 
 from hedgerow.rules.asking import asking_faults
 from hedgerow.rules.cover import cover_faults
+from hedgerow.rules.keeping import keeping_faults
 from hedgerow.rules.legs import Leg
 from hedgerow.rules.parts import parts_of
 from hedgerow.rules.references import reference_faults
@@ -20,4 +21,5 @@ SHARE_WORDS = ("long", "short", "none")
 def faults_across(raw: Mapping[Any, Any], legs: dict[str, Leg]) -> list[Loose]:
     """Every fault between the parts of a strategy's mapping; `legs` are those valid by themselves."""
     parts = parts_of(raw, legs, SHARE_WORDS)
-    return [*reference_faults(parts), *cover_faults(parts), *asking_faults(parts)]
+    found = [*reference_faults(parts), *cover_faults(parts), *keeping_faults(parts)]
+    return [*found, *asking_faults(parts)]

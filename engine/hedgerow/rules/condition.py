@@ -1,7 +1,8 @@
 """Conditions: what a rule may ask at a close, as nested words. Never a formula.
 
 A condition is one mapping: `all`, `any` or `not` of others, a signal of the market, or a word about the
-position that is held (`gain`, `loss`, `days_left`, `held`, `stock_up`, `stock_down`, `leg_lost`).
+position that is held (`gain`, `loss`, `days_left`, `held`, `stock_up`, `stock_down`, `leg_lost`,
+`holds_shares`).
 """
 
 from __future__ import annotations
@@ -17,6 +18,7 @@ from hedgerow.rules.signalwords import SignalTest
 from hedgerow.rules.words import (
     UNKNOWN_WORD,
     Choice,
+    Flag,
     Loose,
     Name,
     Path,
@@ -37,6 +39,7 @@ __all__ = [
     "DaysLeftTest",
     "GainTest",
     "HeldTest",
+    "HoldsSharesTest",
     "LegLost",
     "LegLostTest",
     "LossTest",
@@ -48,7 +51,16 @@ __all__ = [
     "walked",
 ]
 
-POSITION_WORDS = ("gain", "loss", "days_left", "held", "stock_up", "stock_down", "leg_lost")
+POSITION_WORDS = (
+    "gain",
+    "loss",
+    "days_left",
+    "held",
+    "stock_up",
+    "stock_down",
+    "leg_lost",
+    "holds_shares",
+)
 CONDITION_WORDS = ("all", "any", "not", "signal", *POSITION_WORDS)
 
 _SHARE = Percent(0.0001, 10.0)
@@ -154,6 +166,12 @@ class LegLostTest(_Test):
     leg_lost: LegLost
 
 
+class HoldsSharesTest(_Test):
+    """The position holds shares now: its own, or what an assignment or exercise brought."""
+
+    holds_shares: Annotated[bool, Flag(only_true=True)]
+
+
 _SOME: dict[str, Any] = {"minItems": 1}
 
 
@@ -192,7 +210,14 @@ class NotOf(_Test):
 
 
 PositionTest: TypeAlias = (
-    GainTest | LossTest | DaysLeftTest | HeldTest | StockUpTest | StockDownTest | LegLostTest
+    GainTest
+    | LossTest
+    | DaysLeftTest
+    | HeldTest
+    | StockUpTest
+    | StockDownTest
+    | LegLostTest
+    | HoldsSharesTest
 )
 
 _CLASSES: dict[str, type[BaseModel]] = {
@@ -207,6 +232,7 @@ _CLASSES: dict[str, type[BaseModel]] = {
     "stock_up": StockUpTest,
     "stock_down": StockDownTest,
     "leg_lost": LegLostTest,
+    "holds_shares": HoldsSharesTest,
 }
 
 
@@ -237,7 +263,8 @@ Condition: TypeAlias = Annotated[
     | Annotated[HeldTest, Tag("<held>")]
     | Annotated[StockUpTest, Tag("<stock_up>")]
     | Annotated[StockDownTest, Tag("<stock_down>")]
-    | Annotated[LegLostTest, Tag("<leg_lost>")],
+    | Annotated[LegLostTest, Tag("<leg_lost>")]
+    | Annotated[HoldsSharesTest, Tag("<holds_shares>")],
     Discriminator(_tag),
     BeforeValidator(_known),
 ]

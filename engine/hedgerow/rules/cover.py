@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 
 from hedgerow.market.sessions import DAILY_DAYS, LEAST_TOLERANCE_DAYS, MONTHLY_DAYS, WEEKLY_DAYS
+from hedgerow.rules.keeping import waits_for_shares
 from hedgerow.rules.legs import Expiry, Leg
 from hedgerow.rules.parts import Parts
 from hedgerow.rules.references import expiry_root
@@ -19,17 +20,17 @@ def cover_faults(parts: Parts) -> Iterator[Loose]:
     """Every fault of the structure; nothing when a part of it cannot be read."""
     if not parts.whole:
         return
-    if parts.shares == "none" and not parts.names:
-        allowed = "allowed: shares, at least one leg, or both"
-        yield Loose((), "empty-position", "holds neither shares nor legs", allowed)
     yield from _uncovered(parts)
     yield from _stop_side(parts)
 
 
 def _uncovered(parts: Parts) -> Iterator[Loose]:
-    """Calls sold beyond what shares and longer-lived calls cover. Greedy, the hardest to cover first."""
+    """Calls sold beyond what shares and longer-lived calls cover. Greedy, the hardest to cover first.
+
+    Shares that are kept after an assignment cover the calls that are added only while they are held.
+    """
     left = {leg.name: leg.ratio for leg in parts.legs.values() if leg.right == "call" and not leg.sold}
-    spare = 1.0 if parts.shares == "long" else 0.0
+    spare = {"held": 1.0 if parts.shares == "long" else 0.0, "kept": 1.0 if parts.keeps else 0.0}
     sold = [leg for leg in parts.legs.values() if leg.right == "call" and leg.sold]
     covers = {leg.name: [name for name in left if _covers(parts, parts.legs[name], leg)] for leg in sold}
     for leg in sorted(sold, key=lambda item: len(covers[item.name])):
@@ -38,8 +39,9 @@ def _uncovered(parts: Parts) -> Iterator[Loose]:
             used = min(need, left[name])
             left[name] -= used
             need -= used
-        used = min(need, spare)
-        spare -= used
+        shares = "kept" if parts.shares == "none" and waits_for_shares(leg) else "held"
+        used = min(need, spare[shares])
+        spare[shares] -= used
         need -= used
         if need > 1e-9:
             yield _naked(parts, leg, leg.ratio - need)
@@ -52,6 +54,8 @@ def _naked(parts: Parts, leg: Leg, covered: float) -> Loose:
         if other.right == "call" and not other.sold and not _covers(parts, other, leg)
     ]
     allowed = "allowed: `shares: long`, or a call bought that lives at least as long, one for each sold"
+    if parts.shares == "none" and waits_for_shares(leg) and not parts.keeps:
+        allowed += ", or `after_assignment: keep`"
     if covered > 0:
         found = f"sells {leg.ratio:g} calls a lot, of which {covered:g} are covered"
     elif shorter:

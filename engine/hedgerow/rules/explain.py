@@ -1,17 +1,22 @@
-"""A strategy in plain English: what is held, what it can win and lose, how it is entered, left and filled.
-
-The payoff is told from the slopes of the position far above and far below every strike, so it holds for any
-structure of shares and legs; what depends on the strikes of the day is told as such.
-"""
+"""A strategy in plain English: what is held, what it can win and lose, how it is entered, left and filled."""
 
 from __future__ import annotations
 
 from collections.abc import Iterator
 
-from hedgerow.rules.figures import percent_text
-from hedgerow.rules.legs import Leg
-from hedgerow.rules.phrases import bounds_phrase, condition_phrase, joined, leg_phrase, signal_phrase
+from hedgerow.rules.entering import Enter, FigureValue, On, Rank
+from hedgerow.rules.legs import Roll
+from hedgerow.rules.outlook import best_case, obligations, worst_case
+from hedgerow.rules.phrases import (
+    bounds_phrase,
+    condition_phrase,
+    counted,
+    joined,
+    leg_phrase,
+    signal_phrase,
+)
 from hedgerow.rules.schema import Accept, Strategy
+from hedgerow.rules.shape import at_entry
 
 __all__ = ["explain", "paragraphs"]
 
@@ -23,6 +28,20 @@ _ACCEPTED = (
     ("best_over_worst", "the best gain over the worst loss is {}", False),
     ("spread_to_premium", "the bid-ask spread of all legs is {} of their premium", True),
 )
+_RANKED = {
+    "odds_of_best": "the chance of ending at the best gain",
+    "best_over_worst": "the best gain over the worst loss",
+    "net_credit": "what the options bring in, of the stock's price",
+    "best_gain": "the best gain, of the net debit",
+    "worst_loss": "the worst loss, of the net debit",
+}
+_WAYS = {
+    "up": "to a higher strike",
+    "down": "to a lower strike",
+    "out": "to a later expiry",
+    "up and out": "to a higher strike and a later expiry",
+    "down and out": "to a lower strike and a later expiry",
+}
 
 
 def explain(strategy: Strategy) -> str:
@@ -36,9 +55,9 @@ def paragraphs(strategy: Strategy) -> list[tuple[str, str]]:
     """The paragraphs, each with its title."""
     found = [
         ("Position", _position(strategy)),
-        ("Best case", " ".join(_best(strategy))),
-        ("Worst case", " ".join(_worst(strategy))),
-        ("Obligations", " ".join(_obligations(strategy))),
+        ("Best case", " ".join(best_case(strategy))),
+        ("Worst case", " ".join(worst_case(strategy))),
+        ("Obligations", " ".join(obligations(strategy))),
         ("Entry", " ".join(_entry(strategy))),
         ("Management", " ".join(_management(strategy))),
         ("Exit", " ".join(_exit(strategy))),
@@ -48,169 +67,62 @@ def paragraphs(strategy: Strategy) -> list[tuple[str, str]]:
 
 
 def _position(strategy: Strategy) -> str:
+    if strategy.holds_nothing:
+        return "Nothing: neither shares nor options."
     shares = {"long": "buy 100 shares", "short": "sell 100 shares short", "none": ""}[strategy.shares]
-    now = [leg for leg in strategy.legs if leg.add_when is None]
-    parts = [*([shares] if shares else []), *(leg_phrase(leg) for leg in now)]
+    parts = [*([shares] if shares else []), *(leg_phrase(leg) for leg in at_entry(strategy))]
     text = f"For each lot: {'; '.join(parts)}." if parts else "Nothing is held at first."
     if not strategy.legs:
         text += " There are no options."
     return text
 
 
-def _calls(strategy: Strategy, sold: bool) -> list[Leg]:
-    return [leg for leg in strategy.legs if leg.right == "call" and leg.sold == sold and leg.add_when is None]
-
-
-def _puts(strategy: Strategy, sold: bool) -> list[Leg]:
-    return [leg for leg in strategy.legs if leg.right == "put" and leg.sold == sold and leg.add_when is None]
-
-
-def _count(legs: list[Leg]) -> float:
-    return sum(leg.ratio for leg in legs)
-
-
-def _held(strategy: Strategy) -> float:
-    return {"long": 1.0, "short": -1.0, "none": 0.0}[strategy.shares]
-
-
-def _rise(strategy: Strategy) -> float:
-    """Lots of shares the position amounts to far above every strike."""
-    return _held(strategy) + _count(_calls(strategy, False)) - _count(_calls(strategy, True))
-
-
-def _fall(strategy: Strategy) -> float:
-    """Lots of shares the position amounts to far below every strike."""
-    return _held(strategy) - _count(_puts(strategy, False)) + _count(_puts(strategy, True))
-
-
-def _names(legs: list[Leg]) -> str:
-    return joined([f"`{leg.name}`" for leg in legs])
-
-
-def _best(strategy: Strategy) -> Iterator[str]:
-    rise, fall = _rise(strategy), _fall(strategy)
-    if _upside_down(strategy) and rise == 0 and fall == 0:
-        yield "The put is struck above the call: the position wins when the stock falls, most below both."
-        return
-    if rise > 0:
-        where = "above every strike " if strategy.legs else ""
-        pace = "" if rise == 1 else f", at the pace of {rise * 100:g} shares a lot"
-        yield f"Not capped: {where}the position gains with the stock, without limit{pace}."
-        if any(leg.sold and leg.right == "call" for leg in strategy.legs if leg.add_when is not None):
-            yield "A call sold later caps it from then on."
-    elif _simple(strategy) and _calls(strategy, True):
-        sold = _names(_calls(strategy, True))
-        yield (
-            f"Capped by {sold}: above its strike a further rise adds nothing, since the shares go at that "
-            "strike. The most that can be won is the strike less the net debit."
-        )
-    elif rise == 0 and strategy.legs and strategy.shares == "none" and all(leg.sold for leg in strategy.legs):
-        yield "Capped: the premium received is the most that can be won."
-    elif rise == 0:
-        yield "Capped: above every strike a further rise adds nothing."
-    if any(leg.roll is not None for leg in _calls(strategy, True)):
-        yield "A call sold later brings its own premium and its own cap."
-    if fall < 0:
-        where = "Below every strike the" if strategy.legs else "The"
-        yield f"{where} position gains as the stock falls, at most until it is worth nothing."
-    if _one_strike(strategy) and rise == 0 and fall == 0 and strategy.shares != "none":
-        yield "Call and put share strike and expiry: the result is locked in at entry, whatever comes."
-
-
-def _worst(strategy: Strategy) -> Iterator[str]:
-    rise, fall = _rise(strategy), _fall(strategy)
-    bought = _puts(strategy, False)
-    if rise < 0:
-        yield "No limit above: the position loses as the stock rises, however far it rises."
-    if fall > 0 and strategy.shares == "long" and bought:
-        puts = _names(bought)
-        yield f"Protected by {puts} in part: below every strike the loss goes on, at worst down to nothing."
-    elif fall > 0 and strategy.shares == "long":
-        cushion = ", cushioned by the premium alone" if _calls(strategy, True) else ""
-        yield f"Not floored: the shares fall unprotected, at worst to nothing{cushion}."
-    elif fall > 0:
-        yield "Below every strike the position loses as the stock falls, at worst until it is worth nothing."
-    elif bought and _simple(strategy):
-        yield (
-            f"Floored by {_names(bought)}: below its strike a further fall costs nothing more while the put "
-            "lives, since the shares can be sold at that strike. The most that can be lost is the net debit "
-            "less the strike."
-        )
-    elif rise >= 0 and strategy.legs:
-        yield "Bounded: below every strike and above every strike there is nothing more to lose."
-    if strategy.stop is not None:
-        yield _stop(strategy)
-
-
-def _stop(strategy: Strategy) -> str:
-    where = "below" if strategy.shares == "long" else "above"
-    assert strategy.stop is not None
-    distance = percent_text(strategy.stop.distance)
-    return (
-        f"A resting order in the stock {distance} {where} its price at entry ends the whole position; "
-        "a gap jumps it, and the fill is then the open."
-    )
-
-
-def _simple(strategy: Strategy) -> bool:
-    """Whether shares stand with at most one call sold and one put bought, the put not above the call."""
-    now = [leg for leg in strategy.legs if leg.add_when is None]
-    kinds = [(leg.sold, leg.right) for leg in now]
-    usual = len(set(kinds)) == len(kinds) and {*kinds} <= {(True, "call"), (False, "put")}
-    whole = all(leg.ratio == 1 for leg in now)
-    return strategy.shares == "long" and usual and whole and not _upside_down(strategy)
-
-
-def _upside_down(strategy: Strategy) -> bool:
-    """Whether a bought put is known to be struck above a sold call: a reverse collar."""
-    puts = [leg.strike.from_spot for leg in _puts(strategy, False)]
-    calls = [leg.strike.from_spot for leg in _calls(strategy, True)]
-    return any(put is not None and call is not None and put > call for put in puts for call in calls)
-
-
-def _one_strike(strategy: Strategy) -> bool:
-    """Whether two legs, a call and a put, are struck and expire together."""
-    if len(strategy.legs) != 2:
-        return False
-    names = {leg.name for leg in strategy.legs}
-    same = [leg.strike.same_as in names for leg in strategy.legs]
-    together = [leg.expiry.with_leg in names for leg in strategy.legs]
-    return any(same) and any(together) and {leg.right for leg in strategy.legs} == {"call", "put"}
-
-
-def _obligations(strategy: Strategy) -> Iterator[str]:
-    calls = [leg for leg in strategy.legs if leg.sold and leg.right == "call"]
-    puts = [leg for leg in strategy.legs if leg.sold and leg.right == "put"]
-    if calls:
-        held = strategy.shares == "long"
-        how = "the shares held are delivered" if held else "the calls bought stand behind it"
-        yield (
-            f"The buyer of {_names(calls)} may take shares at its strike whenever that pays, most likely the "
-            f"session before an ex-dividend date: {how}."
-        )
-    if puts:
-        how = (
-            "they close the shares sold short" if strategy.shares == "short" else "cash for that is set aside"
-        )
-        yield (
-            f"The buyer of {_names(puts)} may sell you shares at its strike, early too when it is deep in "
-            f"the money: {how}."
-        )
-    if strategy.shares == "short":
-        yield "Shares sold short cost their borrowing and every dividend."
-
-
 def _entry(strategy: Strategy) -> Iterator[str]:
-    enter = strategy.enter
-    if enter is None or enter.when is None:
-        yield "At every close at which the stock has no open position."
-    else:
-        yield f"At a close without an open position in the stock, when {condition_phrase(enter.when)}."
-    if enter is not None and enter.rank is not None:
+    if strategy.holds_nothing:
+        yield "Never: the account stays in cash."
+        return
+    enter = strategy.enter or Enter()
+    yield _moment(enter)
+    if enter.ladder is not None:
+        yield f"Each takes 1/{enter.ladder.positions} of the money that one position alone would take."
+    if enter.cool_down is not None:
+        pause = counted(enter.cool_down.sessions, "session")
+        yield f"After a position in a stock has lost money, none is opened in it for {pause}."
+    if enter.rank is not None:
         order = "highest" if enter.rank.order == "high" else "lowest"
-        yield f"When capital is short, the {order} come first by {signal_phrase(enter.rank.by)}."
+        yield f"When capital is short, the {order} come first by {_ranked_by(enter.rank)}."
     if strategy.accept is not None:
         yield f"The entry is declined unless {joined(_accepted(strategy.accept))}."
+
+
+def _moment(enter: Enter) -> str:
+    """The close at which a position may be opened."""
+    room = "no open position"
+    if enter.ladder is not None:
+        ago = counted(enter.ladder.spacing, "session")
+        room = f"fewer than {enter.ladder.positions} open positions, each opened {ago} ago or more"
+    if enter.on is not None:
+        asked = "" if enter.when is None else f" and {condition_phrase(enter.when, True)}"
+        return f"At the close of {_days(enter.on)}, if the stock has {room}{asked}."
+    if enter.when is None:
+        return f"At every close at which the stock has {room}."
+    if enter.ladder is not None:
+        return f"At a close at which the stock has {room}, when {condition_phrase(enter.when)}."
+    return f"At a close without an open position in the stock, when {condition_phrase(enter.when)}."
+
+
+def _days(on: On) -> str:
+    """The sessions of an entry."""
+    if on.weekday is not None:
+        return f"every {joined([day.capitalize() for day in on.weekday])}"
+    if on.first_session_of is not None:
+        return f"the first session of every {on.first_session_of}"
+    return f"every session on which a {on.expiry_of} expiry falls"
+
+
+def _ranked_by(rank: Rank) -> str:
+    """What candidates are ranked by."""
+    return _RANKED[rank.by.figure] if isinstance(rank.by, FigureValue) else signal_phrase(rank.by)
 
 
 def _accepted(accept: Accept) -> list[str]:
@@ -223,6 +135,8 @@ def _accepted(accept: Accept) -> list[str]:
 
 
 def _management(strategy: Strategy) -> Iterator[str]:
+    if strategy.after_assignment == "keep":
+        yield "Shares that an assigned put brings are kept."
     for leg in strategy.legs:
         if leg.add_when is not None:
             yield f"Later, when {condition_phrase(leg.add_when)}: {leg_phrase(leg)}."
@@ -234,11 +148,19 @@ def _management(strategy: Strategy) -> Iterator[str]:
         if leg.roll.condition is not None:
             times.append(f"when {condition_phrase(leg.roll.condition)}")
         verb = "sold" if leg.sold else "bought"
-        credit = ", but only if that brings money in" if leg.roll.only_for else ""
-        yield f"`{leg.name}` is {verb} again by the same rules {joined(times, 'or')}{credit}."
+        yield f"`{leg.name}` is {verb} again by the same rules {joined(times, 'or')}{_only(leg.roll)}."
+
+
+def _only(roll: Roll) -> str:
+    """What a roll of a leg that lives is held to."""
+    parts = [_WAYS[roll.direction]] if roll.direction != "any" else []
+    parts += ["if that brings money in"] if roll.only_for else []
+    return f", but only {joined(parts, 'and only')}" if parts else ""
 
 
 def _exit(strategy: Strategy) -> Iterator[str]:
+    if strategy.holds_nothing:
+        return
     if strategy.exit:
         yield "Asked at each close, in this order; the first that holds ends the whole position:"
         rules = (
@@ -258,6 +180,8 @@ def _at_expiry(strategy: Strategy) -> str:
         "At expiry an option in the money is exercised or assigned, any other ends worthless; those of an "
         "index are settled in cash, and never early."
     )
+    if strategy.after_assignment == "keep":
+        return text + " The position goes on while shares are held, and ends when they are called away."
     if strategy.shares == "none":
         return text + " Shares that this leaves are sold at that close."
     if again:
@@ -266,6 +190,8 @@ def _at_expiry(strategy: Strategy) -> str:
 
 
 def _fills(strategy: Strategy) -> str:
+    if strategy.holds_nothing:
+        return ""
     if strategy.fill == "close":
         return "What is decided at a close is filled at that close, after costs, as if it were known in time."
     return "What is decided at a close is filled at the next open, after costs."

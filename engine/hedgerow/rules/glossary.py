@@ -9,10 +9,11 @@ from pydantic import BaseModel
 
 from hedgerow.rules.base import Between, Words
 from hedgerow.rules.condition import DaysLeft, Fallen, GainOf, LegLost, LossOf, Moved, Sessions
+from hedgerow.rules.entering import CoolDown, Enter, FigureValue, Ladder, On, Rank
 from hedgerow.rules.legs import Expiry, Leg, Roll, Spend, Strike
-from hedgerow.rules.schema import Accept, Enter, ExitRule, Rank, Stop, Strategy
+from hedgerow.rules.schema import Accept, ExitRule, Stop, Strategy
 from hedgerow.rules.vocabulary import SignalWords, signal_names, signal_words
-from hedgerow.rules.words import Choice, Flag, Name, Scalar, Text, listed
+from hedgerow.rules.words import Choice, Choices, Flag, Name, Scalar, Text, listed
 
 __all__ = ["Row", "Section", "sections"]
 
@@ -41,7 +42,11 @@ _MODELS: tuple[tuple[str, type[Words]], ...] = (
     ("roll of a leg", Roll),
     ("accept, of the whole structure at entry", Accept),
     ("enter", Enter),
+    ("on, under enter", On),
     ("rank, under enter", Rank),
+    ("by, under rank, in place of a signal", FigureValue),
+    ("cool_down, under enter", CoolDown),
+    ("ladder, under enter", Ladder),
     ("exit, a list", ExitRule),
     ("stop", Stop),
 )
@@ -61,6 +66,7 @@ _MEANINGS: dict[str, str] = {
     "Strategy.about": "a paragraph for readers",
     "Strategy.shares": "100 shares a lot held, sold short, or no shares",
     "Strategy.legs": "up to four legs, each under a name of its own",
+    "Strategy.after_assignment": "what becomes of shares that an assigned put brings where shares are none",
     "Strategy.accept": "what the structure must be at entry, else the entry is declined",
     "Strategy.enter": "when a position may be opened; left out: at every close without one",
     "Strategy.exit": "rules to leave, asked in order at each close; the first that holds wins",
@@ -91,6 +97,7 @@ _MEANINGS: dict[str, str] = {
     "Spend.of": "the leg whose premium is spent",
     "Roll.at": "made again when it ends at expiry",
     "Roll.if": "closed and made again when this holds",
+    "Roll.direction": "rolled only to a higher or lower strike, a later expiry, or both",
     "Roll.only_for": "rolled only if that brings money in",
     "Accept.net_credit": "the options together bring money in",
     "Accept.net_debit": "what the options cost together, of the stock's price",
@@ -100,7 +107,17 @@ _MEANINGS: dict[str, str] = {
     "Accept.best_over_worst": "the best gain over the worst loss",
     "Accept.spread_to_premium": "the bid-ask spread of all legs, of their premium",
     "Enter.when": "what the market must show; signals only",
+    "Enter.on": "the sessions at whose close a position may be opened; exactly one of three",
     "Enter.rank": "who comes first when capital is short",
+    "Enter.cool_down": "a pause in a symbol after a position in it has lost",
+    "Enter.ladder": "several positions of one symbol at once, opened apart",
+    "On.weekday": "that weekday; none in a week in which it is no session",
+    "On.first_session_of": "the first session of each such period",
+    "On.expiry_of": "sessions on which listed expiries of that cycle fall",
+    "FigureValue.figure": "a figure of the candidate's own structure, as accept knows it",
+    "CoolDown.sessions": "so many sessions without an entry",
+    "Ladder.positions": "so many at once, each with its part of per_position",
+    "Ladder.spacing": "sessions between two entries at least",
     "Rank.by": "the number that ranks",
     "Rank.order": "whether high or low numbers come first",
     "ExitRule.name": "what the ledger calls this reason",
@@ -120,7 +137,10 @@ _KINDS = {
     "rank": "a mapping, see below",
     "exit": "a list of mappings, see below",
     "stop": "a mapping, see below",
-    "by": "a signal that is a number",
+    "by": "a signal that is a number, or a figure",
+    "on": "a mapping, see below",
+    "cool_down": "a mapping, see below",
+    "ladder": "a mapping, see below",
     "if": "a condition",
     "when": "a condition",
     "add_when": "a condition",
@@ -157,6 +177,8 @@ def _scalar(parts: tuple[Any, ...]) -> Scalar | None:
 def _allowed(scalar: Scalar | None) -> str:
     if isinstance(scalar, Choice):
         return " | ".join(scalar.words)
+    if isinstance(scalar, Choices):
+        return " | ".join(scalar.words) + ", or a list"
     if isinstance(scalar, Flag):
         return "true" if scalar.only_true else "true | false"
     if isinstance(scalar, Text):
@@ -181,6 +203,7 @@ def _conditions() -> Iterator[Row]:
     for word, model, meaning in _POSITION:
         inner = (f"{name}: {_allowed(_field_scalar(model, name))}" for name in model.model_fields)
         yield Row(word, "{" + ", ".join(inner) + "}", meaning)
+    yield Row("holds_shares", "true", "the position holds shares now")
 
 
 def _field_scalar(model: type[BaseModel], name: str) -> Scalar | None:

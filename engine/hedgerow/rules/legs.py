@@ -12,7 +12,7 @@ from hedgerow.rules.condition import Condition
 from hedgerow.rules.figures import Number, Percent, Whole
 from hedgerow.rules.words import Choice, Loose, Name
 
-__all__ = ["CYCLES", "STRIKE_RULES", "Expiry", "Leg", "Roll", "Spend", "Strike"]
+__all__ = ["CYCLES", "ROLL_WAYS", "STRIKE_RULES", "Expiry", "Leg", "Roll", "Spend", "Strike"]
 
 
 LEAST_DAYS = {"daily": 1, "weekly": 4, "monthly": 15, "quarterly": 46}
@@ -31,6 +31,9 @@ STRIKE_RULES = (
     "zero_cost_with",
     "worst_loss_within",
 )
+
+
+ROLL_WAYS = ("any", "up", "down", "out", "up and out", "down and out")
 
 
 class Expiry(Words):
@@ -96,19 +99,28 @@ class Strike(Words):
 
 
 class Roll(Words):
-    """When a leg is written or bought again by its own rules: at expiry, on a condition, or both."""
+    """When a leg is written or bought again by its own rules: at expiry, on a condition, or both.
+
+    `direction` and `only_for` are asked of a leg that still lives: which way it may go, and for what.
+    """
 
     at: Annotated[str, Choice(("expiry",))] | None = None
     condition: Condition | None = Field(default=None, alias="if")
+    direction: Annotated[str, Choice(ROLL_WAYS)] = "any"
     only_for: Annotated[str, Choice(("credit",))] | None = None
 
     @classmethod
     def judge(cls, raw: Mapping[Any, Any], made: Self | None) -> list[Loose]:
-        """A roll that says not when."""
+        """A roll that says not when, or which way where nothing lives that could go it."""
         if raw.get("at") is None and raw.get("if") is None:
             return [
                 Loose((), "one-of", "does not say when", "allowed: `at: expiry`, `if: CONDITION`, or both")
             ]
+        if raw.get("if") is None and raw.get("direction", "any") != "any":
+            found = (
+                "says which way a leg that lives may go, and this one is made again only when it has ended"
+            )
+            return [Loose(("direction",), "idle", found, "", "leave it out, or add `if: CONDITION`")]
         return []
 
     @property

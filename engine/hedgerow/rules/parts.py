@@ -44,6 +44,11 @@ class Parts:
         return self.shares is not None and len(self.legs) == len(self.names)
 
     @property
+    def keeps(self) -> bool:
+        """Whether shares that an assignment brings are kept."""
+        return self.raw.get("after_assignment") == "keep"
+
+    @property
     def at_entry(self) -> list[Leg]:
         """The valid legs that are opened with the position."""
         return [leg for leg in self.legs.values() if leg.add_when is None]

@@ -13,6 +13,7 @@ from hedgerow.rules.condition import (
     DaysLeftTest,
     GainTest,
     HeldTest,
+    HoldsSharesTest,
     LegLostTest,
     LossTest,
     NotOf,
@@ -24,7 +25,15 @@ from hedgerow.rules.legs import Expiry, Leg, Strike
 from hedgerow.rules.signalwords import SignalTest, SignalValue
 from hedgerow.signals import named_signal
 
-__all__ = ["bounds_phrase", "condition_phrase", "expiry_phrase", "joined", "leg_phrase", "signal_phrase"]
+__all__ = [
+    "bounds_phrase",
+    "condition_phrase",
+    "counted",
+    "expiry_phrase",
+    "joined",
+    "leg_phrase",
+    "signal_phrase",
+]
 
 _SNAPS = {
     "nearest": "moved to the nearest listed strike",
@@ -38,6 +47,11 @@ def joined(parts: Sequence[str], word: str = "and") -> str:
     if len(parts) < 2:
         return "".join(parts)
     return f"{', '.join(parts[:-1])} {word} {parts[-1]}"
+
+
+def counted(count: int, thing: str) -> str:
+    """A count of things."""
+    return f"{count} {thing}" if count == 1 else f"{count} {thing}s"
 
 
 def leg_phrase(leg: Leg) -> str:
@@ -150,13 +164,15 @@ def _position_clause(test: Condition) -> str:
     if isinstance(test, DaysLeftTest):
         leg = test.days_left.leg
         which = "the nearest expiry" if leg is None else f"the expiry of `{leg}`"
-        return f"{test.days_left.at_most} days or fewer are left to {which}"
+        return f"{counted(test.days_left.at_most, 'day')} or fewer are left to {which}"
     if isinstance(test, HeldTest):
-        return f"it has been held for {test.held.at_least} sessions or more"
+        return f"it has been held for {counted(test.held.at_least, 'session')} or more"
     return _move_clause(test)
 
 
 def _move_clause(test: Condition) -> str:
+    if isinstance(test, HoldsSharesTest):
+        return "the position holds shares"
     if isinstance(test, StockUpTest):
         return f"the stock is {percent_text(test.stock_up.at_least)} or more above its price at entry"
     if isinstance(test, StockDownTest):

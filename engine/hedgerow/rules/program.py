@@ -346,8 +346,8 @@ def compile_strategy(
 ) -> Program:
     """Turn a strategy into the arrays of the walk.
 
-    `values` gives a signal's array of shape (T, `symbols`), `ordinals` (T,) are the sessions, `regime` that of
-    listings. Raises RulesError when legs wait for each other or too many signals are used.
+    `values` gives a signal's array of shape (T, `symbols`), `ordinals` (T,) are the sessions, `regime` that
+    of listings. Raises RulesError when legs wait for each other or too many signals are used.
     """
     bits = _Bits(values)
     plan = _plan(strategy, bits)

@@ -22,6 +22,7 @@ def reference_faults(parts: Parts) -> Iterator[Loose]:
     yield from _worst_case_last(parts, partners)
     yield from _sides(parts)
     yield from _rolls(parts, with_legs)
+    yield from _ways(parts, with_legs)
 
 
 def partner_path(name: str, strike: Strike) -> Path:
@@ -120,6 +121,21 @@ def _rolls(parts: Parts, with_legs: Mapping[str, str | None]) -> Iterator[Loose]
             found = f"rolls at expiry, but `{name}` ends with `{root}`, which does not roll"
             allowed = f"allowed: an expiry of its own, or `roll: {{at: expiry}}` in `{root}` too"
             yield Loose(("legs", name, "roll"), "roll", found, allowed)
+
+
+def _ways(parts: Parts, with_legs: Mapping[str, str | None]) -> Iterator[Loose]:
+    """A leg cannot go where the leg it follows stays."""
+    for name, leg in parts.legs.items():
+        way = "any" if leg.roll is None else leg.roll.direction
+        for words, other, what in (
+            (("out",), expiry_root(name, with_legs), "expiry"),
+            (("up", "down"), leg.strike.same_as or name, "strike"),
+        ):
+            followed = parts.legs.get(other)
+            if other != name and set(words) & set(way.split()) and followed and followed.roll is None:
+                found = f"is `{way}`, but the {what} is that of `{other}`, which does not roll"
+                allowed = f"allowed: a direction that leaves the {what} where it is, or one of its own"
+                yield Loose(("legs", name, "roll", "direction"), "never", found, allowed)
 
 
 def expiry_root(name: str, with_legs: Mapping[str, str | None]) -> str:

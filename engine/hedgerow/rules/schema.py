@@ -21,12 +21,14 @@ from hedgerow.rules.condition import (
     DaysLeftTest,
     GainTest,
     HeldTest,
+    HoldsSharesTest,
     LegLostTest,
     LossTest,
     NotOf,
     StockDownTest,
     StockUpTest,
 )
+from hedgerow.rules.entering import CoolDown, Enter, FigureValue, Ladder, On, Rank
 from hedgerow.rules.figures import Number, Percent
 from hedgerow.rules.legs import Expiry, Leg, Roll, Spend, Strike
 from hedgerow.rules.signalwords import SignalTest, SignalValue
@@ -38,16 +40,21 @@ __all__ = [
     "AnyOf",
     "Bounds",
     "Condition",
+    "CoolDown",
     "DaysLeftTest",
     "Enter",
     "ExitRule",
     "Expiry",
+    "FigureValue",
     "GainTest",
     "HeldTest",
+    "HoldsSharesTest",
+    "Ladder",
     "Leg",
     "LegLostTest",
     "LossTest",
     "NotOf",
+    "On",
     "Rank",
     "Roll",
     "SignalTest",
@@ -74,20 +81,6 @@ class Accept(Words):
     odds_of_best: Annotated[Bounds, Between(Percent(0.0, 1.0))] | None = None
     best_over_worst: Annotated[Bounds, Between(Number(0.0, 1000.0), AT_LEAST)] | None = None
     spread_to_premium: Annotated[Bounds, Between(Percent(0.0, 2.0), AT_MOST)] | None = None
-
-
-class Rank(Words):
-    """Which candidates come first when capital is short: by a signal's value, `high` or `low` first."""
-
-    by: SignalValue
-    order: Annotated[str, Choice(("high", "low"))] = "high"
-
-
-class Enter(Words):
-    """When a position may be opened; nothing said means at every close at which none is held."""
-
-    when: Condition | None = None
-    rank: Rank | None = None
 
 
 class ExitRule(Words):
@@ -165,6 +158,7 @@ class Strategy(Words):
     about: Annotated[str, Text(2000)] | None = None
     shares: Annotated[str, Choice(SHARE_WORDS)] = "long"
     legs: Annotated[tuple[Leg, ...], _Named()] = ()
+    after_assignment: Annotated[str, Choice(("sell", "keep"))] = "sell"
     accept: Accept | None = None
     enter: Enter | None = None
     exit: Annotated[tuple[ExitRule, ...], Field(strict=False)] = ()
@@ -175,9 +169,20 @@ class Strategy(Words):
     def judge(cls, raw: Mapping[Any, Any], made: Self | None) -> list[Loose]:
         """Faults that need more than one part of the strategy to see."""
         plain = raw if made is None else made.plain()
+        if made is not None and not made.legs and "legs" not in raw:
+            plain = {word: value for word, value in plain.items() if word != "legs"}
         written = plain.get("legs")
         legs, _ = read_legs(written) if isinstance(written, Mapping) else ({}, [])
         return faults_across(plain, legs)
+
+    @property
+    def holds_nothing(self) -> bool:
+        """Whether it is the yardstick of cash, which never opens a position."""
+        return self.shares == "none" and not self.legs
+
+    def plain(self) -> dict[str, Any]:
+        """The words again; that cash holds no legs has to be said."""
+        return super().plain() | ({"legs": {}} if self.holds_nothing else {})
 
     @field_serializer("legs", mode="wrap")
     def _write_legs(self, legs: tuple[Leg, ...], handler: Any) -> dict[str, Any]:

@@ -19,6 +19,7 @@ from hedgerow.errors import nearest_word
 __all__ = [
     "UNKNOWN_WORD",
     "Choice",
+    "Choices",
     "Flag",
     "Loose",
     "Name",
@@ -207,6 +208,46 @@ class Choice(Scalar):
     def json_schema(self) -> dict[str, Any]:
         """The words, for completion."""
         return {"enum": list(self.words)}
+
+
+@dataclass(frozen=True, slots=True)
+class Choices(Scalar):
+    """One of a few words, or a list of several; read as a tuple."""
+
+    words: tuple[str, ...]
+
+    @property
+    def allowed(self) -> str:
+        """The words."""
+        return f"allowed: {listed(self.words)}, or a list of them"
+
+    def read(self, value: object) -> tuple[str, ...]:
+        """The words in their order. Raises WordsError for any other, none, or one that stands twice."""
+        one = Choice(self.words)
+        if isinstance(value, str):
+            return (one.read(value),)
+        if not isinstance(value, list | tuple) or not value:
+            refuse("choice", f"is {shown(value)}", self.allowed)
+        faults: list[Loose] = []
+        for at, item in enumerate(value):
+            try:
+                one.read(item)
+            except WordsError as refusal:
+                faults += [fault.under(at) for fault in refusal.faults]
+            if item in value[:at]:
+                faults.append(Loose((at,), "repeated", "stands a second time", "", "take it out"))
+        if faults:
+            refuse_all(faults)
+        return tuple(value)
+
+    def write(self, value: tuple[str, ...]) -> str | list[str]:
+        """One word alone, several as a list."""
+        return value[0] if len(value) == 1 else list(value)
+
+    def json_schema(self) -> dict[str, Any]:
+        """The words, for completion."""
+        one = {"enum": list(self.words)}
+        return {"anyOf": [one, {"type": "array", "items": one, "minItems": 1}]}
 
 
 @dataclass(frozen=True, slots=True)
