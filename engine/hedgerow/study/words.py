@@ -13,7 +13,7 @@ from hedgerow.kernels.layout import Costs
 from hedgerow.rules.base import Words
 from hedgerow.rules.figures import Number, Percent, Share, Whole
 from hedgerow.rules.words import Choice, Flag, Loose, Scalar, Text, WordsError, refuse, shown
-from hedgerow.walk.account import DEFAULT_COSTS, NO_COSTS, Account
+from hedgerow.walk.account import DEFAULT_COSTS, MARGINS, NO_COSTS, Account
 
 __all__ = ["AccountWords", "CostWords", "Day", "PricingWords", "StudyWords", "WindowWords"]
 
@@ -67,11 +67,13 @@ class AccountWords(Words):
     per_position: Annotated[float, Share()] = 1.0 / 3.0
     most_positions: Annotated[int, Whole(1, 10_000, "positions at once")] = 1000
     most_new_a_day: Annotated[int, Whole(1, 10_000, "positions a day")] = 1000
+    most_per_sector: Annotated[int, Whole(1, 10_000, "positions of one sector")] = 1000
     interest: Annotated[bool, Flag()] = True
+    margin: Annotated[str, Choice(tuple(MARGINS))] = "cash"
 
     def account(self) -> Account:
         """The account these words describe."""
-        return Account(self.cash, self.per_position, self.most_positions, self.most_new_a_day, self.interest)
+        return Account(**{name: getattr(self, name) for name in type(self).model_fields})
 
 
 class CostWords(Words):

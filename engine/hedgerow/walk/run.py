@@ -16,7 +16,7 @@ from hedgerow.kernels.state import COSTS, POSITION, SMILE, TOTALS, World
 from hedgerow.market.sessions import Regime
 from hedgerow.market.table import Market
 from hedgerow.rules.program import Program
-from hedgerow.walk.account import Account
+from hedgerow.walk.account import MARGINS, Account
 from hedgerow.walk.inputs import Tape
 from hedgerow.walk.tables import Tables
 
@@ -70,8 +70,10 @@ def _plan(program: Program, account: Account, regime: str, marks: bool) -> Recor
     """The program's plan with the account's part filled in."""
     plans = program.plan.copy()
     plan = plans[0]
-    plan["opening_cash"], plan["per_position"] = account.cash, account.per_position
+    plan["opening_cash"] = account.cash
+    plan["per_position"] = account.per_position / plan["ladder"]
     plan["most_positions"], plan["most_new"] = account.most_positions, account.most_new_a_day
+    plan["most_sector"], plan["margin"] = account.most_per_sector, MARGINS[account.margin]
     plan["interest"], plan["marks"] = int(account.interest), int(marks)
     plan["modern"] = int(regime == "modern")
     return plans
