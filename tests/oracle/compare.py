@@ -82,6 +82,7 @@ def story(events: Sequence[Event], legs: Sequence[str]) -> list[str]:
 
 def _line(event: Event, legs: Sequence[str]) -> str:
     """The line of one event; none for the deposit."""
+    event = event | {"cash": event["cash"] + 0.0}  # no negative nothing
     kind, row = event["kind"], event["leg"]
     reason = REASONS.get(event["reason"], f"exit {event['reason'] - 100}").replace("_", " ")
     start = f"{event['session']} {reason}:"

@@ -50,7 +50,8 @@ class Dealer:
         """Buy or sell an option leg at its fill."""
         leg = position.legs[row]
         quote = self.trader.pricer.quote(sight, leg.rule.right, leg.strike, leg.expiry, moment)
-        price, fee = self.trader.leg_fill(quantity, quote), self.trader.leg_fee(quantity)
+        price = self.trader.leg_fill(quantity, quote)
+        fee = self.trader.leg_fee(quantity) if price > 0.0 else 0.0  # without a bid it is left to lapse
         event = self.book.write(t, position.symbol, position.number, layout.KIND_LEG, reason, leg=row)
         event.update(quantity=quantity, price=price, mid=quote.mid, fee=fee)
         event.update(strike=leg.strike, expiry=leg.expiry)

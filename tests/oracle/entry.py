@@ -51,6 +51,12 @@ class Trader:
         price = quote.mid + half if side > 0.0 else max(0.0, quote.mid - half)
         return self._on_tick(price, side) if self.setting.cost("use_ticks") else price
 
+    def finds_bids(self, sight: Sight, moment: Moment, legs: list[Chosen | None]) -> bool:
+        """Whether somebody pays for every leg that is to be sold."""
+        sold = [leg for leg in legs if leg is not None and leg.rule.sign < 0]
+        quotes = [self.pricer.quote(sight, leg.rule.right, leg.strike, leg.expiry, moment) for leg in sold]
+        return all(self.leg_fill(-1.0, quote) > 0.0 for quote in quotes)
+
     @staticmethod
     def _on_tick(price: float, side: float) -> float:
         """The tick at or above what is paid, at or below what is received; counted in cents."""
@@ -144,10 +150,12 @@ class Chooser:
             strikes[rule.name] = self.strike(rule, expiries[rule.name], strikes)
             if strikes[rule.name] == 0.0:
                 return [], layout.WHY_NO_STRIKE
-        return [
+        legs = [
             Chosen(rule, strikes[rule.name], expiries[rule.name]) if rule.name in strikes else None
             for rule in self.rules.legs
-        ], 0
+        ]
+        bid = self.trader.finds_bids(self.sight, self.moment, legs)
+        return legs, 0 if bid else layout.WHY_NO_BID
 
 
 @dataclass(frozen=True)

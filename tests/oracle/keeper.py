@@ -96,7 +96,7 @@ class Keeper:
             self.dealer.split(position, t, ratio)
         if dividend + special > 0.0 and position.shares != 0.0:
             self.dealer.dividend(position, t, dividend + special)
-        if special > 0.0 and adjusts_contracts(special, before, history.ordinals[t]):
+        if adjusts_contracts(special, before, history.ordinals[t]):
             self.dealer.lower_strikes(position, special)
 
     def early_exercise(self, position: Position, history: past.History, t: int) -> None:
@@ -118,7 +118,9 @@ class Keeper:
             return False
         pricer = self.trader.pricer
         dividend, special, ratio = history.acts[t]
-        drop = (dividend + special) * ratio
+        drop = (dividend + special) * ratio  # what a holder of the option does without
+        if adjusts_contracts(special, moment.spot / ratio, history.ordinals[t]):
+            drop = dividend * ratio
         if leg.rule.right == CALL and drop <= 0.0:
             return False
         volatility = pricer.quote(sight, leg.rule.right, leg.strike, leg.expiry, moment).volatility
@@ -241,11 +243,22 @@ class Keeper:
             expiry = chooser.expiry(leg.rule, {other.rule.name: other.expiry for other in others})
             strikes = {other.rule.name: other.strike for other in others}
             strike = chooser.strike(leg.rule, expiry, strikes) if expiry else 0.0
-            if strike > 0.0 and not (leg.live and (strike, expiry) == (leg.strike, leg.expiry)):
+            same = leg.live and (strike, expiry) == (leg.strike, leg.expiry)
+            if strike > 0.0 and not same and self.pays(leg, strike, expiry, sight, moment):
                 leg.ordered, leg.reason = (strike, expiry), reason
                 self.signal(position, t, reason, leg=row, strike=strike, expiry=expiry)
         if self.rules.at_close and self.dealer.fill_legs(position, t, sight, moment, self.units(position)):
             self.restate(position)
+
+    def pays(self, leg: Leg, strike: float, expiry: int, sight: Sight, moment: Moment) -> bool:
+        """Whether rolling a leg brings money in, where the rule wants that."""
+        if not leg.live or not leg.rule.roll_for_credit:
+            return True
+        pricer, right = self.trader.pricer, leg.rule.right
+        old = pricer.quote(sight, right, leg.strike, leg.expiry, moment)
+        new = pricer.quote(sight, right, strike, expiry, moment)
+        side = -leg.quantity
+        return leg.quantity * (self.trader.leg_fill(side, old) - self.trader.leg_fill(-side, new)) > 0.0
 
     def wish(self, leg: Leg, held: Held, t: int) -> int:
         """The reason for which a leg is to be opened anew; 0 when it is left as it is."""
@@ -278,4 +291,6 @@ class Keeper:
 
 def adjusts_contracts(special: float, before: float, today: int) -> bool:
     """Whether a special dividend is large enough to lower the strikes (73 FR 55582)."""
+    if special <= 0.0:
+        return False
     return special >= 0.125 if today >= SPECIAL_RULE_FROM else special > 0.1 * before

@@ -11,7 +11,7 @@ from dataclasses import dataclass, field
 from typing import Any, NamedTuple
 
 from oracle.past import Payer
-from oracle.values import CALL, PUT, american, european
+from oracle.values import CALL, PUT, american, call_across_dividend, european
 
 OPEN_HOURS = 6.5 / 24.0  # a session's length in days: what is left of the day at its open
 SURFACE = {
@@ -28,16 +28,29 @@ SURFACE = {
 }
 
 
-class Puts:
-    """American puts on a stock without a yield, by Bjerksund & Stensland 2002."""
+class Ahead(NamedTuple):
+    """The dividends expected in an option's life, as one: years to the first, and their worth on that day."""
 
-    def value(self, spot: float, strike: float, years: float, rate: float, volatility: float) -> float:
+    years: float
+    amount: float
+
+
+class Puts:
+    """American puts on a price that is `base` without the dividends ahead (Bjerksund & Stensland 2002)."""
+
+    def value(
+        self, base: float, strike: float, years: float, rate: float, volatility: float, ahead: Ahead | None
+    ) -> float:
         """Money a share."""
-        return american(PUT, spot, strike, years, rate, 0.0, volatility)
+        worth = american(PUT, base, strike, years, rate, 0.0, volatility)
+        if ahead is None:
+            return worth
+        plain = european(PUT, base, strike, years, rate, 0.0, volatility)
+        return max(plain, strike - base - ahead.amount * math.exp(-rate * ahead.years))
 
     def is_due(self, spot: float, strike: float, years: float, rate: float, volatility: float) -> bool:
         """Whether waiting is worth no more than what exercising now brings."""
-        return self.value(spot, strike, years, rate, volatility) <= strike - spot
+        return self.value(spot, strike, years, rate, volatility, None) <= strike - spot
 
 
 class Quote(NamedTuple):
@@ -120,14 +133,32 @@ class Pricer:
         atm = self.at_the_money(sight, expiry, moment)
         deviations = math.log(strike / forward) / (atm * math.sqrt(years))
         volatility = self.smile(atm, deviations, days)
-        mid = european(right, base, strike, years, moment.rate, 0.0, volatility)
-        if sight.american and right == PUT and moment.rate > 0.0:
-            mid = self.puts.value(base, strike, years, moment.rate, volatility)
-        ahead = sight.payer.between(moment.ordinal, expiry)
-        if sight.american and right == CALL and ahead:
-            to_ex = (ahead[0][0] - moment.ordinal + moment.extra_days) / 365.0
-            mid = max(mid, european(CALL, moment.spot, strike, to_ex, moment.rate, 0.0, volatility))
+        ahead = self.ahead(sight, base, expiry, moment)
+        if not sight.american or (right == CALL and ahead is None):
+            mid = european(right, base, strike, years, moment.rate, 0.0, volatility)
+        elif right == PUT:
+            mid = self.put(base, strike, years, moment.rate, volatility, ahead)
+        else:
+            mid = call_across_dividend(
+                base, strike, years, moment.rate, volatility, ahead.years, ahead.amount
+            )
         return Quote(mid, volatility, abs(deviations))
+
+    def ahead(self, sight: Sight, base: float, expiry: int, moment: Moment) -> Ahead | None:
+        """The dividends expected up to `expiry`, as one on the day of the first."""
+        days = sight.payer.between(moment.ordinal, expiry)
+        if not days:
+            return None
+        years = (days[0][0] - moment.ordinal + moment.extra_days) / 365.0
+        return Ahead(years, (moment.spot - base) * math.exp(moment.rate * years))
+
+    def put(
+        self, base: float, strike: float, years: float, rate: float, volatility: float, ahead: Ahead | None
+    ) -> float:
+        """An American put; without interest to gain it is never exercised early."""
+        if rate <= 0.0:
+            return european(PUT, base, strike, years, rate, 0.0, volatility)
+        return self.puts.value(base, strike, years, rate, volatility, ahead)
 
     def call_is_due(
         self, strike: float, years: float, moment: Moment, volatility: float, drop: float

@@ -123,7 +123,7 @@ class History:
 
 
 def trailing_volatility(history: History, sessions: int, left_out: set[int]) -> list[float | None]:
-    """Annual close-to-close volatility over the last `sessions`: standard deviation about the mean, n - 1.
+    """Annual close-to-close volatility over the last `sessions`: root of the mean square about zero.
 
     Known from two thirds of the sessions on; none when prices stood still.
     """
@@ -133,8 +133,7 @@ def trailing_volatility(history: History, sessions: int, left_out: set[int]) -> 
         window = [g for g in growths[max(0, t - sessions + 1) : t + 1] if g is not None]
         value = None
         if len(window) >= max(2.0, sessions * 2.0 / 3.0):
-            mean = math.fsum(window) / len(window)
-            variance = math.fsum((g - mean) ** 2 for g in window) / (len(window) - 1)
+            variance = math.fsum(g * g for g in window) / len(window)
             value = math.sqrt(variance * 252.0) if variance > 0.0 else None
         out.append(value)
     return out

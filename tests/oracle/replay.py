@@ -12,7 +12,7 @@ from hedgerow.kernels import layout
 from oracle import past
 from oracle.book import Leg, Order, Position
 from oracle.entry import Chooser, Lot, declined, measure
-from oracle.keeper import Keeper
+from oracle.keeper import Keeper, adjusts_contracts
 from oracle.moment import Moment, Puts, Sight
 from oracle.view import View
 from oracle.words import Setting
@@ -72,8 +72,10 @@ class Replay(Keeper):
             if not history.has_bar(t):
                 self.decline(t, order.symbol, layout.WHY_GONE_ORDER)
                 continue
-            ratio = history.acts[t][2]
-            order.terms = [(strike / ratio, expiry) for strike, expiry in order.terms]
+            _, special, ratio = history.acts[t]
+            before = history.close[t - 1] / ratio
+            off = special if adjusts_contracts(special, before, history.ordinals[t]) else 0.0
+            order.terms = [(strike / ratio - off, expiry) for strike, expiry in order.terms]
             self.fill(order, t, *self.at_open(order.symbol, t, history.open_price(t)))
 
     def decline(self, t: int, symbol: int, reason: int, count: float = 1.0) -> None:
@@ -90,8 +92,9 @@ class Replay(Keeper):
         lot = measure(self.trader, self.rules, sight, moment, legs)
         free = self.book.cash - sum(position.reserve for position in self.positions.values())
         lots = min(order.lots, self.affordable(free, lot))
-        if lots < 1.0:
-            self.decline(t, order.symbol, layout.WHY_NO_CASH)
+        bid = self.trader.finds_bids(sight, moment, legs)
+        if lots < 1.0 or not bid:
+            self.decline(t, order.symbol, layout.WHY_NO_CASH if bid else layout.WHY_NO_BID)
             return
         position = Position(self.count, order.symbol, lots, [Leg(rule) for rule in self.rules.legs])
         position.units = 100.0 * lots

@@ -28,7 +28,7 @@ def expiries(draw: st.DrawFn, least: int = 2, most: int = 45) -> Rule:
 
 @st.composite
 def strikes(draw: st.DrawFn, least: float, most: float, solved: bool) -> Rule:
-    """A strike by distance from the money, listed steps or deviations; by delta or odds when `solved` may be."""
+    """A strike by distance from the money, steps or deviations; when `solved`, by delta or odds too."""
     words: list[st.SearchStrategy[Rule]] = [
         st.builds(lambda p: {"from_spot": p}, percents(least, most)),
         st.builds(lambda n: {"steps": n}, st.integers(round(least / 2), round(most / 2))),
@@ -125,6 +125,6 @@ def rules(draw: st.DrawFn, solved: bool = True) -> Rule:
         rule["stop"] = {"below_entry": draw(percents(2, 12))}
     if draw(st.integers(0, 2)) == 0:
         rule["fill"] = "close"
-    if legs and draw(st.integers(0, 3)) == 0:
+    if any("add_when" not in leg for leg in rule.get("legs", {}).values()) and draw(st.integers(0, 3)) == 0:
         rule["accept"] = {"net_debit": {"at_most": draw(percents(0, 3))}}
     return rule
