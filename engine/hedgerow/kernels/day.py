@@ -6,6 +6,7 @@ import math
 from typing import Any
 
 from hedgerow.kernels.american import call_exercise_is_due_before_dividend, put_exercise_is_due
+from hedgerow.kernels.entry import take_stock
 from hedgerow.kernels.holding import after_delivery, leave, move_legs, open_clock, settle_expired
 from hedgerow.kernels.jit import step
 from hedgerow.kernels.layout import (
@@ -92,8 +93,14 @@ def _assigned_overnight(desk: Desk, position: Any, scene: Scene, action: Any) ->
     for k in range(desk.plan.legs):
         if _due_early(position.legs[k], bar, clock, paid, desk.smile):
             settle_leg(desk, position, k, scene.session, WHY_ASSIGNED_EARLY, bar.close, 0.0, True)
-    if held != 0.0 and position.shares == 0.0:
+    if position.shares == held:
+        return
+    if position.shares == 0.0:
         after_delivery(desk, position, scene.session, WHY_ASSIGNED_EARLY)
+        return
+    take_stock(position, desk.plan.legs)
+    if position.soonest == 0:  # the close sells the shares that no leg keeps
+        position.soonest = scene.today.ordinal
 
 
 @step
@@ -102,6 +109,7 @@ def _split(desk: Desk, position: Any, session: int, ratio: float) -> None:
     row = write(desk, session, position.symbol, position.position, KIND_SPLIT, WHY_NONE)
     row.quantity = ratio
     position.shares *= ratio
+    position.lots *= ratio
     position.stock_price /= ratio
     position.stop_price /= ratio
     position.last_close /= ratio

@@ -7,6 +7,7 @@ from typing import Any
 
 from hedgerow.kernels.jit import step
 from hedgerow.kernels.layout import (
+    FRESH,
     KIND_DECLINED,
     KIND_OPENED,
     LOT_SHARES,
@@ -47,7 +48,7 @@ def decline(desk: Desk, session: int, symbol: int, reason: int, quantity: float,
 def consider(desk: Desk, position: Any, scene: Scene, clock: Clock) -> int:
     """Choose strikes and lots for one candidate at this close; return why not, or 0 when it is ordered."""
     plan, totals, bar = desk.plan, desk.totals, scene.bar
-    if math.isnan(bar.level) and plan.legs > 0:
+    if bar.signs & FRESH == 0 and plan.legs > 0:
         return WHY_NO_VOLATILITY
     spot = bar.close
     why = choose_legs(desk, position, scene.today, spot, bar, clock)

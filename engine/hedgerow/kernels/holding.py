@@ -86,9 +86,9 @@ def settle_expired(desk: Desk, position: Any, scene: Scene, close: float, last: 
     for k in range(plan.legs):
         leg = position.legs[k]
         if leg.quantity != 0.0 and leg.expiry <= last:
-            least = scene.today.exercise_threshold
+            least, before = scene.today.exercise_threshold, position.shares
             settle_leg(desk, position, k, session, WHY_EXPIRY, close, least, scene.american == 1)
-            if plan.specs[k].roll_at_expiry == 1:
+            if plan.specs[k].roll_at_expiry == 1 and position.shares == before:  # nothing was delivered
                 leg.status = WANTED
                 leg.wanted_strike = 0.0
         again += 1 if leg.status == WANTED else 0

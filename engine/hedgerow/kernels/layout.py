@@ -26,7 +26,7 @@ SESSIONS_A_YEAR = 252.0
 CALL, PUT = 0, 1
 
 # flags of a symbol-session
-HAS_BAR, PAYS, SPLITS, MAY_ENTER, REPORTS = 1, 2, 4, 8, 16
+HAS_BAR, PAYS, SPLITS, MAY_ENTER, REPORTS, FRESH = 1, 2, 4, 8, 16, 32  # FRESH: volatility known that day
 
 # expiry cycles
 DAILY, WEEKLY, MONTHLY, QUARTERLY = 0, 1, 2, 3

@@ -19,7 +19,7 @@ BAR = np.dtype(
         ("high", np.float64),
         ("low", np.float64),
         ("close", np.float64),
-        ("level", np.float64),  # volatility now; NaN unknown
+        ("level", np.float64),  # volatility last known; NaN never yet
         ("anchor", np.float64),  # volatility in the long run
         ("pay_cash", np.float64),  # the next dividend a trader would expect, per share
         ("pay_ordinal", np.int32),  # when; 0 none

@@ -6,7 +6,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from hedgerow.kernels.layout import HAS_BAR, PAYS, REPORTS, SPLITS, Bytes, Floats, Records, Small
+from hedgerow.kernels.layout import FRESH, HAS_BAR, PAYS, REPORTS, SPLITS, Bytes, Floats, Records, Small
+from hedgerow.kernels.rolling import carried
 from hedgerow.kernels.state import ACTION, BAR, SESSION
 from hedgerow.market.expected import expected_dividends
 from hedgerow.market.sessions import Regime, exercise_threshold, tick_rules
@@ -76,14 +77,18 @@ def _opens(market: Market) -> Floats:
 
 
 def _bars(market: Market, actions: Records, surface: Surface) -> Records:
-    """Prices, volatility, expected dividend, next report and flags of every symbol and session."""
+    """Prices, volatility, expected dividend, next report and flags of every symbol and session.
+
+    Where no volatility is known the last known one stands, so that what is held keeps a value; entries wait.
+    """
     bars = np.zeros(market.close.shape, BAR)
     for name in ("open", "high", "low", "close"):
         bars[name] = getattr(market, name)
     bars["open"] = _opens(market)
     bars["high"] = np.fmax(market.high, bars["open"])
     bars["low"] = np.fmin(market.low, bars["open"])
-    bars["level"], bars["anchor"] = surface.level, surface.anchor
+    for name, known in (("level", surface.level), ("anchor", surface.anchor)):
+        bars[name] = carried(np.array(known, order="C"), len(known))
     expected = expected_dividends(market)
     bars["pay_cash"], bars["pay_ordinal"], bars["pay_gap"] = expected
     bars["report"] = next_reports(market)
@@ -91,6 +96,7 @@ def _bars(market: Market, actions: Records, surface: Surface) -> Records:
     flags |= np.where(actions["dividend"] != 0.0, PAYS, 0)
     flags |= np.where(actions["split"] != 1.0, SPLITS, 0)
     flags |= np.where(bars["report"] > 0, REPORTS, 0)
+    flags |= np.where(np.isnan(surface.level), 0, FRESH)
     bars["signs"] = flags
     return bars
 
