@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import errno
+import os
 import sys
 from typing import Annotated
 
@@ -10,9 +12,11 @@ import typer
 from hedgerow import __version__
 from hedgerow.cli import data, rules
 from hedgerow.cli.run import run
-from hedgerow.errors import HedgerowError, InputError
+from hedgerow.errors import HedgerowError
 
-__all__ = ["app", "main"]
+__all__ = ["STOPPED", "app", "main"]
+
+STOPPED = 130  # the exit code of a command stopped by the keyboard, as shells have it
 
 app = typer.Typer(
     name="hedgerow",
@@ -45,16 +49,43 @@ def _main(
 
 
 def main() -> None:
-    """Run the command line; errors become one message each and an exit code, never a traceback."""
+    """Run the command line; errors become one message each and an exit code, never a traceback.
+
+    Raises SystemExit: 0 when all is well, 2 when the input is wrong, 130 when stopped, 1 for anything else.
+    """
+    try:
+        code = _code()
+        sys.stdout.flush()
+    except OSError as error:
+        _give_up(error)
+        code = 1
+    sys.exit(code)
+
+
+def _code() -> int:
+    """Run the command; return its exit code, what went wrong having been told."""
     try:
         app()
-    except InputError as error:
-        for fault in error.faults:
-            sys.stderr.write(f"{fault}\n")
-        sys.exit(error.exit_code)
-    except HedgerowError as error:
+    except HedgerowError as error:  # an input error has one line a fault
         sys.stderr.write(f"{error}\n")
-        sys.exit(error.exit_code)
+        return error.exit_code
     except KeyboardInterrupt:
-        sys.stderr.write("Stopped. Nothing was written.\n")
-        sys.exit(130)
+        return _stopped()
+    except SystemExit as done:
+        if done.code == STOPPED:
+            return _stopped()
+        return done.code if isinstance(done.code, int) else int(done.code is not None)
+    return 0
+
+
+def _stopped() -> int:
+    """Say that the command was stopped; return its exit code."""
+    sys.stderr.write("Stopped by the keyboard: nothing was left half-written.\n")
+    return STOPPED
+
+
+def _give_up(error: OSError) -> None:
+    """Say why the output cannot be written, unless its reader has left; let nothing more be written to it."""
+    if error.errno != errno.EPIPE:
+        sys.stderr.write(f"The output could not be written: {error.strerror or error}.\n")
+    os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())

@@ -64,12 +64,16 @@ def _study(file: Path, market: Path | None) -> Study:
     from hedgerow.errors import StudyError
     from hedgerow.rules.document import tree_of_file
     from hedgerow.study.declare import load_study, study_of_strategy
+    from hedgerow.textfile import capped
 
-    if is_study(tree_of_file(file)):
+    tree = tree_of_file(file)
+    if is_study(tree):
         if market is not None:
             found = "a study file names its own market, and --market was given too"
             raise StudyError.one(str(file), "two-markets", found, "either is enough", "leave --market out")
         return load_study(file)
+    if tree.faults:
+        raise StudyError(capped(tree.faults))
     if market is None:
         found = "this is a strategy file, which does not say on which prices to run"
         raise StudyError.one(str(file), "no-market", found, "a market is needed", "add --market FOLDER")

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import errno
 import json
 import os
 import shutil
@@ -40,7 +41,8 @@ FORMULA_STARTS = ("=", "+", "-", "@", "\t", "\r")
 def check_place(folder: str | Path, replace: bool = False) -> Path:
     """Return the folder as a path when a run may be written there: it is new, empty, or a run to be replaced.
 
-    Raises PlaceError when it is a file, holds a finished run and `replace` is not given, or other files.
+    Raises PlaceError when it is a file, holds other files or a finished run without `replace` being given, or
+    lies where nothing can be written.
     """
     place = Path(folder)
     try:
@@ -51,6 +53,7 @@ def check_place(folder: str | Path, replace: bool = False) -> Path:
                 raise _refused(place, "this folder holds other files")
             if not replace:
                 raise _refused(place, "a finished run stands there and was not to be replaced")
+        _check_parent(place)
     except OSError as error:
         raise _unwritable(place, error) from error
     return place
@@ -132,10 +135,19 @@ def _move(part: Path, place: Path) -> None:
     os.replace(place, aside)
     try:
         os.replace(part, place)
-    except OSError:
-        os.replace(aside, place)
-        raise
+    finally:
+        if not place.exists():
+            os.replace(aside, place)
     shutil.rmtree(aside, ignore_errors=True)
+
+
+def _check_parent(place: Path) -> None:
+    """Raise OSError when the nearest folder above a place is a file, or nothing can be written in it."""
+    above = next(parent for parent in place.absolute().parents if os.path.lexists(parent))
+    if not above.is_dir():
+        raise NotADirectoryError(errno.ENOTDIR, os.strerror(errno.ENOTDIR), str(above))
+    if not os.access(above, os.W_OK | os.X_OK):
+        raise PermissionError(errno.EACCES, os.strerror(errno.EACCES), str(above))
 
 
 def _missing_parents(place: Path) -> list[Path]:

@@ -8,13 +8,15 @@ from collections.abc import Callable
 from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass
 from pathlib import Path
+from threading import Event
 from typing import Any
 
-from hedgerow.errors import StudyError
+from hedgerow.errors import Fault, RunError, StudyError
 from hedgerow.market import Market, load_market
 from hedgerow.rules.schema import Strategy
 from hedgerow.study.declare import Study
 from hedgerow.study.one import Bench, Result
+from hedgerow.study.places import told_in_place
 from hedgerow.walk.run import Window
 
 __all__ = ["StudyResult", "bench_of", "run_study"]
@@ -83,15 +85,34 @@ def versions() -> dict[str, str]:
 
 def bench_of(study: Study, market: Market | None = None) -> tuple[Bench, Window]:
     """The study's market made ready, and its window. Raises DataError or StudyError."""
-    source = Path(study.market)
-    loaded = load_market(source) if market is None else market
+    loaded = load_market(Path(study.market)) if market is None else market
     bench = Bench(loaded, study.surface, study.listings, study.symbols)
-    if not bench.traded.any():
-        found = "no symbol is left to trade"
-        raise StudyError.one(
-            "symbols", "no-symbol", found, "at least one is needed", "name one of the market's"
+    with told_in_place(study.path):
+        window = _window(study, bench)
+        here = (
+            bench.traded.astype(bool) & (loaded.first_bar < window.stop) & (loaded.last_bar >= window.start)
         )
-    return bench, Window.of(loaded, study.first, study.last)
+        if not here.any():
+            found = "leaves no symbol with a price in the window"
+            span = f"the window is {loaded.dates[window.start]} to {loaded.dates[window.stop - 1]}"
+            raise StudyError.one("symbols", "no-symbol", found, span, "name others, or widen the window")
+    return bench, window
+
+
+def _window(study: Study, bench: Bench) -> Window:
+    """The study's window; raises StudyError with its faults and those of the symbols."""
+    faults: list[Fault] = []
+    try:
+        _ = bench.traded
+    except StudyError as error:
+        faults += error.faults
+    try:
+        window = Window.of(bench.market, study.first, study.last)
+    except StudyError as error:
+        faults += error.faults
+    if faults:
+        raise StudyError(faults)
+    return window
 
 
 def run_study(
@@ -103,7 +124,7 @@ def run_study(
     ReconcileError.
     """
     bench, window = bench_of(study, market)
-    _ = bench.tape  # prepared once, before the threads share it
+    stopped = Event()
 
     def one(variant: tuple[str, Strategy]) -> Result:
         name, strategy = variant
@@ -111,13 +132,20 @@ def run_study(
 
         def tell(walked: int, _whole: int) -> None:
             nonlocal done
+            if stopped.is_set():
+                raise RunError("the run was stopped before every variant was done")
             if progress is not None:
                 progress(walked - done)
             done = walked
 
-        return bench.run(strategy, study.account, study.costs, window, name, tell)
+        beside = study.yardstick != "none"
+        return bench.run(strategy, study.account, study.costs, window, name, tell, beside)
 
-    first = one(study.variants[0])  # compiles, when that is due, once
-    with ThreadPoolExecutor(max(workers, 1)) as pool:
-        rest = list(pool.map(one, study.variants[1:]))
+    with told_in_place(study.path):
+        first = one(study.variants[0])  # makes and compiles, once, what the threads share
+        with ThreadPoolExecutor(max(workers, 1)) as pool:
+            try:
+                rest = list(pool.map(one, study.variants[1:]))
+            finally:
+                stopped.set()
     return StudyResult(study, bench, (first, *rest))

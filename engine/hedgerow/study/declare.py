@@ -211,6 +211,8 @@ def _strategy(
         allowed = "allowed: the path of a strategy file, or the strategy itself"
         code, found_text = ("missing", "is missing") if given is None else ("shape", f"is {shown(given)}")
         return None, [tree.fault(Loose(path, code, found_text, allowed))]
+    if base.faults and not base.plain:
+        return None, base.faults
     if changes is not None:
         changes.plain = {key: value for key, value in changes.plain.items() if key != "strategy"}
         base = changed(base, changes)
@@ -222,11 +224,12 @@ def study_of_strategy(strategy: str | Path | Mapping[str, Any], market: str | Pa
 
     Raises StudyError with every fault of the strategy and the words.
     """
-    given = str(Path(strategy).resolve()) if isinstance(strategy, str | Path) else dict(strategy)
+    given = str(strategy) if isinstance(strategy, str | Path) else dict(strategy)
     tree = tree_of_mapping(
         {"name": "One strategy", "market": str(market), "strategy": given, **words}, "study"
     )
     study, faults = read_study(tree, Path("."))
     if study is None:
         raise StudyError(capped(faults))
-    return replace(study, name=study.variants[0][0]) if "name" not in words else study
+    named = study if "name" in words else replace(study, name=study.variants[0][0])
+    return replace(named, path=Path(given)) if isinstance(given, str) else named

@@ -11,14 +11,17 @@ from typing import Any
 import numpy as np
 import pandas as pd
 from numpy.typing import NDArray
+from pydantic import ValidationError
 
-from hedgerow.errors import StudyError, nearest_word
+from hedgerow.errors import Fault, StudyError, nearest_word
 from hedgerow.events.log import EventLog
 from hedgerow.evidence import Summary, summarise
 from hedgerow.kernels.layout import Bytes, Costs, Floats
 from hedgerow.ledger import Ledger
 from hedgerow.market.sessions import Regime
 from hedgerow.market.table import Market
+from hedgerow.rules.base import loosened
+from hedgerow.rules.document import tree_of_mapping
 from hedgerow.rules.load import load_strategy
 from hedgerow.rules.program import Program, compile_strategy
 from hedgerow.rules.schema import SignalValue, Strategy
@@ -45,7 +48,7 @@ class Result:
 
     log: EventLog
     rate: Floats = field(repr=False)
-    yardstick: Floats = field(repr=False)
+    yardstick: Floats | None = field(repr=False)
 
     @cached_property
     def ledger(self) -> Ledger:
@@ -99,16 +102,27 @@ class Bench:
 
     @cached_property
     def traded(self) -> Bytes:
-        """Which symbols may be traded, shape (N,). Raises StudyError for one that is not in the market."""
+        """Which symbols may be traded, shape (N,). Raises StudyError for every one the market has not."""
         names = self.market.symbols
         if self.symbols is None:
             stocks = np.array([kind == "stock" for kind in self.market.kinds], np.uint8)
             return stocks if stocks.any() else np.ones(len(names), np.uint8)
-        unknown = [name for name in self.symbols if name not in names]
-        if unknown:
-            found = f"the market has no symbol {', '.join(unknown)}"
-            allowed = f"it has {', '.join(names[:12])}{' and others' if len(names) > 12 else ''}"
-            raise StudyError.one("symbols", "unknown-symbol", found, allowed, nearest_word(unknown[0], names))
+        allowed = f"the market has {', '.join(names[:12])}{' and others' if len(names) > 12 else ''}"
+        faults = [
+            Fault(
+                f"symbols.{at + 1}",
+                0,
+                0,
+                "unknown-symbol",
+                f"is `{name}`, which is no symbol of the market",
+                allowed,
+                nearest_word(name, names),
+            )
+            for at, name in enumerate(self.symbols)
+            if name not in names
+        ]
+        if faults:
+            raise StudyError(faults)
         return np.array([name in self.symbols for name in names], np.uint8)
 
     def values(self, wanted: SignalValue) -> NDArray[np.bool_] | Floats:
@@ -129,11 +143,15 @@ class Bench:
         window: Window,
         variant: str = "",
         progress: Progress | None = None,
+        beside: bool = True,
     ) -> Result:
-        """Walk one strategy over a window."""
+        """Walk one strategy over a window, `beside` buy and hold of what may be traded.
+
+        Raises RulesError when the strategy asks for what the market has not.
+        """
         terms = Terms(account, costs, window, self.listings)
         log = walk_program(self.market, self.tape, self.program(strategy), terms, variant, progress)
-        yardstick = buy_and_hold(self.market, self.traded, window, account.cash)
+        yardstick = buy_and_hold(self.market, self.traded, window, account.cash) if beside else None
         return Result(log, self.market.rate, yardstick)
 
 
@@ -161,9 +179,15 @@ def run(
 
 
 def _costs(costs: Costs | Mapping[str, Any] | str | None) -> Costs:
-    """Costs as the walk takes them."""
+    """Costs as the walk takes them. Raises StudyError with every fault of their words."""
     if isinstance(costs, Costs):
         return costs
     if costs == "none":
         return NO_COSTS
-    return CostWords.model_validate(costs or {}).costs()
+    if not isinstance(costs, Mapping | None):
+        found = f"the costs are {costs!r}, which is neither `none` nor a mapping of costs"
+        raise StudyError.one("costs", "shape", found, "a preset has no other name")
+    try:
+        return CostWords.model_validate({} if costs is None else costs).costs()
+    except ValidationError as error:
+        raise StudyError(tree_of_mapping(costs or {}, "costs").all_faults(loosened(error), "costs")) from None

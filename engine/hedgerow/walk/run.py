@@ -2,13 +2,15 @@
 
 from __future__ import annotations
 
+import datetime as dt
 import pickle
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.typing import NDArray
 
-from hedgerow.errors import StudyError
+from hedgerow.errors import Fault, StudyError
 from hedgerow.events.log import EventLog, LegName, LogMeta
 from hedgerow.kernels.jit import COMPILED, forget_cache
 from hedgerow.kernels.layout import KIND_DEPOSIT, NO_ROW, Costs, Floats, Records
@@ -28,6 +30,19 @@ BROKEN_CACHE = (EOFError, pickle.UnpicklingError, ImportError, IndexError, KeyEr
 Progress = Callable[[int, int], None]
 
 
+def _outside(day: str | None, dates: NDArray[np.datetime64]) -> Iterator[tuple[str, str]]:
+    """The code and words of what is wrong with one end of a window."""
+    if day is None:
+        return
+    try:
+        dt.date.fromisoformat(day)
+    except ValueError:
+        yield "date", f"is `{day}`, which is no such date"
+        return
+    if not dates[0] <= np.datetime64(day, "D") <= dates[-1]:
+        yield "outside", f"is {day}, which lies outside the data"
+
+
 @dataclass(frozen=True, slots=True)
 class Window:
     """The sessions walked: from `start` up to and without `stop`, numbers on the market's axis."""
@@ -39,20 +54,22 @@ class Window:
     def of(cls, market: Market, first: str | None = None, last: str | None = None) -> Window:
         """The window of two ISO dates, both included; None is the market's own end.
 
-        Raises StudyError when it holds no session or reaches outside the data.
+        Raises StudyError when it holds no session, or for each end that is no date or outside the data.
         """
         dates = market.dates
-        begin = dates[0] if first is None else np.datetime64(first, "D")
-        end = dates[-1] if last is None else np.datetime64(last, "D")
         span = f"the data hold {dates[0]} to {dates[-1]}"
-        if begin < dates[0] or end > dates[-1]:
-            raise StudyError.one(
-                "window", "outside", f"the window {begin} to {end} reaches outside the data", span
-            )
-        start, stop = np.searchsorted(dates, begin), np.searchsorted(dates, end, side="right")
+        ends = {"window.from": first, "window.to": last}
+        faults = [
+            Fault(where, 0, 0, *fault, span) for where, day in ends.items() for fault in _outside(day, dates)
+        ]
+        if faults:
+            raise StudyError(faults)
+        start = 0 if first is None else int(np.searchsorted(dates, np.datetime64(first, "D")))
+        stop = len(dates) if last is None else int(np.searchsorted(dates, np.datetime64(last, "D"), "right"))
         if stop <= start:
-            raise StudyError.one("window", "empty", f"the window {begin} to {end} holds no session", span)
-        return cls(int(start), int(stop))
+            found = f"holds no session from {first or dates[0]} to {last or dates[-1]}"
+            raise StudyError.one("window", "empty", found, span, "give two dates in their order")
+        return cls(start, stop)
 
 
 @dataclass(frozen=True, slots=True)
@@ -140,7 +157,7 @@ def _deposit(world: World, session: int, cash: float) -> None:
 
 
 def _step(world: World, begin: int, end: int, first: int, queue: Floats) -> int:
-    """One call of the compiled walk; a broken cache of compiled code is thrown away and made afresh once."""
+    """One call of the compiled walk; a broken cache of compiled code is thrown away and compiled afresh."""
     from hedgerow.kernels.loop import walk
 
     try:
