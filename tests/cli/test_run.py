@@ -1,0 +1,236 @@
+"""`hedgerow run`: what it prints and leaves behind, and how it ends."""
+
+from __future__ import annotations
+
+import json
+import os
+import signal
+import subprocess
+import sys
+import time
+from pathlib import Path
+
+import pandas as pd
+import pytest
+import yaml
+
+import hedgerow as hr
+from cli_runs import SESSIONS, Runner, Said
+from hedgerow import __version__
+from hedgerow.report.files import RUN_FILES
+
+WIDTH = 100
+
+
+def test_a_study_is_shown_and_its_ledgers_left(hedgerow: Runner) -> None:
+    """Title, question, both variants, the yardstick, the cautions; every file of a run below runs/."""
+    said = hedgerow("run", "study.yaml")
+    assert (said.code, said.err) == (0, "")
+    for words in (
+        "Short or long",
+        "Which of the two?",
+        "buy and hold",
+        "Before you rely on this",
+        "Hypothetical",
+    ):
+        assert words in said.out
+    assert f"2015-01-05 to 2015-06-19, {SESSIONS} sessions" in said.out
+    assert said.out.rstrip().endswith("Every trade and every cent: runs/short-or-long")
+    assert {path.name for path in Path("runs/short-or-long").iterdir()} == set(RUN_FILES)
+
+
+def test_it_fits_the_screen_and_is_plain_when_piped(hedgerow: Runner) -> None:
+    """At most a hundred columns, no control characters."""
+    out = hedgerow("run", "study.yaml").out
+    assert max(map(len, out.splitlines())) <= WIDTH
+    assert "\x1b" not in out
+    assert "\r" not in out
+
+
+def test_what_is_left_is_what_the_library_gives(hedgerow: Runner) -> None:
+    """trades.csv beside the trades of `run_study` on the same file."""
+    hedgerow("run", "study.yaml", "--out", "here", "--quiet")
+    result = hr.run_study(hr.load_study("study.yaml"))
+    expected = pd.concat([one.trades for one in result.results], ignore_index=True)
+    left = pd.read_csv("here/trades.csv")
+    assert len(left) == len(expected) > 20
+    assert left["pnl"].tolist() == pytest.approx(expected["pnl"].tolist())
+    assert set(left["variant"]) == {"short", "long"}
+
+
+def test_the_record_repeats_the_run(hedgerow: Runner) -> None:
+    """run.yaml holds the study as it was resolved; run again from it, the ledgers are the same bytes."""
+    hedgerow("run", "study.yaml", "--out", "one", "--quiet")
+    record = yaml.safe_load(Path("one/run.yaml").read_text(encoding="utf-8"))
+    assert record["data"]["fingerprint"] == hr.load_market("prices.csv").fingerprint
+    assert set(record["versions"]) >= {"hedgerow", "numpy", "numba", "python"}
+    hedgerow.write(again__yaml=yaml.safe_dump(record["study"], sort_keys=False))
+    assert hedgerow("run", "again.yaml", "--out", "two", "--quiet").code == 0
+    for name in ("trades.csv", "events.parquet", "summary.json"):
+        assert Path("one", name).read_bytes() == Path("two", name).read_bytes(), name
+
+
+def test_json_for_programs(hedgerow: Runner) -> None:
+    """One valid object and nothing else; its variants are those of summary.json."""
+    said = hedgerow("run", "study.yaml", "--json")
+    told = json.loads(said.out, parse_constant=pytest.fail)
+    left = json.loads(Path(told["folder"], "summary.json").read_text(encoding="utf-8"))
+    assert told["variants"] == left["variants"]
+    assert list(told["variants"]) == ["short", "long"]
+    assert any("Hypothetical" in caution for caution in told["cautions"])
+
+
+def test_quiet_prints_only_the_folder(hedgerow: Runner) -> None:
+    """For scripts."""
+    assert hedgerow("run", "study.yaml", "--quiet", "--out", "mine") == Said(0, "mine\n", "")
+
+
+def test_without_a_place_every_run_gets_its_own(hedgerow: Runner) -> None:
+    """The second run of a study is numbered."""
+    assert hedgerow("run", "study.yaml", "--quiet").out == "runs/short-or-long\n"
+    assert hedgerow("run", "study.yaml", "--quiet").out == "runs/short-or-long-2\n"
+
+
+def test_a_finished_run_is_not_overwritten_unless_told(hedgerow: Runner) -> None:
+    """Refused with a way out before anything is walked; --replace puts the new run there."""
+    hedgerow("run", "study.yaml", "--quiet", "--out", "mine")
+    before = Path("mine/run.yaml").read_bytes()
+    said = hedgerow("run", "rule.yaml", "--market", "prices.csv", "--out", "mine")
+    assert (said.code, said.out, len(said.told)) == (2, "", 1)
+    assert "a finished run stands there" in said.err
+    assert "--replace" in said.err
+    assert Path("mine/run.yaml").read_bytes() == before
+    assert (
+        hedgerow("run", "rule.yaml", "--market", "prices.csv", "--out", "mine", "--replace", "--quiet").code
+        == 0
+    )
+    assert Path("mine/run.yaml").read_bytes() != before
+    assert not [name for name in hedgerow.files() if name.startswith(".")]
+
+
+def test_other_files_are_never_overwritten(hedgerow: Runner) -> None:
+    """A folder that holds no run is left alone, with --replace too."""
+    Path("mine").mkdir()
+    Path("mine/letter.txt").write_text("dear", encoding="utf-8")
+    said = hedgerow("run", "study.yaml", "--out", "mine", "--replace")
+    assert said.code == 2
+    assert "holds other files" in said.err
+    assert [path.name for path in Path("mine").iterdir()] == ["letter.txt"]
+
+
+def test_a_strategy_needs_a_market(hedgerow: Runner) -> None:
+    """With one it runs under its own name; without one it is told what to add; a study names its own."""
+    said = hedgerow("run", "rule.yaml", "--market", "prices.csv")
+    assert said.code == 0
+    assert said.out.startswith("Small collar\n")
+    bare = hedgerow("run", "rule.yaml")
+    assert (bare.code, len(bare.told)) == (2, 1)
+    assert "add --market FOLDER" in bare.err
+    both = hedgerow("run", "study.yaml", "--market", "prices.csv")
+    assert (both.code, len(both.told)) == (2, 1)
+    assert "leave --market out" in both.err
+
+
+@pytest.mark.parametrize("workers", ["1", "3"])
+def test_the_number_of_threads_changes_nothing(hedgerow: Runner, workers: str) -> None:
+    """The same bytes as with two."""
+    hedgerow("run", "study.yaml", "--quiet", "--out", "two")
+    hedgerow("run", "study.yaml", "--quiet", "--out", "other", "--workers", workers)
+    assert Path("two/events.parquet").read_bytes() == Path("other/events.parquet").read_bytes()
+
+
+def test_no_yardstick_when_none_is_wanted(hedgerow: Runner) -> None:
+    """`yardstick: none` leaves its column out."""
+    hedgerow.write(study__yaml=Path("study.yaml").read_text(encoding="utf-8") + "yardstick: none\n")
+    said = hedgerow("run", "study.yaml")
+    assert said.code == 0
+    assert "buy and hold" not in said.out
+
+
+def test_warnings_of_the_data_are_counted(hedgerow: Runner) -> None:
+    """A bar with its high below its low is a warning, and the command that lists it is named."""
+    rows = Path("prices.csv").read_text(encoding="utf-8").splitlines()
+    cells = rows[40].split(",")
+    rows[40] = ",".join([*cells[:3], cells[4], cells[3], *cells[5:]])
+    hedgerow.write(prices__csv="\n".join(rows) + "\n")
+    said = hedgerow("run", "study.yaml")
+    assert said.code == 0
+    assert "warning" in said.out
+    assert "hedgerow data check prices.csv" in said.out
+
+
+def test_the_version_and_no_words() -> None:
+    """--version says it; no words at all show the help."""
+    command = [sys.executable, "-c", "from hedgerow.cli.main import main; main()"]
+    done = subprocess.run([*command, "--version"], capture_output=True, text=True, check=True)
+    assert done.stdout.strip() == __version__
+    bare = subprocess.run(command, capture_output=True, text=True, check=False)
+    assert bare.returncode in (0, 2)
+    assert "run" in bare.stdout + bare.stderr
+
+
+def test_help_loads_nothing_heavy() -> None:
+    """Neither what compiles, reads or computes nor the models of the words are imported for --help."""
+    code = (
+        "import sys; sys.argv = ['hedgerow', '--help']\n"
+        "from hedgerow.cli.main import main\n"
+        "try:\n    main()\nexcept SystemExit: pass\n"
+        "heavy = {'numba', 'pandas', 'pydantic', 'numpy', 'pyarrow', 'scipy', 'yaml'}\n"
+        "print(sorted(heavy & set(sys.modules)))"
+    )
+    done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True)
+    assert done.stdout.splitlines()[-1] == "[]"
+
+
+def test_a_reader_that_leaves_is_no_error(hedgerow: Runner) -> None:
+    """`hedgerow run ... | head -1`: nothing on the error stream, the ledgers are there."""
+    code = "from hedgerow.cli.main import main; main()"
+    with subprocess.Popen(
+        [sys.executable, "-c", code, "run", "study.yaml", "--out", "mine"],
+        stdout=subprocess.PIPE,
+        stderr=subprocess.PIPE,
+        text=True,
+    ) as running:
+        assert running.stdout is not None
+        assert running.stderr is not None
+        running.stdout.close()
+        err = running.stderr.read()
+    assert err == ""
+    assert Path("mine/run.yaml").is_file()
+    assert hedgerow.folder == Path.cwd()
+
+
+@pytest.mark.skipif(not hasattr(os, "mkfifo"), reason="signals to processes are tried on POSIX")
+@pytest.mark.parametrize("thread", ["is", "is not"])
+def test_stopped_in_the_middle(hedgerow: Runner, thread: str) -> None:
+    """Ctrl-C while the main thread walks, or others do: one line, exit code 130, nothing written."""
+    wait = (
+        "import threading, time, hedgerow.walk.run as at\n"
+        "from hedgerow.cli.main import main\n"
+        "whole = at._step\n"
+        "def slow(*given):\n"
+        f"    if threading.current_thread() {thread} threading.main_thread():\n"
+        "        print('walking', flush=True)\n"
+        "        time.sleep(0.2)\n"
+        "    return whole(*given)\n"
+        "at._step, at.CHUNK_SESSIONS = slow, 2\n"
+        "main()"
+    )
+    before = hedgerow.files()
+    with subprocess.Popen(
+        [sys.executable, "-c", wait, "run", "study.yaml", "--out", "mine/below"],
+        stdout=subprocess.PIPE,
+        stderr=subprocess.PIPE,
+        text=True,
+        preexec_fn=lambda: signal.signal(signal.SIGINT, signal.default_int_handler),
+    ) as running:
+        assert running.stdout is not None
+        assert running.stderr is not None
+        assert running.stdout.readline() == "walking\n"
+        running.send_signal(signal.SIGINT)
+        begun = time.monotonic()
+        err = running.stderr.read()
+        assert running.wait() == 130
+    assert time.monotonic() - begun < 10
+    assert err == "Stopped by the keyboard: nothing was left half-written.\n"
+    assert hedgerow.files() == before
