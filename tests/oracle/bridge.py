@@ -25,8 +25,14 @@ from oracle.words import Setting
 MOST = 1000
 
 
-def walked(market: Market, strategy: dict[str, Any], setting: Setting, pricing: Any = None) -> EventLog:
-    """The log of the package's walk."""
+def walked(
+    market: Market,
+    strategy: dict[str, Any],
+    setting: Setting,
+    pricing: Any = None,
+    window: tuple[str | None, str | None] = (None, None),
+) -> EventLog:
+    """The log of the package's walk, from one ISO date to another."""
     account = hedgerow.Account(
         cash=setting.cash,
         per_position=setting.per_position,
@@ -36,7 +42,7 @@ def walked(market: Market, strategy: dict[str, Any], setting: Setting, pricing: 
     )
     costs = Costs(**{name: setting.cost(name) for name in Costs._fields})
     bench = Bench(market, surface_words(pricing), symbols=market.symbols)
-    return bench.run(hedgerow.load_strategy(strategy), account, costs, Window.of(market)).log
+    return bench.run(hedgerow.load_strategy(strategy), account, costs, Window.of(market, *window)).log
 
 
 class WalkPuts(Puts):

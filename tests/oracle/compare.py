@@ -44,7 +44,7 @@ def differing(mine: Event, theirs: Event, slack: float) -> list[str]:
             mine[name], theirs[name], RELATIVE, max(1e-11, loose)
         ):
             out.append(name)
-    cash = 0.0049 + slack * abs(mine["quantity"])
+    cash = 0.0049 + slack * max(1.0, abs(mine["quantity"]))
     if not close_enough(mine["cash"], theirs["cash"], 0.0, cash):
         out.append("cash")
     return out
@@ -69,7 +69,10 @@ def first_difference(mine: Sequence[Event], theirs: Sequence[Event], slack: floa
 
 def describe(event: Event) -> str:
     """Every field of an event that says something, on one line."""
-    kind, reason = KINDS[event["kind"]], REASONS.get(event["reason"], f"exit {event['reason'] - 100}")
+    kind, reason = (
+        KINDS.get(event["kind"], "unknown"),
+        REASONS.get(event["reason"], f"exit {event['reason'] - 100}"),
+    )
     rest = [f"{name}={event[name]:.10g}" for name in (*MEASURED, "cash", "expiry") if event[name]]
     place = f"session {event['session']} symbol {event['symbol']} position {event['position']}"
     return " ".join([place, kind, reason, f"leg {event['leg']}", *rest])

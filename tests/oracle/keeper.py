@@ -19,6 +19,24 @@ LONGEST_SILENCE = 5
 SPECIAL_RULE_FROM = dt.date(2009, 2, 1).toordinal()
 
 
+def sights_of(history: past.History, surface: dict[str, Any]) -> list[Sight]:
+    """What is known of a symbol at each close; where no volatility is known the last known one stands."""
+    level, anchor = past.level_and_anchor(history, surface)
+    last_level, last_anchor = past.carried(level), past.carried(anchor)
+    payers = past.expected_dividends(history)
+    return [
+        Sight(
+            last_level[t],
+            last_anchor[t],
+            past.known(level[t]),
+            payers[t],
+            history.next_report(today),
+            history.american,
+        )
+        for t, today in enumerate(history.ordinals)
+    ]
+
+
 class Keeper:
     """The open positions of one strategy over one market, and what is known at every close."""
 
@@ -28,6 +46,7 @@ class Keeper:
         strategy: dict[str, Any],
         setting: Setting,
         puts: Puts | None = None,
+        known: list[list[Sight]] | None = None,
     ) -> None:
         self.rules, self.setting = Rules.read(strategy), setting
         self.histories = [past.History.of(market, n) for n in range(len(market.symbols))]
@@ -35,25 +54,8 @@ class Keeper:
         self.book = Book()
         self.trader = Trader(Pricer(setting.surface, puts or Puts()), setting)
         self.dealer = Dealer(self.book, self.trader)
-        self.sights = [self._sights(history) for history in self.histories]
+        self.sights = known or [sights_of(history, setting.surface) for history in self.histories]
         self.positions: dict[int, Position] = {}
-
-    def _sights(self, history: past.History) -> list[Sight]:
-        """What is known of a symbol at each close."""
-        level, anchor = past.level_and_anchor(history, self.setting.surface)
-        last_level, last_anchor = past.carried(level), past.carried(anchor)
-        payers = past.expected_dividends(history)
-        return [
-            Sight(
-                last_level[t],
-                last_anchor[t],
-                past.known(level[t]),
-                payers[t],
-                history.next_report(today),
-                history.american,
-            )
-            for t, today in enumerate(history.ordinals)
-        ]
 
     def at_open(self, symbol: int, t: int, price: float) -> tuple[Sight, Moment]:
         """What the open of a session knows: yesterday's close, and a price."""

@@ -27,9 +27,10 @@ class Replay(Keeper):
         strategy: dict[str, Any],
         setting: Setting,
         puts: Puts | None = None,
+        known: list[list[Sight]] | None = None,
         window: tuple[int, int] | None = None,
     ) -> None:
-        super().__init__(market, strategy, setting, puts)
+        super().__init__(market, strategy, setting, puts, known)
         self.first, self.last = window or (0, len(self.rates) - 1)
         self.orders: list[Order] = []
         self.count = 0
