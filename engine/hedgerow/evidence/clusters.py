@@ -76,18 +76,22 @@ def clustered_error(parts: Floats, weeks: Ints, overlap_weeks: int = 0) -> tuple
     """Return the standard error of a sum of parts (P,) by entry week (P,), and the number of weeks.
 
     Parts of one week add up before they are squared, times G / (G - 1) for G weeks (Cameron & Miller 2015,
-    "A Practitioner's Guide to Cluster-Robust Inference", Journal of Human Resources 50). Sums of weeks up to
-    `overlap_weeks` apart count together with falling weights (Driscoll & Kraay 1998, Review of Economics and
-    Statistics 80). NaN below two weeks.
+    "A Practitioner's Guide to Cluster-Robust Inference", J. Human Resources 50). Positions that outlive their
+    week by `overlap_weeks` share days with those of as many later weeks: sums so far apart count fully
+    together, farther ones with weights that fall to nothing at twice as far (Driscoll & Kraay 1998, Review of
+    Economics and Statistics 80, with the flat-topped weights of Politis & Romano 1995, Journal of Time Series
+    Analysis 16). What overlaps is never taken to make a sum surer. NaN below two weeks.
     """
     seen = np.unique(weeks).size
     if seen < 2:
         return math.nan, int(seen)
     sums = np.bincount(weeks - weeks.min(), weights=parts)
     variance = float(sums @ sums)
-    for lag in range(1, min(overlap_weeks, sums.size - 1) + 1):
-        variance += 2.0 * (1.0 - lag / (overlap_weeks + 1.0)) * float(sums[lag:] @ sums[:-lag])
-    return math.sqrt(max(variance, 0.0) * seen / (seen - 1.0)), int(seen)
+    shared = 0.0
+    for lag in range(1, min(2 * overlap_weeks, sums.size)):
+        weight = min(1.0, 2.0 - lag / overlap_weeks)
+        shared += 2.0 * weight * float(sums[lag:] @ sums[:-lag])
+    return math.sqrt((variance + max(shared, 0.0)) * seen / (seen - 1.0)), int(seen)
 
 
 def trade_difference(
@@ -95,7 +99,7 @@ def trade_difference(
 ) -> Difference:
     """Return the difference of mean results a position, clustered by the entry week of both variants.
 
-    Weeks that positions overlap by are counted together: twice the mean holding time of the longer one. The
+    Neighbouring weeks count together as far as positions of the longer-held variant outlive their week. The
     interval is Student's with one degree of freedom fewer than there are weeks; none below three weeks.
     """
     from scipy import stats
@@ -167,11 +171,7 @@ def clustered_share(
 
 
 def overlap_of(sessions: Ints) -> int:
-    """Return the weeks that are counted together for positions held so many sessions (P,).
-
-    Twice the weeks by which the mean holding time reaches beyond the week of entry, because the weights of
-    far weeks fall to nothing.
-    """
+    """Return the weeks by which the mean of holding times (P,), in sessions, outlives the week of entry."""
     if not sessions.size:
         return 0
-    return 2 * max(math.ceil(float(np.mean(sessions)) / SESSIONS_A_WEEK) - 1, 0)
+    return max(math.ceil(float(np.mean(sessions)) / SESSIONS_A_WEEK) - 1, 0)

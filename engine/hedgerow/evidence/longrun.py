@@ -14,6 +14,8 @@ Ints = NDArray[np.int64]
 
 LEAST_SPREAD = 1e-14
 """Standard deviation, relative to the largest value, below which a series counts as still."""
+LEAST_ROWS = 20
+"""Rows below which autocovariances say nothing."""
 
 
 def moving(columns: Floats) -> NDArray[np.bool_]:
@@ -25,15 +27,17 @@ def block_lengths(series: Floats) -> Floats:
     """Return the mean block length in sessions (K,) for the stationary bootstrap of each column of (T, K).
 
     Politis & White 2004, "Automatic Block-Length Selection for the Dependent Bootstrap", Econometric Reviews
-    23, corrected by Patton, Politis & White 2009, ibid. 28. At least 1; 1 for one that does not move.
+    23, corrected by Patton, Politis & White 2009, ibid. 28. At least 1; 1 for one that does not move
+    or has too few rows.
     """
     from arch.bootstrap import optimal_block_length
 
     columns = np.asarray(series, dtype=np.float64).reshape(len(series), -1)
     lengths = np.ones(columns.shape[1])
     active = moving(columns)
-    if active.any():
-        lengths[active] = optimal_block_length(columns[:, active])["stationary"].to_numpy()
+    if active.any() and len(columns) >= LEAST_ROWS:
+        with np.errstate(divide="ignore", invalid="ignore"):  # of a stretch that does not move; seen to below
+            lengths[active] = optimal_block_length(columns[:, active])["stationary"].to_numpy()
     return np.asarray(np.fmax(lengths, 1.0))
 
 

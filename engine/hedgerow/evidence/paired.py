@@ -60,6 +60,11 @@ class Pair:
         """Means (8,) of the columns."""
         return np.asarray(self.columns.mean(axis=0))
 
+    @property
+    def gaps(self) -> Floats:
+        """Log returns (T,) of the first less those of the second."""
+        return np.asarray(self.columns[:, _LOG] - self.columns[:, _WIDTH + _LOG])
+
     @cached_property
     def influence(self) -> Floats:
         """What each session adds (T, 3) to the gaps of SMOOTH, to first order; rounding is 0."""
