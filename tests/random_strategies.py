@@ -148,7 +148,33 @@ def structures(draw: st.DrawFn) -> Words:
         solved = solved or "worst_loss_within" in words["strike"]
         if draw(st.integers(0, 4)) == 0:
             words["ratio"] = 1
+        if words.get("buy") == "put" and draw(st.integers(0, 3)) == 0:
+            ways = ["any", "up", "down"]
+            words["roll"] = {"if": {"held": {"at_least": 3}}, "direction": draw(st.sampled_from(ways))}
     return {"shares": shares, "legs": legs}
+
+
+def entries(bounded: bool) -> st.SearchStrategy[Words]:
+    """Words of `enter`; figures of the best gain only where it is bounded."""
+    figures = ["net_credit", *(["odds_of_best", "best_gain"] if bounded else [])]
+    days = st.lists(st.sampled_from(["monday", "tuesday", "friday"]), min_size=1, unique=True)
+    on = st.one_of(
+        days.map(lambda v: {"weekday": v if len(v) > 1 else v[0]}),
+        st.sampled_from(["week", "month", "quarter"]).map(lambda v: {"first_session_of": v}),
+        st.sampled_from(["weekly", "monthly", "quarterly"]).map(lambda v: {"expiry_of": v}),
+    )
+    by = st.one_of(signals(True), st.sampled_from(figures).map(lambda v: {"figure": v}))
+    counts = {"positions": st.integers(2, 12), "spacing": st.integers(1, 250)}
+    return st.fixed_dictionaries(
+        {},
+        optional={
+            "when": conditions(signals()),
+            "on": on,
+            "rank": st.fixed_dictionaries({"by": by}, optional={"order": st.just("low")}),
+            "cool_down": st.fixed_dictionaries({"sessions": st.integers(1, 1000)}),
+            "ladder": st.fixed_dictionaries(counts),
+        },
+    )
 
 
 @st.composite
@@ -169,14 +195,7 @@ def strategies(draw: st.DrawFn) -> Words:
             )
         )
     if draw(st.booleans()):
-        words["enter"] = draw(
-            st.fixed_dictionaries(
-                {"when": conditions(signals())},
-                optional={
-                    "rank": st.fixed_dictionaries({"by": signals(True)}, optional={"order": st.just("low")})
-                },
-            )
-        )
+        words["enter"] = draw(entries(words["shares"] != "long" and "call" not in words["legs"]))
     names = draw(
         st.lists(st.sampled_from(["cut", "trend turned", "time", "2.5% up"]), unique=True, max_size=3)
     )

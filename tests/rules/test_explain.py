@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from pathlib import Path
 from typing import Any
 
 import numpy as np
@@ -72,7 +73,7 @@ Management. `put` is bought again by the same rules when 30 days or fewer are le
 Later, when the stock is 5% or more above its price at entry: sell one call (`call`), expiring on the first
 listed monthly date at least 30 days away, at the strike whose delta is 0.3, moved to the nearest listed
 strike. `call` is sold again by the same rules when it ends at expiry and the position goes on or when
-`call` has lost at least 80% of its price at entry, but only if that brings money in.
+`call` has lost at least 80% of the price at which it was opened, but only if that brings money in.
 
 Exit. No exit rule. At expiry an option in the money is exercised or assigned, any other ends worthless;
 those of an index are settled in cash, and never early. The position goes on while shares are held and a leg
@@ -226,6 +227,66 @@ def test_reversal() -> None:
     assert "locked in at entry" in said({"shares": "short", "legs": legs}, "Best case")
 
 
+SHIPPED = Path(__file__).parents[2] / "strategies"
+
+
+@pytest.mark.parametrize(
+    ("name", "title", "phrase"),
+    [
+        (
+            "put-credit-spread",
+            "Best case",
+            "what the options bring in, when the stock ends above both strikes",
+        ),
+        ("put-credit-spread", "Worst case", "the distance of the strikes less what the options bring in"),
+        ("put-credit-spread", "Obligations", "the put bought limits what that can cost"),
+        ("call-debit-spread", "Best case", "less what was paid, when the stock ends above both strikes"),
+        ("call-debit-spread", "Worst case", "the most that can be lost is what was paid"),
+        ("cash-secured-put", "Worst case", "worth nothing: the strike less the premium"),
+        ("collar-reverse", "Best case", "The most that can be won is the put's strike less the net debit"),
+        ("collar-reverse", "Worst case", "the shares go at the strike of `call`, and nothing more is lost"),
+        ("put-spread-collar", "Best case", "Capped by `call`"),
+        ("put-spread-collar", "Worst case", "between its strike and that of `low put` nothing more is lost"),
+        ("collar-different-month", "Best case", "and what the put is still worth then"),
+        ("rolling-protective-put", "Worst case", "A put bought again has its own price and its own floor"),
+        ("conversion", "Best case", "It is the strike less the net debit"),
+        ("conversion", "Worst case", "Bounded by the same result"),
+        ("reversal", "Best case", "It is what came in less the strike"),
+        ("reversal", "Worst case", "dividends that rise come off it"),
+        (
+            "covered-call-out-of-the-money",
+            "Management",
+            "only to a higher strike and a later expiry and only if",
+        ),
+        ("laddered-hedge", "Entry", "Each takes 1/3 of the money"),
+        ("put-spread-collar", "Entry", "every session on which a quarterly expiry falls"),
+    ],
+)
+def test_shipped_structures_in_words(name: str, title: str, phrase: str) -> None:
+    """What each wins and loses, worked out from its payoff by hand."""
+    assert phrase in dict(paragraphs(load_strategy(SHIPPED / f"{name}.yaml")))[title]
+
+
+@pytest.mark.parametrize("right", ["call", "put"])
+@pytest.mark.parametrize("sold_lower", [True, False])
+def test_spreads_of_two_legs(right: str, sold_lower: bool) -> None:
+    """Compares credit or debit, and the side that wins, with the payoff at 10 and at 1000."""
+    sold, bought = (-0.05, 0.05) if sold_lower else (0.05, -0.05)
+    legs = {
+        "sold": leg("sell", right, strike={"from_spot": f"{sold:.0%}"}),
+        "bought": leg("buy", right, strike={"from_spot": f"{bought:.0%}"}) | {"expiry": {"with": "sold"}},
+    }
+    words = {"name": "test", "shares": "none", "legs": legs}
+    strikes = {"sold": 100 * (1 + sold), "bought": 100 * (1 + bought)}
+    low, high = payoff(words, strikes, np.array([10.0, 1000.0]))
+    told = dict(paragraphs(load_strategy(words)))
+    side = "above" if high > low else "below"
+    assert f"ends {side} both strikes" in told["Best case"]
+    owed = min(low, high) < 0
+    assert ("what the options bring in" in told["Best case"]) == owed
+    assert ("is what was paid" in told["Worst case"]) == (not owed)
+
+
 @pytest.mark.parametrize(
     ("condition", "phrase"),
     [
@@ -240,6 +301,12 @@ def test_reversal() -> None:
         ({"gain": {"at_least": "50%", "of": "best"}}, "gained at least 50% of the best gain it could make"),
         ({"loss": {"at_least": "50%", "of": "worst"}}, "lost at least 50% of the worst loss it could make"),
         ({"days_left": {"at_most": 3}}, "3 days or fewer are left to the nearest expiry"),
+        ({"days_left": {"at_most": 1, "leg": "put"}}, "one day or none is left to the expiry of `put`"),
+        ({"not": {"holds_shares": True}}, "it is not so that the position holds shares"),
+        (
+            {"signal": "sessions_to_ex_dividend", "at_most": 1},
+            "the number of sessions to the next expected ex-dividend date is at most 1",
+        ),
         (
             {
                 "any": [

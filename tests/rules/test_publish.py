@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import re
 from pathlib import Path
 from typing import Any
 
@@ -40,22 +41,25 @@ def test_the_same_language_gives_the_same_bytes() -> None:
 
 @pytest.mark.parametrize("path", sorted((ROOT / "strategies").glob("*.yaml")), ids=lambda path: path.name)
 def test_shipped_strategies_fit(path: Path) -> None:
-    """Read as an editor reads YAML (PyYAML's plain loader), every shipped strategy fits its schema."""
-    assert errors(yaml.safe_load(path.read_text(encoding="utf-8")), SCHEMA) == []
+    """Read as an editor reads YAML 1.2, in which `on` is a word and no flag, each fits its schema."""
+    assert errors(yaml.load(path.read_text(encoding="utf-8"), Loader=_loader("bool")), SCHEMA) == []  # safe
 
 
 @pytest.mark.parametrize("path", sorted((ROOT / "configs").glob("*.yaml")), ids=lambda path: path.name)
 def test_shipped_studies_fit(path: Path) -> None:
     """The studies too; their dates are text in an editor's eyes."""
-    loader = type("Loader", (yaml.SafeLoader,), {"yaml_implicit_resolvers": _without_dates()})
+    loader = _loader("timestamp")
     assert errors(yaml.load(path.read_text(encoding="utf-8"), Loader=loader), STUDY) == []  # a safe loader
 
 
-def _without_dates() -> dict[str, Any]:
+def _loader(kind: str) -> Any:
+    """PyYAML's safe loader without one kind of plain value; of flags `true` and `false` stay."""
     found = yaml.SafeLoader.yaml_implicit_resolvers
-    return {
-        key: [pair for pair in pairs if not pair[0].endswith("timestamp")] for key, pairs in found.items()
-    }
+    kept = {key: [pair for pair in pairs if not pair[0].endswith(kind)] for key, pairs in found.items()}
+    loader: Any = type("Loader", (yaml.SafeLoader,), {"yaml_implicit_resolvers": kept})
+    if kind == "bool":
+        loader.add_implicit_resolver("tag:yaml.org,2002:bool", re.compile("^(?:true|false)$"), list("tf"))
+    return loader
 
 
 @settings(max_examples=60)

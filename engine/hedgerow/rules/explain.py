@@ -181,7 +181,10 @@ def _at_expiry(strategy: Strategy) -> str:
         "index are settled in cash, and never early."
     )
     if strategy.after_assignment == "keep":
-        return text + " The position goes on while shares are held, and ends when they are called away."
+        return text + (
+            " A put that ends worthless ends the position. One that is assigned brings shares: the position "
+            "then goes on while they are held, and ends when they are called away."
+        )
     if strategy.shares == "none":
         return text + " Shares that this leaves are sold at that close."
     if again:

@@ -73,7 +73,7 @@ def _open_above(strategy: Strategy) -> Iterator[str]:
 
 def _capped(strategy: Strategy) -> str:
     calls, spread = of_kind(strategy, "call", True), vertical(strategy)
-    if is_plain(strategy) and calls:
+    if strategy.shares == "long" and len(calls) == 1 and not of_kind(strategy, "call", False):
         still = "" if together(strategy) else ", and what the put is still worth then"
         return (
             f"Capped by {_names(calls)}: above its strike a further rise adds nothing, since the shares go "

@@ -164,7 +164,9 @@ def _position_clause(test: Condition) -> str:
     if isinstance(test, DaysLeftTest):
         leg = test.days_left.leg
         which = "the nearest expiry" if leg is None else f"the expiry of `{leg}`"
-        return f"{counted(test.days_left.at_most, 'day')} or fewer are left to {which}"
+        if test.days_left.at_most == 1:
+            return f"one day or none is left to {which}"
+        return f"{test.days_left.at_most} days or fewer are left to {which}"
     if isinstance(test, HeldTest):
         return f"it has been held for {counted(test.held.at_least, 'session')} or more"
     return _move_clause(test)
@@ -178,6 +180,6 @@ def _move_clause(test: Condition) -> str:
     if isinstance(test, StockDownTest):
         return f"the stock is {percent_text(test.stock_down.at_least)} or more below its price at entry"
     if isinstance(test, LegLostTest):
-        lost = test.leg_lost
-        return f"`{lost.leg}` has lost at least {percent_text(lost.at_least)} of its price at entry"
+        share = percent_text(test.leg_lost.at_least)
+        return f"`{test.leg_lost.leg}` has lost at least {share} of the price at which it was opened"
     raise TypeError(f"a condition of an unknown kind cannot be put into words: {type(test).__name__}")

@@ -22,7 +22,7 @@ _WEEK_DAYS = 7  # more than any closure of the exchange
 
 @signal(
     "sessions_to_ex_dividend",
-    phrase="the sessions to the next expected ex-dividend date",
+    phrase="the number of sessions to the next expected ex-dividend date",
     number=Number("sessions", 0.0, NO_DIVIDEND_SESSIONS),
     by_bars=False,
 )

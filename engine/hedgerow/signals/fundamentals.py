@@ -86,7 +86,7 @@ def _sessions_ahead(market: Market, first: int, last: int, ordinal: int) -> Ints
 
 @signal(
     "sessions_to_report",
-    phrase="the sessions to the next announced report",
+    phrase="the number of sessions to the next announced report",
     number=Number("sessions", 0.0, NO_REPORT_SESSIONS),
     by_bars=False,
 )
@@ -105,7 +105,7 @@ def sessions_to_report(panel: Panel) -> Floats:
 
 @signal(
     "sessions_since_report",
-    phrase="the sessions since the last report",
+    phrase="the number of sessions since the last report",
     number=Number("sessions", 0.0, NO_REPORT_SESSIONS),
     by_bars=False,
 )
