@@ -6,7 +6,6 @@ from typing import Any
 
 import pytest
 from hypothesis import HealthCheck, given, settings
-from hypothesis import strategies as st
 
 from hedgerow.market import Market
 from oracle import real_markets
@@ -14,14 +13,9 @@ from oracle.bridge import WalkPuts, walked
 from oracle.compare import first_difference, rows_of
 from oracle.replay import Replay
 from oracle.words import Setting
+from properties.accounts import COSTS, SHORT_BLEND, accounts
 from properties.markets import wild_markets
 from properties.rules import Rule, rules
-
-COSTS = {"half_spread": 0.03, "spread_rise": 0.5, "floor_ticks": 0.5, "use_ticks": 1.0, "contract_fee": 0.65}
-COSTS |= {"share_fee": 0.005, "trade_fee": 1.0, "assignment_fee": 5.0, "slippage": 0.0005}
-
-SHORT_BLEND = {"blend": [{"close": 5}, {"close": 20}], "history": 15}
-SHORT_SURFACE = {"horizons": (5, 20), "history": 15}
 
 MONTHLY_CALL = {"sell": "call", "expiry": {"days": 30}, "strike": {"from_spot": "2%", "snap": "up"}}
 WEEKLY_CALL = {
@@ -116,20 +110,8 @@ def test_stocks_with_the_replay_s_own_puts() -> None:
     assert first_difference(events, rows_of(log.events), slack=0.01) == ""
 
 
-@st.composite
-def settings_of_accounts(draw: st.DrawFn) -> Setting:
-    """An account of any size, with and without costs."""
-    return Setting(
-        cash=draw(st.sampled_from((20000.0, 100000.0, 400000.0))),
-        per_position=draw(st.sampled_from((1.0, 0.5, 1 / 3))),
-        most_positions=draw(st.sampled_from((1, 2, 1000))),
-        costs=draw(st.sampled_from(({}, COSTS))),
-        surface=SHORT_SURFACE,
-    )
-
-
 @settings(max_examples=150, suppress_health_check=[HealthCheck.too_slow])
-@given(market=wild_markets(), rule=rules(solved=False), setting=settings_of_accounts())
+@given(market=wild_markets(), rule=rules(solved=False), setting=accounts())
 def test_random_markets(market: Market, rule: Rule, setting: Setting) -> None:
     """Splits, dividends, holes, reports, ends of history, any rule: every event and equity of the replay."""
     events, days = Replay(market, rule, setting, WalkPuts()).run()

@@ -85,7 +85,7 @@ def test_expiries_before_holidays(day: str, expiry: str) -> None:
 
 
 def test_expected_dividends_by_hand() -> None:
-    """Two payments 91 days apart, then none: the third is expected on its day, then daily for 45 days, no more.
+    """Two payments 91 days apart, then none: the third is expected on its day, then daily for 45 days.
 
     A split of two for one in between halves what is expected.
     """

@@ -112,19 +112,42 @@ ENTRIES: tuple[Rule, ...] = (
 )
 
 
+SIGNALS: tuple[Rule, ...] = (
+    {"signal": "macd_over_signal", "fast": 4, "slow": 9, "smooth": 3},
+    {"signal": "macd_crossed_up", "fast": 3, "slow": 8, "smooth": 3},
+    {"signal": "mean_rising", "sessions": 8, "over": 3},
+    {"signal": "band_break_down", "sessions": 10, "width": 1.0},
+    {"signal": "rsi", "sessions": 7, "at_most": 60},
+    {"signal": "distance_from_high", "sessions": 20, "at_least": "1%"},
+    {"signal": "volatility_rank", "sessions": 5, "over": 30, "at_most": "70%"},
+    {"signal": "eps_growth", "at_least": "-50%"},
+    {"signal": "sessions_to_report", "at_least": 5},
+    {"signal": "sessions_since_report", "at_least": 2},
+    {"signal": "weekday", "is": ["monday", "wednesday", "thursday"]},
+)
+
+
 @st.composite
 def rules(draw: st.DrawFn, solved: bool = True) -> Rule:
-    """A whole rule set; one without legs always has an exit. Strikes found by solving only when `solved`."""
+    """A whole rule set; one without legs always has an exit.
+
+    With `solved` its strikes may be found by solving, and entries and exits may use any kind of signal.
+    """
     rule: Rule = {"name": "Random rule"} | draw(structures(solved))
     legs = list(rule.get("legs", {}))
     rule["exit"] = draw(exits(legs)) or ([] if legs else [{"name": "time", "if": {"held": {"at_least": 9}}}])
     enter = draw(st.sampled_from(ENTRIES))
+    if solved and draw(st.booleans()):
+        enter = {"when": draw(st.sampled_from(SIGNALS))}
+    if solved and draw(st.integers(0, 3)) == 0:
+        rule["exit"].append({"name": "signal", "if": {"not": draw(st.sampled_from(SIGNALS))}})
     if enter:
         rule["enter"] = enter
     if rule.get("shares") != "none" and draw(st.integers(0, 2)) == 0:
         rule["stop"] = {"below_entry": draw(percents(2, 12))}
     if draw(st.integers(0, 2)) == 0:
         rule["fill"] = "close"
-    if any("add_when" not in leg for leg in rule.get("legs", {}).values()) and draw(st.integers(0, 3)) == 0:
+    opened = [name for name in legs if "add_when" not in rule["legs"][name]]
+    if opened and draw(st.integers(0, 3)) == 0:
         rule["accept"] = {"net_debit": {"at_most": draw(percents(0, 3))}}
     return rule
