@@ -40,6 +40,7 @@ KIND_WORDS: tuple[str, ...] = (
     "signalled",
     "closed",
     "gone",
+    "margin call",
 )
 """Word of each KIND_ code, by the code."""
 

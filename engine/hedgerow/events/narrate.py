@@ -143,6 +143,10 @@ def _closed(log: EventLog, event: Any) -> str:
     return f"Position {event['position']} in {_symbol(log, event)} is over{_why(log, event)}: result {result}"
 
 
+def _margin_call(_log: EventLog, event: Any) -> str:
+    return f"Equity is {money_text(float(event['price']))} short of the maintenance margin"
+
+
 def _gone(log: EventLog, event: Any) -> str:
     return f"The price history of {_symbol(log, event)} ends"
 
@@ -163,4 +167,5 @@ _TELLERS: tuple[Callable[[EventLog, Any], str], ...] = (
     _signalled,
     _closed,
     _gone,
+    _margin_call,
 )

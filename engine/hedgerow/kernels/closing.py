@@ -6,7 +6,17 @@ from typing import Any
 
 from hedgerow.kernels.holding import close_clock, leave, move_legs, settle_expired
 from hedgerow.kernels.jit import step
-from hedgerow.kernels.layout import KIND_SIGNALLED, WHY_ADDED, WHY_EXIT_RULE, WHY_ROLL
+from hedgerow.kernels.layout import (
+    KIND_SIGNALLED,
+    ROLL_DOWN,
+    ROLL_DOWN_AND_OUT,
+    ROLL_OUT,
+    ROLL_UP,
+    ROLL_UP_AND_OUT,
+    WHY_ADDED,
+    WHY_EXIT_RULE,
+    WHY_ROLL,
+)
 from hedgerow.kernels.state import LIVE, MOVING, NONE, OPEN, WANTED, Clock, Desk, Scene
 from hedgerow.kernels.structure import find_strike, leg_price, price_leg
 from hedgerow.kernels.trades import write
@@ -83,6 +93,29 @@ def _wants_move(desk: Desk, position: Any, scene: Scene, number: int, word: int)
 
 
 @step
+def _wrong_way(leg: Any, way: int) -> bool:
+    """Whether the terms wanted for a live leg lie another way than its rule allows it to be rolled."""
+    up, out = leg.wanted_strike > leg.strike, leg.wanted_expiry > leg.expiry
+    down = leg.wanted_strike < leg.strike
+    if way in (ROLL_UP, ROLL_UP_AND_OUT):
+        return not up or (way == ROLL_UP_AND_OUT and not out)
+    if way in (ROLL_DOWN, ROLL_DOWN_AND_OUT):
+        return not down or (way == ROLL_DOWN_AND_OUT and not out)
+    return way == ROLL_OUT and not out
+
+
+@step
+def _may_move(desk: Desk, position: Any, number: int, bar: Any, clock: Clock) -> bool:
+    """Whether a live leg may be rolled to the terms wanted: other than its own, the right way, for money."""
+    leg, spec = position.legs[number], desk.plan.specs[number]
+    if leg.wanted_strike == leg.strike and leg.wanted_expiry == leg.expiry:
+        return False
+    if _wrong_way(leg, spec.roll_way):
+        return False
+    return spec.roll_credit == 0 or _brings_money(desk, position, number, bar, clock)
+
+
+@step
 def _note_order(desk: Desk, position: Any, scene: Scene, number: int, reason: int) -> None:
     """Write that a leg is to be rolled or added."""
     leg = position.legs[number]
@@ -106,8 +139,7 @@ def order_legs(desk: Desk, position: Any, scene: Scene, clock: Clock, word: int)
         if not _new_terms(desk, position, scene, k, clock):
             continue
         if leg.status == LIVE:
-            same = leg.wanted_strike == leg.strike and leg.wanted_expiry == leg.expiry
-            if same or (spec.roll_credit == 1 and not _brings_money(desk, position, k, scene.bar, clock)):
+            if not _may_move(desk, position, k, scene.bar, clock):
                 leg.wanted_strike = 0.0
                 continue
             leg.status = MOVING

@@ -11,6 +11,11 @@ from hedgerow.kernels.layout import (
     KIND_DECLINED,
     KIND_OPENED,
     LOT_SHARES,
+    MARGIN_CASH,
+    RANK_BEST,
+    RANK_BEST_OVER_WORST,
+    RANK_CREDIT,
+    RANK_ODDS,
     WHY_ENTRY,
     WHY_GONE_ORDER,
     WHY_NO_BID,
@@ -19,6 +24,7 @@ from hedgerow.kernels.layout import (
     WHY_NO_VOLATILITY,
     WHY_NONE,
 )
+from hedgerow.kernels.margin import requirement
 from hedgerow.kernels.payoff import first_expiry, measure
 from hedgerow.kernels.quote import at_the_money_for
 from hedgerow.kernels.state import FLAT, OPEN, ORDERED, WANTED, Clock, Desk, Scene
@@ -33,7 +39,7 @@ from hedgerow.kernels.structure import (
 )
 from hedgerow.kernels.trades import share_price, trade_leg, trade_shares, write
 
-__all__ = ["consider", "decline", "drop_order", "fill_entry", "take_stock"]
+__all__ = ["consider", "decline", "drop_order", "figure_of", "fill_entry", "take_stock"]
 
 
 @step
@@ -42,6 +48,48 @@ def decline(desk: Desk, session: int, symbol: int, reason: int, quantity: float,
     row = write(desk, session, symbol, -1, KIND_DECLINED, reason)
     row.quantity = quantity
     row.spot = spot
+
+
+@step
+def _free_cash(desk: Desk) -> float:
+    """What may still be tied up: cash not set aside, or on margin equity beyond the initial requirements."""
+    totals = desk.totals
+    if desk.plan.margin == MARGIN_CASH:
+        return totals.cash - totals.reserved
+    return totals.equity - totals.required
+
+
+@step
+def _capital(desk: Desk, position: Any, debit: float, owed: float, fees: float, spot: float) -> float:
+    """What one lot of wanted legs and shares ties up: cash, or on margin its initial requirement and fees."""
+    shares = desk.plan.shares * LOT_SHARES
+    if desk.plan.margin == MARGIN_CASH:
+        return capital_of(debit, owed, fees, shares, spot)
+    initial, _ = requirement(position, desk.plan.legs, shares, spot)
+    return max(initial + fees, spot)
+
+
+@step
+def figure_of(desk: Desk, position: Any, scene: Scene, clock: Clock) -> float:
+    """The figure of its own structure by which a candidate is ranked at this close; NaN when it has none."""
+    plan, spot = desk.plan, scene.bar.close
+    if scene.bar.signs & FRESH == 0:
+        return math.nan
+    if choose_legs(desk, position, scene.today, spot, scene.bar, clock) != WHY_NONE:
+        return math.nan
+    debit, credit, _ = lot_cost(desk, position, spot, clock)
+    horizon, moment = first_expiry(position.legs, plan.legs), (spot, scene.bar, clock, desk.smile)
+    shares = plan.shares * LOT_SHARES
+    figures = measure(position.legs, plan.legs, shares, debit, horizon, moment, desk.scratch)
+    best, worst, stake = figures[0], figures[1], debit + figures[5]
+    value = figures[3]
+    if plan.rank_figure == RANK_BEST_OVER_WORST:
+        value = best / worst if worst > 0.0 else math.inf
+    elif plan.rank_figure == RANK_CREDIT:
+        value = credit / (LOT_SHARES * spot)
+    elif plan.rank_figure != RANK_ODDS:
+        value = (best if plan.rank_figure == RANK_BEST else worst) / stake
+    return -value if plan.rank_low == 1 else value
 
 
 @step
@@ -64,9 +112,9 @@ def consider(desk: Desk, position: Any, scene: Scene, clock: Clock) -> int:
     why = judge(plan, debit + owed, credit, LOT_SHARES * spot, figures, wide)
     if why != WHY_NONE:
         return why
-    capital = capital_of(debit, owed, fees, shares, spot)
+    capital = _capital(desk, position, debit, owed, fees, spot)
     budget = plan.per_position * totals.equity
-    free = totals.cash - totals.reserved - totals.promised
+    free = _free_cash(desk) - totals.promised
     lots = math.floor(min(budget, free - desk.costs.trade_fee) / capital + 1e-9)
     if lots < 1.0:
         return WHY_NO_LOT if budget < capital else WHY_NO_CASH
@@ -154,8 +202,11 @@ def _remember(desk: Desk, position: Any, terms: Any, session: int) -> None:
     position.stake = terms.net_debit + terms.reserve
     position.best_gain = terms.best_gain
     position.worst_loss = terms.worst_loss
-    position.reserve = terms.reserve
-    desk.totals.reserved += terms.reserve
+    position.reserve = terms.reserve if plan.margin == MARGIN_CASH else 0.0
+    desk.totals.reserved += position.reserve
+    if plan.margin != MARGIN_CASH:
+        initial, _ = requirement(position, plan.legs, plan.shares * LOT_SHARES, terms.stock_price)
+        desk.totals.required += initial * position.lots
 
 
 @step
@@ -187,7 +238,7 @@ def _buy(desk: Desk, position: Any, session: int, spot: float, clock: Clock) -> 
 @step
 def fill_entry(desk: Desk, position: Any, session: int, spot: float, bar: Any, clock: Clock) -> None:
     """Fill an ordered position at `spot`, with as many of its lots as cash allows; `bar` knows volatility."""
-    plan, totals = desk.plan, desk.totals
+    plan = desk.plan
     _take_back(desk, position)
     for k in range(plan.legs):
         if position.legs[k].status == WANTED:
@@ -197,8 +248,8 @@ def fill_entry(desk: Desk, position: Any, session: int, spot: float, bar: Any, c
     horizon = first_expiry(position.legs, plan.legs)
     moment = (spot, bar, clock, desk.smile)
     figures = measure(position.legs, plan.legs, shares, debit, horizon, moment, desk.scratch)
-    capital = capital_of(debit, figures[5], fees, shares, spot)
-    free = totals.cash - totals.reserved - desk.costs.trade_fee
+    capital = _capital(desk, position, debit, figures[5], fees, spot)
+    free = _free_cash(desk) - desk.costs.trade_fee
     lots = min(position.lots, math.floor(free / capital + 1e-9))
     bid = has_bids(desk, position, clock)
     if lots < 1.0 or not bid:

@@ -6,7 +6,7 @@ from typing import Any
 
 from hedgerow.kernels.entry import take_stock
 from hedgerow.kernels.jit import step
-from hedgerow.kernels.layout import LOT_SHARES, WHY_ADDED, WHY_EXPIRY, WHY_LEFT_OVER, WHY_ROLL
+from hedgerow.kernels.layout import LOT_SHARES, MARGIN_CASH, WHY_ADDED, WHY_EXPIRY, WHY_LEFT_OVER, WHY_ROLL
 from hedgerow.kernels.payoff import first_expiry, measure
 from hedgerow.kernels.state import MOVING, NONE, WANTED, Clock, Desk, Scene
 from hedgerow.kernels.structure import price_leg
@@ -70,10 +70,11 @@ def restate(desk: Desk, position: Any, spot: float, bar: Any, clock: Clock) -> N
     horizon = first_expiry(position.legs, count)
     moment = (spot, bar, clock, desk.smile)
     figures = measure(position.legs, count, position.shares, position.outlay, horizon, moment, desk.scratch)
-    desk.totals.reserved += figures[5] - position.reserve
     position.best_gain = figures[0]
     position.worst_loss = figures[1]
-    position.reserve = figures[5]
+    if desk.plan.margin == MARGIN_CASH:
+        desk.totals.reserved += figures[5] - position.reserve
+        position.reserve = figures[5]
     take_stock(position, count)
 
 
@@ -96,10 +97,13 @@ def settle_expired(desk: Desk, position: Any, scene: Scene, close: float, last: 
     take_stock(position, plan.legs)
     if held != 0.0 and position.shares == 0.0:
         after_delivery(desk, position, session, WHY_EXPIRY)
-    elif live == 0 and again == 0:
+    elif live == 0 and again == 0 and not (plan.keep_shares == 1 and position.shares > 0.0):
         if position.shares != 0.0:
             trade_shares(desk, position, session, WHY_EXPIRY, -position.shares, close)
         close_position(desk, position, session, WHY_EXPIRY)
+    else:
+        bar = scene.before if last < scene.today.ordinal else scene.bar
+        restate(desk, position, close, bar, close_clock(scene))
 
 
 @step

@@ -71,7 +71,8 @@ SNAP_NEAREST, SNAP_UP, SNAP_DOWN = 0, 1, 2
     KIND_SIGNALLED,  # an exit, roll or entry decided at this close, to fill later
     KIND_CLOSED,  # a position is over; price = its whole result
     KIND_GONE,  # the history of a symbol ended
-) = range(15)
+    KIND_MARGIN_CALL,  # equity under the maintenance requirement; price = by how much, money
+) = range(16)
 
 # why
 (

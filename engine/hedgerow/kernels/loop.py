@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from typing import Any
 
+from hedgerow.kernels.candidates import list_candidates, sector_is_full
 from hedgerow.kernels.closing import at_close
 from hedgerow.kernels.day import at_open, off_strikes, overnight, resting_stop, silence
 from hedgerow.kernels.entry import consider, decline, drop_order, fill_entry
@@ -13,20 +14,27 @@ from hedgerow.kernels.jit import compiled, step
 from hedgerow.kernels.layout import (
     DAYS_A_YEAR,
     HAS_BAR,
+    KIND_BORROW,
     KIND_INTEREST,
+    KIND_MARGIN_CALL,
     KIND_SIGNALLED,
+    MARGIN_REGULATION,
     PAYS,
     SPLITS,
     WHY_ENTRY,
     WHY_FULL,
+    WHY_LIMIT,
+    WHY_MARGIN,
     WHY_NONE,
     Floats,
 )
-from hedgerow.kernels.state import FLAT, OPEN, ORDERED, Desk, Scene, World
+from hedgerow.kernels.margin import requirement
+from hedgerow.kernels.state import OPEN, Desk, Scene, World
 from hedgerow.kernels.trades import cents, post, write
 
 __all__ = ["EVENTS_A_SLOT", "walk"]
 
+LOAN_SPREAD = 0.015  # a year, over the rate that cash earns: common practice
 EVENTS_A_SLOT = 40  # more than one slot can write in one session
 
 
@@ -36,9 +44,11 @@ def _earn(world: World, desk: Desk, session: int) -> None:
     totals, yesterday = desk.totals, world.sessions[session - 1]
     days = world.sessions[session].ordinal - yesterday.ordinal
     growth = math.expm1(yesterday.rate * days / DAYS_A_YEAR)
+    free = totals.cash - totals.reserved
+    if free < 0.0:  # a loan on margin
+        growth = math.expm1((yesterday.rate + LOAN_SPREAD) * days / DAYS_A_YEAR)
     if growth == 0.0:
         return
-    free = totals.cash - totals.reserved
     if cents(free * growth) != 0.0:
         row = write(desk, session, -1, -1, KIND_INTEREST, WHY_NONE)
         row.price = growth
@@ -53,6 +63,58 @@ def _earn(world: World, desk: Desk, session: int) -> None:
             row.price = growth
             row.quantity = position.reserve
             position.flows += post(desk, row, position.reserve * growth)
+
+
+@step
+def _borrow(world: World, desk: Desk, session: int) -> None:
+    """What shares sold short cost to borrow since yesterday's close."""
+    days = world.sessions[session].ordinal - world.sessions[session - 1].ordinal
+    share = desk.costs.borrow * days / DAYS_A_YEAR
+    for slot in range(world.positions.shape[0]):
+        position = world.positions[slot]
+        if position.status == OPEN and position.shares < 0.0 and share > 0.0:
+            row = write(desk, session, position.symbol, position.position, KIND_BORROW, WHY_NONE)
+            row.quantity = position.shares
+            row.price = share * position.last_close
+            row.mid = row.price
+            row.spot = position.last_close
+            position.flows += post(desk, row, position.shares * row.price)
+
+
+@step
+def _require(world: World, desk: Desk) -> None:
+    """Add up the margin that what is held asks for at this close."""
+    totals = desk.totals
+    totals.required, totals.kept = 0.0, 0.0
+    for slot in range(world.positions.shape[0]):
+        position = world.positions[slot]
+        if position.status == OPEN:
+            initial, kept = requirement(position, desk.plan.legs, position.shares, position.last_close)
+            totals.required += initial
+            totals.kept += kept
+
+
+@step
+def _call(world: World, desk: Desk, session: int) -> None:
+    """A maintenance call: the newest positions are ordered closed, until those left are covered by equity."""
+    totals = desk.totals
+    short = totals.kept - totals.equity
+    if short <= 0.0:
+        return
+    row = write(desk, session, -1, -1, KIND_MARGIN_CALL, WHY_MARGIN)
+    row.price = short
+    while short > 0.0:
+        newest = -1
+        for slot in range(world.positions.shape[0]):
+            position = world.positions[slot]
+            newer = newest < 0 or position.position > world.positions[newest].position
+            if position.status == OPEN and position.closing == 0 and newer:
+                newest = slot
+        if newest < 0:
+            return
+        position = world.positions[newest]
+        position.closing = WHY_MARGIN
+        short -= requirement(position, desk.plan.legs, position.shares, position.last_close)[1]
 
 
 @step
@@ -152,57 +214,6 @@ def _evening(world: World, desk: Desk, session: int) -> None:
 
 
 @step
-def _waits(world: World, plan: Any, session: int, slot: int) -> bool:
-    """Whether a slot may not enter: busy, too soon after its symbol's last entry, or cooling after a loss."""
-    position = world.positions[slot]
-    if position.status != FLAT:
-        return True
-    if plan.cooling > 0 and position.lost == 1 and session - position.left < plan.cooling:
-        return True
-    if plan.ladder == 1:
-        return False
-    first = slot - slot % plan.ladder
-    for other in range(first, first + plan.ladder):
-        held = world.positions[other]
-        if held.status == ORDERED or (held.status == OPEN and session - held.decided < plan.spacing):
-            return True
-    return False
-
-
-@step
-def _free_slot(world: World, plan: Any, session: int, symbol: int) -> int:
-    """A slot of the symbol that may enter; -1 when there is none."""
-    for slot in range(symbol * plan.ladder, (symbol + 1) * plan.ladder):
-        if not _waits(world, plan, session, slot):
-            return slot
-    return -1
-
-
-@step
-def list_candidates(world: World, plan: Any, session: int, queue: Floats) -> int:
-    """Write the slots that may enter into `queue`, best rank first, ties by symbol; return how many."""
-    size = 0
-    ranked = world.rank.shape[0] > 1
-    for symbol in range(world.bars.shape[1]):
-        if world.may_enter[session, symbol] == 0 or world.bars[session, symbol].signs & HAS_BAR == 0:
-            continue
-        slot = _free_slot(world, plan, session, symbol)
-        if slot < 0 or (ranked and math.isnan(world.rank[session, symbol])):
-            continue
-        at = size
-        if ranked:
-            while (
-                at > 0
-                and world.rank[session, int(queue[at - 1]) // plan.ladder] < world.rank[session, symbol]
-            ):
-                queue[at] = queue[at - 1]
-                at -= 1
-        queue[at] = slot
-        size += 1
-    return size
-
-
-@step
 def _decide(world: World, desk: Desk, session: int, queue: Floats) -> None:
     """Order (fill: open) or fill (fill: close) new positions at this close.
 
@@ -210,7 +221,10 @@ def _decide(world: World, desk: Desk, session: int, queue: Floats) -> None:
     """
     plan, totals, before = desk.plan, desk.totals, max(session - 1, 0)
     totals.new_today = 0
-    size = list_candidates(world, plan, session, queue)
+    totals.waiting = 0
+    if plan.margin == MARGIN_REGULATION and totals.equity < totals.kept:
+        return
+    size = list_candidates(world, desk, session, queue)
     kept = 0
     for n in range(size):
         if totals.open + totals.ordered >= plan.most_positions or totals.new_today >= plan.most_new:
@@ -227,7 +241,9 @@ def _decide(world: World, desk: Desk, session: int, queue: Floats) -> None:
             world.sessions[session],
         )
         clock = close_clock(scene)
-        why = consider(desk, position, scene, clock)
+        why = WHY_LIMIT
+        if not sector_is_full(world, plan, position.symbol):
+            why = consider(desk, position, scene, clock)
         if why != WHY_NONE:
             decline(desk, session, position.symbol, why, 1.0, scene.bar.close)
         elif plan.fill_close == 1:
@@ -278,6 +294,9 @@ def _night(world: World, desk: Desk, session: int, queue: Floats) -> None:
     plan, totals = desk.plan, desk.totals
     later = plan.fill_close == 1
     stock, options = _mark(world, desk, session, plan.marks == 1 and not later)
+    if plan.margin == MARGIN_REGULATION:
+        _require(world, desk)
+        _call(world, desk, session)
     _decide(world, desk, session, queue)
     if later:
         stock, options = _mark(world, desk, session, plan.marks == 1)
@@ -326,6 +345,8 @@ def walk(world: World, start: int, stop: int, first: int, queue: Floats) -> int:
         if session > first:
             if desk.plan.interest == 1:
                 _earn(world, desk, session)
+            if desk.plan.shares < 0.0:
+                _borrow(world, desk, session)
             _morning(world, desk, session)
             _fill_orders(world, desk, session, queue)
             _evening(world, desk, session)

@@ -159,6 +159,7 @@ POSITION = np.dtype(
         ("promised", np.float64),  # cash an order will need
         ("last_close", np.float64),
         ("gain", np.float64),
+        ("score", np.float64),  # by which its symbol's entry is ranked, high first
         ("symbol", np.int32),
         ("status", np.int32),
         ("position", np.int32),
@@ -183,6 +184,8 @@ TOTALS = np.dtype(
         ("reserved", np.float64),
         ("promised", np.float64),
         ("equity", np.float64),
+        ("required", np.float64),  # initial margin of what is held, money; 0 in a cash account
+        ("kept", np.float64),  # maintenance margin of what is held, money
         ("events", np.int64),
         ("terms", np.int64),
         ("marks", np.int64),
@@ -239,6 +242,7 @@ class World(NamedTuple):
     actions: Records  # (T, N)
     sessions: Records  # (T,)
     american: Bytes  # (N,)
+    sectors: Ints  # (N,) codes; NO_SECTOR unknown
     may_enter: Bytes  # (T, N)
     words: Ints  # (T, N) bits of the day's signals, or (1, 1)
     rank: Floats  # (T, N) score, or (1, 1)

@@ -12,6 +12,7 @@ from hedgerow.kernels.layout import (
     OP_GAIN_OF_BEST,
     OP_GAIN_OF_DEBIT,
     OP_HELD,
+    OP_HOLDS_SHARES,
     OP_LEG_LOST,
     OP_LOSS_OF_DEBIT,
     OP_LOSS_OF_WORST,
@@ -85,6 +86,8 @@ def _atom(op: Any, position: Any, legs: Any, count: int, moment: tuple[int, int]
         return (word >> op.arg) & 1
     if op.code == OP_DAYS_LEFT:
         return 1 if days_left(legs, count, op.arg, moment[1]) <= op.value else 0
+    if op.code == OP_HOLDS_SHARES:
+        return 1 if position.shares > 0.0 else 0
     return 1 if _figure(op, position, legs, count, moment) >= op.value - _DUST else 0
 
 

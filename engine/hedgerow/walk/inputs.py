@@ -6,13 +6,14 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from hedgerow.kernels.layout import FRESH, HAS_BAR, PAYS, REPORTS, SPLITS, Bytes, Floats, Records, Small
+from hedgerow.kernels.layout import FRESH, HAS_BAR, PAYS, REPORTS, SPLITS, Bytes, Floats, Ints, Records, Small
 from hedgerow.kernels.rolling import carried
 from hedgerow.kernels.state import ACTION, BAR, SESSION
 from hedgerow.market.expected import expected_dividends
 from hedgerow.market.sessions import Regime, exercise_threshold, tick_rules
 from hedgerow.market.table import Market
 from hedgerow.volatility.surface import Surface
+from hedgerow.walk.sectors import sector_codes
 
 __all__ = ["Tape", "make_tape"]
 
@@ -28,6 +29,7 @@ class Tape:
     actions: Records
     sessions: Records
     american: Bytes
+    sectors: Ints
     surface: Surface
 
 
@@ -115,4 +117,5 @@ def make_tape(market: Market, surface: Surface, regime: Regime = "modern") -> Ta
     """Prepare the walk's records. `regime` is that of `market.sessions`; StudyError is raised for another."""
     american = np.array([kind != "index" for kind in market.kinds], np.uint8)
     actions = _actions(market)
-    return Tape(_bars(market, actions, surface), actions, _sessions(market, regime), american, surface)
+    sessions = _sessions(market, regime)
+    return Tape(_bars(market, actions, surface), actions, sessions, american, sector_codes(market), surface)

@@ -131,6 +131,7 @@ def make_world(tape: Tape, program: Program, terms: Terms, tables: Tables) -> Wo
         actions=tape.actions.view(np.recarray),
         sessions=_sessions(tape, program),
         american=tape.american,
+        sectors=tape.sectors,
         may_enter=program.may_enter,
         words=program.words,
         rank=program.rank,

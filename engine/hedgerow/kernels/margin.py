@@ -1,0 +1,108 @@
+"""What an account on margin must have behind a position, by the regulation's table of strategies.
+
+Requirements are set against equity that counts shares and options at their value, options owed as a debt: so
+an option held asks for its whole value (it lends nothing), an option written for what stands beyond its
+premium. Source: FINRA rule 4210 and Regulation T, from memory; an account on portfolio margin differs.
+"""
+
+from __future__ import annotations
+
+from typing import Any
+
+from hedgerow.kernels.jit import step
+from hedgerow.kernels.layout import CALL, PUT
+
+__all__ = ["requirement"]
+
+LONG_INITIAL, LONG_MAINTENANCE = 0.50, 0.25
+SHORT_INITIAL, SHORT_MAINTENANCE = 0.50, 0.30  # of the price, beyond the proceeds, which are owed
+PROTECTED_SHARE = 0.10  # of the strike of the option that protects
+WRITTEN_SHARE, WRITTEN_LEAST = 0.20, 0.10
+_DUST = 1e-6
+
+
+@step
+def _find(position: Any, count: int, right: int, sign: float) -> int:
+    """The first leg held (sign > 0) or owed of a right, -1 when there is none."""
+    for k in range(count):
+        leg = position.legs[k]
+        if leg.right == right and leg.quantity * sign > 0.0:
+            return k
+    return -1
+
+
+@step
+def _out_of_the_money(leg: Any, spot: float) -> float:
+    """How far a leg is out of the money, per share."""
+    gap = leg.strike - spot if leg.right == CALL else spot - leg.strike
+    return gap if gap > 0.0 else 0.0
+
+
+@step
+def _held_shares(position: Any, count: int, spot: float) -> float:
+    """Maintenance of shares held, per share: less where a put protects them, none on a call they cover."""
+    put, call = _find(position, count, PUT, 1.0), _find(position, count, CALL, -1.0)
+    if put >= 0 and _find(position, count, PUT, -1.0) >= 0:
+        put = -1  # that put stands behind the one written
+    plain = LONG_MAINTENANCE * spot
+    if call >= 0 and put < 0:
+        plain = LONG_MAINTENANCE * min(spot, position.legs[call].strike)
+    if put < 0:
+        return plain
+    held = position.legs[put]
+    protected = PROTECTED_SHARE * held.strike + _out_of_the_money(held, spot)
+    if call < 0:
+        return min(protected, plain)
+    written = position.legs[call]
+    if abs(written.strike - held.strike) < _DUST and written.expiry == held.expiry:
+        return PROTECTED_SHARE * held.strike
+    return min(protected, LONG_MAINTENANCE * written.strike)
+
+
+@step
+def _short_shares(position: Any, count: int, spot: float) -> float:
+    """Maintenance of shares sold short, per share, beyond the proceeds: less where a call protects them."""
+    call, put = _find(position, count, CALL, 1.0), _find(position, count, PUT, -1.0)
+    if call < 0:
+        return SHORT_MAINTENANCE * spot
+    held = position.legs[call]
+    if put >= 0 and abs(position.legs[put].strike - held.strike) < _DUST:
+        return PROTECTED_SHARE * held.strike
+    return min(PROTECTED_SHARE * held.strike + _out_of_the_money(held, spot), SHORT_MAINTENANCE * spot)
+
+
+@step
+def _written(position: Any, count: int, leg: Any, spot: float) -> float:
+    """Requirement beyond its premium of a leg that was written and no shares cover, per share."""
+    alone = max(WRITTEN_SHARE * spot - _out_of_the_money(leg, spot), WRITTEN_LEAST * leg.strike)
+    if leg.right == CALL:
+        alone = max(WRITTEN_SHARE * spot - _out_of_the_money(leg, spot), WRITTEN_LEAST * spot)
+    behind = _find(position, count, leg.right, 1.0)
+    if behind < 0 or position.legs[behind].expiry < leg.expiry:
+        return alone
+    wide = position.legs[behind].strike - leg.strike
+    if leg.right == PUT:
+        wide = -wide
+    return min(alone, max(wide, 0.0))
+
+
+@step
+def requirement(position: Any, count: int, shares: float, spot: float) -> tuple[float, float]:
+    """Initial and maintenance requirement, money, of `shares` and the legs of a position at this price."""
+    size, initial, maintenance = abs(shares), 0.0, 0.0
+    if shares > 0.0:
+        maintenance = size * _held_shares(position, count, spot)
+        initial = max(size * LONG_INITIAL * spot, maintenance)
+    elif shares < 0.0:
+        maintenance = size * _short_shares(position, count, spot)
+        initial = max(size * SHORT_INITIAL * spot, maintenance)
+    more = 0.0
+    for k in range(count):
+        leg = position.legs[k]
+        if leg.quantity > 0.0:
+            more += leg.quantity * leg.mid
+        elif leg.quantity < 0.0:
+            covered = (shares > 0.0 and leg.right == CALL) or (shares < 0.0 and leg.right == PUT)
+            if not covered:
+                more -= leg.quantity * _written(position, count, leg, spot)
+    return initial + more, maintenance + more
