@@ -100,7 +100,7 @@ def test_account_that_reaches_nothing_stays_there() -> None:
     """Compares a day that takes more than everything with nothing ever after, not with a negative account."""
     work = Work("ruin", np.array([-3.0, 0.5]), np.array([1, 1]))
     assert one_year_paths(work, np.array([[1, 0, 1, 0]]), 1.0)[0].tolist() == [1.5, 0.0, 0.0, 0.0]
-    view = forward_view(work, Outlook((1.0,)), QUICK)[0]
+    view = forward_view(work, Outlook((1.0,)), Resampling(2, 20))[0]
     assert (view.median, view.chance_of_loss, view.chance_of_drawdown) == (-1.0, 1.0, 1.0)
 
 

@@ -132,6 +132,23 @@ def test_very_many_rules() -> None:
     assert "rule 3" in superior_to_yardstick(returns, yardstick, names, QUICK).better
 
 
+def test_long_records_are_grouped() -> None:
+    """Compares a record of 1,203 sessions with its sums over five, the oldest three dropped: the same answer.
+
+    The planted rule is found in both, and blocks are stated in sessions.
+    """
+    yardstick, returns = rules(seed=8, planted=PLANTED, days=1203)
+    found = superior_to_yardstick(returns, yardstick, NAMES, QUICK)
+    sums = [one[3:].reshape(240, 5, -1).sum(axis=1) for one in (returns, yardstick[:, None])]
+    again = superior_to_yardstick(sums[0], sums[1][:, 0], NAMES, QUICK)
+    assert found.better == again.better
+    assert "rule 3" in found.better
+    assert found.p_consistent == again.p_consistent
+    assert found.block_sessions == 5 * again.block_sessions
+    best = indistinguishable_from_best(returns, NAMES, QUICK)
+    assert best.p_values == pytest.approx(indistinguishable_from_best(sums[0], NAMES, QUICK).p_values)
+
+
 def test_same_answer_every_time() -> None:
     """Compares a second run with the first, and another seed with another answer."""
     yardstick, returns = rules(seed=7)
