@@ -104,7 +104,7 @@ def _account_cash(log: EventLog) -> None:
     posted = np.cumsum(to_cents(log.events["cash"]))
     until = np.searchsorted(log.events["session"], log.days["session"], side="right")
     total = np.concatenate(([0], posted))[until] / CENTS
-    off = _far(log.days["cash"], total, HALF_CENT)
+    off = ~(np.abs(log.days["cash"] - total) < HALF_CENT)  # both are whole cents, however much there is
     faults.at_day(log, off, "the cash of the account is not the sum of its postings", log.days["cash"], total)
 
 
