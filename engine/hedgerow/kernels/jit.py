@@ -8,18 +8,22 @@ bit for bit the same.
 
 from __future__ import annotations
 
+import functools
 import hashlib
 import os
+import pickle
 import platform
-import shutil
 import tempfile
 from collections.abc import Callable
 from pathlib import Path
-from typing import Any, TypeVar
+from typing import Any, TypeVar, cast
 
-__all__ = ["COMPILED", "cache_folder", "compiled", "forget_cache", "is_compiled", "step"]
+__all__ = ["COMPILED", "cache_folder", "compiled", "is_compiled", "step"]
 
 F = TypeVar("F", bound=Callable[..., Any])
+
+# what reading a file of the cache may raise that was cut short, or written by another library
+BROKEN = (EOFError, pickle.UnpicklingError, ImportError, AttributeError, LookupError, TypeError, ValueError)
 
 COMPILED = os.environ.get("HEDGEROW_UNCOMPILED", "") in ("", "0")
 
@@ -76,10 +80,30 @@ def is_compiled() -> bool:
     return not COMPILED or any(cache_folder().rglob("loop.walk*.nbc"))
 
 
-def forget_cache() -> None:
-    """Empty the folder of compiled code, so that the next call compiles afresh."""
-    shutil.rmtree(cache_folder(), ignore_errors=True)
-    cache_folder().mkdir(parents=True, exist_ok=True)
+@functools.cache
+def _cache_kind() -> Any:
+    """Numba's cache of one function, except that what cannot be read or written is done without."""
+    from numba.core.caching import FunctionCache
+
+    class Cache(FunctionCache):  # type: ignore[misc] # numba ships no type information
+        """Compiles afresh where a file of the cache is broken; keeps nothing where the disk is full."""
+
+        def load_overload(self, sig: Any, target_context: Any) -> Any:
+            """The compiled code for a signature, None where there is none to be read."""
+            try:
+                return super().load_overload(sig, target_context)
+            except BROKEN:
+                self.flush()
+                return None
+
+        def save_overload(self, sig: Any, data: Any) -> None:
+            """Keep compiled code for the next process, if that can be."""
+            try:
+                super().save_overload(sig, data)
+            except OSError:
+                return
+
+    return Cache
 
 
 def _wrap(function: F, **flags: bool) -> F:
@@ -92,10 +116,11 @@ def _wrap(function: F, **flags: bool) -> F:
     before = config.CACHE_DIR
     config.CACHE_DIR = str(cache_folder())
     try:
-        wrapped: F = numba.njit(cache=True, nogil=True, error_model="numpy", **flags)(function)
+        wrapped: Any = numba.njit(nogil=True, error_model="numpy", **flags)(function)
+        wrapped._cache = _cache_kind()(function)
     finally:
         config.CACHE_DIR = before
-    return wrapped
+    return cast(F, wrapped)
 
 
 def compiled(function: F) -> F:

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import datetime as dt
-import pickle
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 
@@ -12,7 +11,6 @@ from numpy.typing import NDArray
 
 from hedgerow.errors import Fault, StudyError
 from hedgerow.events.log import EventLog, LegName, LogMeta
-from hedgerow.kernels.jit import COMPILED, forget_cache
 from hedgerow.kernels.layout import KIND_DEPOSIT, NO_ROW, Costs, Floats, Records
 from hedgerow.kernels.state import COSTS, POSITION, SMILE, TOTALS, World
 from hedgerow.market.sessions import Regime
@@ -25,7 +23,6 @@ from hedgerow.walk.tables import Tables
 __all__ = ["Terms", "Window", "walk_program"]
 
 CHUNK_SESSIONS = 256  # between two looks at the keyboard and the progress bar
-BROKEN_CACHE = (EOFError, pickle.UnpicklingError, ImportError, IndexError, KeyError)
 
 Progress = Callable[[int, int], None]
 
@@ -158,16 +155,10 @@ def _deposit(world: World, session: int, cash: float) -> None:
 
 
 def _step(world: World, begin: int, end: int, first: int, queue: Floats) -> int:
-    """One call of the compiled walk; a broken cache of compiled code is thrown away and compiled afresh."""
+    """One call of the compiled walk, which is loaded, or compiled, by the first."""
     from hedgerow.kernels.loop import walk
 
-    try:
-        return int(walk(world, begin, end, first, queue))
-    except BROKEN_CACHE:
-        if not COMPILED:
-            raise
-        forget_cache()
-        return int(walk(world, begin, end, first, queue))
+    return int(walk(world, begin, end, first, queue))
 
 
 def _meta(market: Market, program: Program, account: Account, variant: str) -> LogMeta:
