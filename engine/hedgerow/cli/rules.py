@@ -87,6 +87,7 @@ def words() -> None:
 
 
 def is_study(tree: Tree) -> bool:
+    """Whether a file's words are those of a study and not of a strategy."""
     plain = tree.plain
     return isinstance(plain, dict) and "legs" not in plain and any(word in plain for word in STUDY_WORDS)
 
