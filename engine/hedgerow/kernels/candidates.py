@@ -20,13 +20,13 @@ def _waits(world: World, plan: Any, session: int, slot: int) -> bool:
     position = world.positions[slot]
     if position.status != FLAT:
         return True
-    if plan.cooling > 0 and position.lost == 1 and session - position.left < plan.cooling:
-        return True
-    if plan.ladder == 1:
-        return False
     first = slot - slot % plan.ladder
     for other in range(first, first + plan.ladder):
         held = world.positions[other]
+        if plan.cooling > 0 and held.lost == 1 and session - held.left < plan.cooling:
+            return True
+        if plan.ladder == 1:
+            return False
         if held.status == ORDERED or (held.status == OPEN and session - held.decided < plan.spacing):
             return True
     return False

@@ -109,7 +109,7 @@ def settle_expired(desk: Desk, position: Any, scene: Scene, close: float, last: 
 @step
 def units(position: Any, plan: Any) -> float:
     """Shares' worth of one contract per 100 shares: the shares held, or the lots where there are none."""
-    return abs(position.shares) if plan.shares != 0.0 else position.lots * LOT_SHARES
+    return abs(position.shares) if plan.shares != 0.0 or position.shares > 0.0 else position.lots * LOT_SHARES
 
 
 @step
