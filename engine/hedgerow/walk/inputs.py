@@ -50,7 +50,9 @@ def _actions(market: Market) -> Records:
     actions["dividend"] = market.dividend + market.special
     actions["special"] = market.special
     actions["split"] = market.split
-    for session, symbol in np.argwhere(np.isnan(market.close) & _acts(actions)):
+    for session, symbol in np.argwhere(np.isnan(market.close) & _acts(actions))[
+        ::-1
+    ]:  # splits meet what came before
         _carry(actions[session:, symbol], ~np.isnan(market.close[session:, symbol]))
     return actions
 
