@@ -48,11 +48,14 @@ CASH_PUT = {
     "enter": MONDAY,
 }
 CASH_PUT["legs"]["put"] = {"sell": "put"} | {k: v for k, v in CASH_PUT["legs"]["put"].items() if k != "buy"}
+WEEK_PUT = CASH_PUT["legs"]["put"] | {"expiry": {"days": 4, "listed": "weekly"}, "roll": {"at": "expiry"}}
+WEEKLY_CASH_PUT = CASH_PUT | {"name": "Weekly cash-secured put", "legs": {"put": WEEK_PUT}}
 TWO_MONTHS = {"name": "Weekly call over a put", "legs": {"call": WEEK, "put": PUT}, "enter": MONDAY}
 STOP = {"stop": {"below_entry": "7%"}}
 
 STILL = [50.0] * 10
 RISING = [50, 50, 50.5, 51, 51.5, 52, 52.5, 53, 53.5, 54]
+CRASHING = [50, 50, 50, 50, 50, 40, 41, 41, 41, 41]
 FALLING = [50, 50, 49.5, 49, 48.5, 48, 47.5, 47, 46.5, 46]
 COSTS = {"half_spread": 0.04, "floor_ticks": 0.5, "use_ticks": 1.0, "contract_fee": 0.65}
 COSTS |= {"assignment_fee": 5.0, "slippage": 0.001, "trade_fee": 1.0}

@@ -7,6 +7,7 @@ from oracle.by_hand import (
     COLLAR,
     COSTS,
     COVERED_CALL,
+    CRASHING,
     DEEP,
     FALLING,
     GAPPING,
@@ -17,6 +18,7 @@ from oracle.by_hand import (
     STOP,
     TOUCHING,
     TWO_MONTHS,
+    WEEKLY_CASH_PUT,
     Case,
     at,
 )
@@ -251,5 +253,84 @@ CASES = (
         5 stop: over, -581.79
         """,
         11418.21,
+    ),
+    Case(
+        "cash-secured put, assigned early when deep in the money",
+        CASH_PUT,
+        {"close": CRASHING, "rate": at(5, 0.1)},
+        """
+        1 entry: 2 lots opened
+        1 entry: put -200 at 0.5727 = +114.53
+        6 interest +0.63
+        6 interest +2.69
+        6 assigned early: put assigned, +0.00
+        6 assigned early: shares +200 at 49.0000 = -9800.00
+        6 expiry: shares -200 at 41.0000 = +8200.00
+        6 expiry: over, -1482.78
+        """,
+        10517.85,
+    ),
+    Case(
+        "weekly cash-secured put, written again across a split",
+        WEEKLY_CASH_PUT,
+        {"close": [50] * 2 + [25] * 8, "split": at(2, 2, 1)},
+        """
+        1 entry: 2 lots opened
+        1 entry: put -200 at 0.1970 = +39.40
+        2 none: split
+        4 expiry: put expired, +0.00
+        4 roll: signalled put
+        5 roll: put -400 at 0.0985 = +39.40
+        8 expiry: put expired, +0.00
+        8 roll: signalled put
+        9 roll: put -400 at 0.1306 = +52.22
+        """,
+        12082.18,
+    ),
+    Case(
+        "weekly cash-secured put, not written again after delivery",
+        WEEKLY_CASH_PUT,
+        {"close": [50, 50, 48, 48, 48, 47, 47, 47, 46, 46]},
+        """
+        1 entry: 2 lots opened
+        1 entry: put -200 at 0.1970 = +39.40
+        4 expiry: put assigned, +0.00
+        4 expiry: shares +200 at 49.0000 = -9800.00
+        4 expiry: shares -200 at 48.0000 = +9600.00
+        4 expiry: over, -160.60
+        """,
+        11839.40,
+    ),
+    Case(
+        "covered call over half the shares, called early",
+        COVERED_CALL | {"legs": {"call": DEEP | {"ratio": 0.5}}},
+        {"close": STILL, "dividend": at(3, 1.0)},
+        """
+        1 entry: 2 lots opened
+        1 entry: shares +200 at 50.0000 = -10000.00
+        1 entry: call -100 at 5.0157 = +501.57
+        3 assigned early: call assigned, +0.00
+        3 assigned early: shares -100 at 45.0000 = +4500.00
+        3 none: dividend +100 at 1.0000 = +100.00
+        3 expiry: shares -100 at 50.0000 = +5000.00
+        3 expiry: over, +101.57
+        """,
+        12101.57,
+    ),
+    Case(
+        "covered call, volatility no longer quoted",
+        COVERED_CALL | {"exit": [{"name": "time", "if": {"held": {"at_least": 5}}}]},
+        {"close": STILL, "implied": [0.3] + [NAN] * 9},
+        """
+        1 entry: 2 lots opened
+        1 entry: shares +200 at 50.0000 = -10000.00
+        1 entry: call -200 at 0.5912 = +118.25
+        6 exit rule: signalled
+        7 exit rule: call +200 at 0.0591 = -11.82
+        7 exit rule: shares -200 at 50.0000 = +10000.00
+        7 exit rule: over, +106.43
+        9 no volatility: declined
+        """,
+        12106.43,
     ),
 )
