@@ -16,7 +16,10 @@ if TYPE_CHECKING:
 __all__ = ["run"]
 
 File = Annotated[
-    Path, typer.Argument(help="A study file, or a strategy file with --market.", show_default=False)
+    Path,
+    typer.Argument(
+        help="A study file, a strategy file with --market, or an earlier run.yaml.", show_default=False
+    ),
 ]
 MarketOption = Annotated[
     Path | None, typer.Option("--market", help="Prices for a strategy file: a folder, CSV or Parquet.")
@@ -47,6 +50,7 @@ def run(
     ledgers = [one.ledger for one in result.results]
     summaries = [one.summary for one in result.results]
     write_run(place, ledgers, summaries, result.record(), replace=replace)
+    _hint(summaries)
     if as_json:
         described = {"folder": str(place), "variants": {one.variant: one.as_dict() for one in summaries}}
         typer.echo(
@@ -67,6 +71,9 @@ def _study(file: Path, market: Path | None) -> Study:
     from hedgerow.textfile import capped
 
     tree = tree_of_file(file)
+    recorded = tree.plain.get("study") if isinstance(tree.plain, dict) and not tree.faults else None
+    if isinstance(recorded, dict) and market is None:
+        return load_study(recorded)  # the run.yaml of an earlier run
     if is_study(tree):
         if market is not None:
             found = "a study file names its own market, and --market was given too"
@@ -77,6 +84,11 @@ def _study(file: Path, market: Path | None) -> Study:
     if market is None:
         found = "this is a strategy file, which does not say on which prices to run"
         raise StudyError.one(str(file), "no-market", found, "a market is needed", "add --market FOLDER")
+    if not market.exists():
+        found = "there is no such file or folder of prices"
+        raise StudyError.one(
+            f"--market {market}", "file-missing", found, "a folder, CSV or Parquet is needed"
+        )
     return study_of_strategy(file, market)
 
 
@@ -123,12 +135,12 @@ def _show(result: StudyResult, place: Path) -> None:
     if warnings:
         typer.echo(f"\nThe data check has {warnings} warnings: hedgerow data check {study.market}")
     typer.echo(f"\nEvery trade and every cent: {place}")
-    _hint(summaries)
 
 
 def _hint(summaries: list[Any]) -> None:
-    """Say what to change where nothing was ever traded."""
+    """Say aside, and first, why a variant never traded."""
     for summary in summaries:
         if summary.positions == 0:
             reasons = ", ".join(f"{word} ({count:,})" for word, count in summary.declined.items())
-            typer.echo(f"{summary.variant}: no position was ever opened. Declined: {reasons or 'nothing'}.")
+            told = f"{summary.variant}: no position was ever opened. Declined: {reasons or 'nothing'}."
+            typer.echo(told, err=True)

@@ -13,7 +13,9 @@ import hashlib
 import os
 import pickle
 import platform
+import shutil
 import tempfile
+import time
 from collections.abc import Callable
 from pathlib import Path
 from typing import Any, TypeVar, cast
@@ -61,7 +63,21 @@ def _choose_folder() -> Path:
     import platformdirs
 
     folder = Path(platformdirs.user_cache_dir("hedgerow")) / "compiled" / _fingerprint()
-    return folder if _writable(folder) else Path(tempfile.mkdtemp(prefix="hedgerow-compiled-"))
+    if not _writable(folder):
+        return Path(tempfile.mkdtemp(prefix="hedgerow-compiled-"))
+    _clear_old(folder)
+    return folder
+
+
+def _clear_old(folder: Path) -> None:
+    """Remove the compiled code of other versions that was not written to for a month."""
+    oldest = time.time() - 30 * 86_400
+    for other in folder.parent.iterdir():
+        try:
+            if other != folder and other.stat().st_mtime < oldest:
+                shutil.rmtree(other, ignore_errors=True)
+        except OSError:
+            continue  # another process was faster
 
 
 _folder: Path | None = None

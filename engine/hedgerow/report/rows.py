@@ -42,6 +42,12 @@ def _money(name: str) -> Callable[[Summary], str]:
     return lambda summary: money_text(getattr(summary, name), places=0)
 
 
+def _seen(summary: Summary) -> str:
+    if math.isnan(summary.odds_observed) and summary.odds_positions:
+        return "many left early"
+    return percent_text(summary.odds_observed)
+
+
 def _interval(summary: Summary) -> str:
     if math.isnan(summary.odds_low):
         return "-"
@@ -90,7 +96,7 @@ SECTIONS: tuple[tuple[str, tuple[Row, ...]], ...] = (
         (
             Row("Ran to their end", "positions", _number("odds_positions", 0)),
             Row("Forecast at entry", "mean odds", _percent("odds_forecast")),
-            Row("Seen (if 9 in 10 ran)", "of those", _percent("odds_observed")),
+            Row("Seen", "of those", _seen),
             Row("Seen, 95% interval", "of those", _interval),
         ),
     ),

@@ -64,7 +64,7 @@ class StudyResult:
         """Everything needed to repeat the run, plain values."""
         market = self.market
         return {
-            "study": self.study.plain(),
+            "study": self.study.plain() | {"market": str(Path(self.study.market).resolve())},
             "data": {
                 "source": market.source,
                 "fingerprint": market.fingerprint,

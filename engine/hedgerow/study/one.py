@@ -18,6 +18,7 @@ from hedgerow.events.log import EventLog
 from hedgerow.evidence import Summary, summarise
 from hedgerow.kernels.layout import Bytes, Costs, Floats
 from hedgerow.ledger import Ledger
+from hedgerow.market import load_market
 from hedgerow.market.sessions import Regime
 from hedgerow.market.table import Market
 from hedgerow.rules.base import loosened
@@ -26,7 +27,7 @@ from hedgerow.rules.load import load_strategy
 from hedgerow.rules.program import Program, compile_strategy
 from hedgerow.rules.schema import SignalValue, Strategy
 from hedgerow.signals.panel import Panel
-from hedgerow.study.words import CostWords
+from hedgerow.study.words import AccountWords, CostWords
 from hedgerow.study.yardstick import buy_and_hold
 from hedgerow.volatility.surface import SurfaceModel, build
 from hedgerow.volatility.words import surface_words
@@ -46,9 +47,20 @@ class Result:
     `events`, `trades`, `legs`, `equity` are frames; `summary` holds every figure with its unit and meaning.
     """
 
-    log: EventLog
+    log: EventLog = field(repr=False)
     rate: Floats = field(repr=False)
     yardstick: Floats | None = field(repr=False)
+
+    def __repr__(self) -> str:
+        """One line: the variant, its span, positions and last equity."""
+        meta, days = self.log.meta, self.log.days
+        span = (
+            f"{meta.dates[days['session'][0]]} to {meta.dates[days['session'][-1]]}"
+            if days.size
+            else "no day"
+        )
+        end = f", equity {days['equity'][-1]:,.2f} {meta.currency}".rstrip() if days.size else ""
+        return f"<Result {meta.variant!r}: {span}, {self.log.terms.size:,} positions{end}>"
 
     @cached_property
     def ledger(self) -> Ledger:
@@ -156,10 +168,10 @@ class Bench:
 
 
 def run(
-    market: Market,
+    market: Market | str | Path,
     strategy: Strategy | Mapping[str, Any] | str | Path,
     *,
-    account: Account | None = None,
+    account: Account | Mapping[str, Any] | None = None,
     pricing: SurfaceModel | Mapping[str, Any] | str | None = None,
     costs: Costs | Mapping[str, Any] | str | None = None,
     first: str | None = None,
@@ -167,15 +179,28 @@ def run(
 ) -> Result:
     """Run one strategy on a market.
 
-    `strategy` is a strategy, its words or its file; `pricing` a surface model, its words or a preset's name;
+    `market` is a market or the place of its prices; `strategy` a strategy, its words or its file; `account` an
+    account or its words; `pricing` a surface model, its words or a preset's name;
     `costs` are costs, their words or "none"; `first` and `last` are ISO dates within the data. Raises
     RulesError, StudyError or ReconcileError.
     """
     rule = strategy if isinstance(strategy, Strategy) else load_strategy(strategy)
     model = pricing if isinstance(pricing, SurfaceModel) else surface_words(pricing)
-    bench = Bench(market, model)
-    window = Window.of(market, first, last)
-    return bench.run(rule, account or Account(), _costs(costs), window, rule.name)
+    prices = market if isinstance(market, Market) else load_market(market)
+    bench = Bench(prices, model)
+    window = Window.of(prices, first, last)
+    return bench.run(rule, _account(account), _costs(costs), window, rule.name)
+
+
+def _account(account: Account | Mapping[str, Any] | None) -> Account:
+    """The account as the walk takes it. Raises StudyError with every fault of its words."""
+    if isinstance(account, Account):
+        return account
+    words = account or {}
+    try:
+        return AccountWords.model_validate(words).account()
+    except ValidationError as error:
+        raise StudyError(tree_of_mapping(words, "account").all_faults(loosened(error), "account")) from None
 
 
 def _costs(costs: Costs | Mapping[str, Any] | str | None) -> Costs:
