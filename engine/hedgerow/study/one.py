@@ -179,8 +179,8 @@ def run(
 ) -> Result:
     """Run one strategy on a market.
 
-    `market` is a market or the place of its prices; `strategy` a strategy, its words or its file; `account` an
-    account or its words; `pricing` a surface model, its words or a preset's name;
+    `market` is a market or the place of its prices; `strategy` a strategy, its words or its file; `account`
+    an account or its words; `pricing` a surface model, its words or a preset's name;
     `costs` are costs, their words or "none"; `first` and `last` are ISO dates within the data. Raises
     RulesError, StudyError or ReconcileError.
     """

@@ -14,8 +14,8 @@ __all__ = ["close_about_mean", "close_to_close", "exponentially_weighted"]
 def close_to_close(bars: Bars, horizon: float) -> Estimate:
     """Mean square of log returns about zero, over `horizon` sessions.
 
-    Over days and weeks the mean return is mostly noise: taking it out adds error to the estimate, so that it is
-    usually assumed to be zero. Source: Figlewski 1997, "Forecasting volatility", Financial Markets,
+    Over days and weeks the mean return is mostly noise: taking it out adds error to the estimate, so that it
+    is usually assumed to be zero. Source: Figlewski 1997, "Forecasting volatility", Financial Markets,
     Institutions & Instruments 6 (from memory).
     """
     counts, mean, squares = trailing_moments(bars.returns, round(horizon))
