@@ -24,7 +24,7 @@ def main() -> None:
     parser.add_argument("--json", action="store_true", help="print one JSON object")
     parser.add_argument("--studies", type=int, default=400)
     parser.add_argument("--days", type=int, default=500)
-    parser.add_argument("--replications", type=int, default=299)
+    parser.add_argument("--replications", type=int, default=799)
     asked = parser.parse_args()
     outcomes = [study(seed, asked.days, asked.replications) for seed in range(asked.studies)]
     figures: dict[str, object] = {"studies": asked.studies, "level": LEVEL}
