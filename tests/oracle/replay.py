@@ -17,6 +17,8 @@ from oracle.moment import Moment, Puts, Sight
 from oracle.view import View
 from oracle.words import Setting
 
+LOAN_SPREAD = 0.015  # a year, over what cash earns: the price of cash that is not there
+
 
 class Replay(Keeper):
     """The walk of one strategy over one market; `window` is the first and last session walked."""
@@ -55,14 +57,16 @@ class Replay(Keeper):
     def interest(self, t: int) -> None:
         """Interest on yesterday's cash, the part set aside for a position under its number."""
         ordinals = self.histories[0].ordinals
-        factor = math.expm1(self.rates[t - 1] * (ordinals[t] - ordinals[t - 1]) / 365.0)
-        if not self.setting.interest or factor == 0.0:
+        years = (ordinals[t] - ordinals[t - 1]) / 365.0
+        factor = math.expm1(self.rates[t - 1] * years)
+        if not self.setting.interest:
             return
         held = [position for _, position in sorted(self.positions.items())]
         free = self.book.cash - sum(position.reserve for position in held)
-        self.dealer.interest(t, None, free * factor)
+        owed = math.expm1((self.rates[t - 1] + LOAN_SPREAD) * years)
+        self.dealer.interest(t, None, free * (factor if free >= 0.0 else owed))
         for position in held:
-            if position.reserve > 0.0:
+            if position.reserve > 0.0 and factor != 0.0:
                 self.dealer.interest(t, position, position.reserve * factor)
 
     def fill_orders(self, t: int) -> None:

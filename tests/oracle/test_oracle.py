@@ -111,7 +111,7 @@ def test_stocks_with_the_replay_s_own_puts() -> None:
 
 
 @settings(max_examples=150, suppress_health_check=[HealthCheck.too_slow])
-@given(market=wild_markets(), rule=rules(solved=False), setting=accounts())
+@given(market=wild_markets(), rule=rules(any_signal=False), setting=accounts())
 def test_random_markets(market: Market, rule: Rule, setting: Setting) -> None:
     """Splits, dividends, holes, reports, ends of history, any rule: every event and equity of the replay."""
     events, days = Replay(market, rule, setting, WalkPuts()).run()

@@ -27,23 +27,22 @@ def expiries(draw: st.DrawFn, least: int = 2, most: int = 45) -> Rule:
 
 
 @st.composite
-def strikes(draw: st.DrawFn, least: float, most: float, solved: bool) -> Rule:
-    """A strike by distance from the money, steps or deviations; when `solved`, by delta or odds too."""
+def strikes(draw: st.DrawFn, least: float, most: float) -> Rule:
+    """A strike by distance from the money, listed steps, deviations, delta or odds."""
     words: list[st.SearchStrategy[Rule]] = [
         st.builds(lambda p: {"from_spot": p}, percents(least, most)),
         st.builds(lambda n: {"steps": n}, st.integers(round(least / 2), round(most / 2))),
         st.builds(lambda n: {"deviations": n / 4}, st.integers(round(least / 2), round(most / 2))),
+        st.builds(lambda n: {"delta": n / 20}, st.integers(2, 13)),
+        st.builds(lambda n: {"odds": f"{5 * n}%"}, st.integers(2, 13)),
     ]
-    if solved:
-        words.append(st.builds(lambda n: {"delta": n / 20}, st.integers(2, 13)))
-        words.append(st.builds(lambda n: {"odds": f"{5 * n}%"}, st.integers(2, 13)))
     return draw(st.one_of(words)) | {"snap": draw(st.sampled_from(("nearest", "up", "down")))}
 
 
 @st.composite
-def sold_calls(draw: st.DrawFn, solved: bool) -> Rule:
+def sold_calls(draw: st.DrawFn) -> Rule:
     """A call written over the shares."""
-    leg: Rule = {"sell": "call", "expiry": draw(expiries()), "strike": draw(strikes(-4, 6, solved))}
+    leg: Rule = {"sell": "call", "expiry": draw(expiries()), "strike": draw(strikes(-4, 6))}
     how = draw(st.integers(0, 5))
     if how < 2:
         leg["roll"] = {"at": "expiry"}
@@ -57,30 +56,30 @@ def sold_calls(draw: st.DrawFn, solved: bool) -> Rule:
 
 
 @st.composite
-def bought_puts(draw: st.DrawFn, with_call: bool, solved: bool) -> Rule:
+def bought_puts(draw: st.DrawFn, with_call: bool) -> Rule:
     """A put under the shares, of the call's expiry or of its own."""
     expiry = {"with": "call"} if with_call else draw(expiries(10, 90))
-    return {"buy": "put", "expiry": expiry, "strike": draw(strikes(-8, 2, solved))}
+    return {"buy": "put", "expiry": expiry, "strike": draw(strikes(-8, 2))}
 
 
 @st.composite
-def structures(draw: st.DrawFn, solved: bool) -> Rule:
+def structures(draw: st.DrawFn) -> Rule:
     """Shares and legs of one of the usual structures."""
     kind = draw(st.sampled_from(("covered", "collar", "married", "months", "cash", "shares")))
     if kind == "covered":
-        return {"legs": {"call": draw(sold_calls(solved))}}
+        return {"legs": {"call": draw(sold_calls())}}
     if kind == "married":
-        return {"legs": {"put": draw(bought_puts(False, solved))}}
+        return {"legs": {"put": draw(bought_puts(False))}}
     if kind == "cash":
-        put = draw(bought_puts(False, solved))
+        put = draw(bought_puts(False))
         put = {"sell": put.pop("buy")} | put
         return {"shares": "none", "legs": {"put": put}}
     if kind == "shares":
         return {}
-    call = draw(sold_calls(solved))
+    call = draw(sold_calls())
     if kind == "collar":
         call = {word: call[word] for word in call if word not in ("roll", "add_when")}
-    return {"legs": {"call": call, "put": draw(bought_puts(kind == "collar", solved))}}
+    return {"legs": {"call": call, "put": draw(bought_puts(kind == "collar"))}}
 
 
 @st.composite
@@ -128,18 +127,15 @@ SIGNALS: tuple[Rule, ...] = (
 
 
 @st.composite
-def rules(draw: st.DrawFn, solved: bool = True) -> Rule:
-    """A whole rule set; one without legs always has an exit.
-
-    With `solved` its strikes may be found by solving, and entries and exits may use any kind of signal.
-    """
-    rule: Rule = {"name": "Random rule"} | draw(structures(solved))
+def rules(draw: st.DrawFn, any_signal: bool = True) -> Rule:
+    """A whole rule set; one without legs always has an exit. Without `any_signal` only means, momentum."""
+    rule: Rule = {"name": "Random rule"} | draw(structures())
     legs = list(rule.get("legs", {}))
     rule["exit"] = draw(exits(legs)) or ([] if legs else [{"name": "time", "if": {"held": {"at_least": 9}}}])
     enter = draw(st.sampled_from(ENTRIES))
-    if solved and draw(st.booleans()):
+    if any_signal and draw(st.booleans()):
         enter = {"when": draw(st.sampled_from(SIGNALS))}
-    if solved and draw(st.integers(0, 3)) == 0:
+    if any_signal and draw(st.integers(0, 3)) == 0:
         rule["exit"].append({"name": "signal", "if": {"not": draw(st.sampled_from(SIGNALS))}})
     if enter:
         rule["enter"] = enter

@@ -45,16 +45,15 @@ def _earn(world: World, desk: Desk, session: int) -> None:
     days = world.sessions[session].ordinal - yesterday.ordinal
     growth = math.expm1(yesterday.rate * days / DAYS_A_YEAR)
     free = totals.cash - totals.reserved
+    factor = growth
     if free < 0.0:  # a loan on margin
-        growth = math.expm1((yesterday.rate + LOAN_SPREAD) * days / DAYS_A_YEAR)
-    if growth == 0.0:
-        return
-    if cents(free * growth) != 0.0:
+        factor = math.expm1((yesterday.rate + LOAN_SPREAD) * days / DAYS_A_YEAR)
+    if cents(free * factor) != 0.0:
         row = write(desk, session, -1, -1, KIND_INTEREST, WHY_NONE)
-        row.price = growth
+        row.price = factor
         row.quantity = free
-        post(desk, row, free * growth)
-    if totals.reserved <= 0.0:
+        post(desk, row, free * factor)
+    if totals.reserved <= 0.0 or growth == 0.0:
         return
     for slot in range(world.positions.shape[0]):
         position = world.positions[slot]
