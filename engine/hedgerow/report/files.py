@@ -47,10 +47,10 @@ def check_place(folder: str | Path, replace: bool = False) -> Path:
     place = Path(folder)
     try:
         if place.exists() and not place.is_dir():
-            raise _refused(place, "a file of this name stands there")
+            raise _refused(place, "a file of this name stands there, and a folder is to be made")
         if place.is_dir() and any(place.iterdir()):
             if not (place / FINISHED).is_file():
-                raise _refused(place, "this folder holds other files")
+                raise _refused(place, "this folder holds other files, which are not those of a run")
             if not replace:
                 raise _refused(place, "a finished run stands there and was not to be replaced")
         _check_parent(place)

@@ -113,8 +113,12 @@ class _Bits:
             if known is truth or np.array_equal(known, truth):
                 return bit
         if len(self.truths) == MOST_SIGNALS:
-            found = f"exits and rolls look at more than {MOST_SIGNALS} different signals"
-            raise RulesError.one("strategy", "signals", found, f"allowed: at most {MOST_SIGNALS}")
+            raise RulesError.one(
+                "strategy",
+                "signals",
+                f"exits and rolls look at more than {MOST_SIGNALS} different signals",
+                f"allowed: at most {MOST_SIGNALS}",
+            )
         self.truths.append(truth)
         return len(self.truths) - 1
 
@@ -282,8 +286,8 @@ def _legs(plan: Records, strategy: Strategy, bits: _Bits) -> None:
         _spec(plan["specs"][number], leg, legs, cycles, bits)
     plan["order"][: len(legs)] = _order(strategy, legs)
     if len(strategy.exit) > MOST_EXITS:
-        found = f"there are {len(strategy.exit)} exit rules"
-        raise RulesError.one("strategy", "exits", found, f"allowed: at most {MOST_EXITS}")
+        allowed = f"allowed: at most {MOST_EXITS}"
+        raise RulesError.one("strategy", "exits", f"there are {len(strategy.exit)} exit rules", allowed)
     for number, rule in enumerate(strategy.exit):
         plan["exit_start"][number], plan["exit_length"][number] = _ops_of(rule.condition, legs, bits)
     plan["moves"] = int(any(leg.roll is not None or leg.add_when is not None for leg in strategy.legs))

@@ -211,7 +211,9 @@ def _costs(costs: Costs | Mapping[str, Any] | str | None) -> Costs:
         return NO_COSTS
     if not isinstance(costs, Mapping | None):
         found = f"the costs are {costs!r}, which is neither `none` nor a mapping of costs"
-        raise StudyError.one("costs", "shape", found, "a preset has no other name")
+        raise StudyError.one(
+            "costs", "shape", found, "allowed: `none`, or a mapping of costs such as {contract_fee: 1}"
+        )
     try:
         return CostWords.model_validate({} if costs is None else costs).costs()
     except ValidationError as error:

@@ -29,9 +29,9 @@ def observed_level(market: Market, source: str, scale: float) -> Floats:
         column = market.close[:, [market.symbols.index(source)]] * scale
         level = np.repeat(column, len(market.symbols), axis=1)
     else:
-        found = f"`{source}` is no symbol of the market"
         allowed = "`none`, `column` (the implied volatility beside the prices) or a symbol"
-        raise StudyError.one(_WHERE, "unknown", found, allowed, nearest_word(source, market.symbols))
+        near = nearest_word(source, market.symbols)
+        raise StudyError.one(_WHERE, "unknown", f"`{source}` is no symbol of the market", allowed, near)
     level = np.where(level > 0.0, level, np.nan)
     if np.isnan(level).all():
         found = f"`{source}` holds no implied volatility above zero"
