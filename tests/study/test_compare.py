@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import threading
+import time
 from dataclasses import replace
 from pathlib import Path
 from typing import Any
@@ -13,6 +15,7 @@ from hedgerow.errors import RulesError, RunError, StudyError
 from hedgerow.study import compare
 from hedgerow.study.compare import run_study
 from hedgerow.study.declare import load_study
+from hedgerow.study.one import Bench, Result
 from walks import RULES, lively_market
 
 MARKET = lively_market(sessions=130)
@@ -70,24 +73,26 @@ def test_progress_counts_every_session_of_every_variant(folder: Path) -> None:
 def test_a_fault_in_one_variant_stops_the_others(folder: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     """What it raises is raised; variants under way give up at their next look."""
     given_up: list[str] = []
-    whole = hr.study.one.Bench.run
+    begun = threading.Event()
+    whole = Bench.run
 
-    def run(
-        self: Any, strategy: Any, account: Any, costs: Any, window: Any, name: str, tell: Any, *rest: Any
-    ) -> Any:
+    def run(self: Bench, *given: Any) -> Result:
+        name, tell = given[4], given[5]
         if name == "three":
+            begun.wait(10)
             raise RulesError.one("strategy", "made-up", "this variant cannot be run at all")
         if name == "six":
+            begun.set()
             try:
                 for _ in range(10_000):
                     tell(0, 1)
-                    __import__("time").sleep(0.001)
+                    time.sleep(0.001)
             except RunError:
                 given_up.append(name)
                 raise
-        return whole(self, strategy, account, costs, window, name, tell, *rest)
+        return whole(self, *given)
 
-    monkeypatch.setattr("hedgerow.study.one.Bench.run", run)
+    monkeypatch.setattr(Bench, "run", run)
     with pytest.raises(RulesError, match="cannot be run at all"):
         run_study(study(folder), market=MARKET, workers=3)
     assert given_up == ["six"]

@@ -18,7 +18,7 @@ MARKET = lively_market()
 
 
 def plainly(market: Market, traded: list[int], window: Window, cash: float) -> list[float]:
-    """The same money in each symbol at its first close in the window; dividends buy more at that day's close."""
+    """The same money in each symbol at its first close; dividends buy more at that day's close."""
     worth = [[0.0] * len(traded) for _ in range(window.start, window.stop)]
     for place, symbol in enumerate(traded):
         shares, last = math.nan, math.nan
@@ -48,9 +48,9 @@ def test_against_a_plain_loop(window: Window, traded: list[int]) -> None:
 
 
 def test_by_hand() -> None:
-    """100 at 50 is two shares; 1 a share paid at 49 buys 2/49 more; two for one; a second symbol comes later.
+    """100 at 50 is two shares; 1 a share paid at 49 buys 2/49 more; then two for one.
 
-    Each symbol gets 100: the first is worth (2 + 2/49) x 2 x 25 at the end, the second waits as cash and stands.
+    Each symbol gets 100: the first ends as (2 + 2/49) x 2 x 25, the second waits as cash.
     """
     close = np.array([[50.0, np.nan], [49.0, np.nan], [24.0, 10.0], [25.0, 11.0]])
     dividend, split = np.zeros(close.shape), np.ones(close.shape)
