@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import datetime as dt
+import math
 from typing import Any
 
 from hedgerow.kernels import layout
@@ -129,6 +130,12 @@ class Keeper:
         years = (leg.expiry - moment.ordinal) / 365.0
         if leg.rule.right == CALL:
             return pricer.call_is_due(leg.strike, years, moment, volatility, drop)
+        if drop > 0.0:
+            ahead = [(history.ordinals[t], drop)]
+        else:
+            ahead = sight.payer.between(moment.ordinal, leg.expiry)
+        if ahead and ahead[0][1] > interest(leg.strike, moment, ahead[0][0]):
+            return False  # the dividend that waiting brings is worth more than interest on the strike
         return pricer.put_is_due(leg.strike, years, moment, volatility)
 
     def shares_gone(self, position: Position, t: int, reason: int) -> None:
@@ -289,6 +296,11 @@ class Keeper:
         event = self.book.write(t, position.symbol, position.number, layout.KIND_CLOSED, reason)
         event["price"] = position.flows / 100.0
         del self.positions[position.symbol]
+
+
+def interest(money: float, moment: Moment, until: int) -> float:
+    """What money earns from a moment to a day."""
+    return money * (math.exp(moment.rate * (until - moment.ordinal) / 365.0) - 1.0)
 
 
 def adjusts_contracts(special: float, before: float, today: int) -> bool:

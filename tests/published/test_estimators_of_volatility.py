@@ -115,7 +115,7 @@ def test_drift_is_in_the_variance_about_zero_alone() -> None:
     """Closed form: a drift of m a session adds m squared about zero, and nothing about the mean.
 
     At 10 % a year and 20 % volatility, m is .03 of a session's deviation: under a thousandth of the variance,
-    against the tenth that taking out the mean of ten sessions costs in error. Hence about zero is the default.
+    against the tenth that taking out the mean of ten sessions costs in error: about zero is the default.
     """
     calm = simulated(0.0)
     for drift, added in ((1.0, 1.0), (0.10 / 0.20 / math.sqrt(252.0), 0.00099)):

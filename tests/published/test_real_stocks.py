@@ -297,6 +297,25 @@ def lattice_put(spot: float, strike: float, years: float, rate: float, volatilit
     return float(value[0])
 
 
+def assert_no_dividend_is_missed(puts: pd.DataFrame) -> None:
+    """Nobody exercises IBM puts in the fortnight before a dividend worth more than interest on the strike.
+
+    Exercised on the ex-date a put brings K - (S - D), now K - S; waiting costs K (e^(r t) - 1). IBM paid each
+    quarter throughout, so that its dividend was expected; a fortnight allows for days that move.
+    """
+    market, seen = stocks(), 0
+    paid = market.dividend[:, column(market, "IBM")]
+    for row in puts[puts["symbol"] == "IBM"].itertuples():
+        session = session_of(market, row.date)
+        ahead = session + np.flatnonzero(paid[session:])[:1]
+        if ahead.size and market.ordinals[ahead[0]] <= row.expiry.toordinal():
+            days = int(market.ordinals[ahead[0]] - market.ordinals[session - 1])
+            waiting = row.strike * math.expm1(market.rate[session - 1] * days / 365.0)
+            assert days > 14 or paid[ahead[0]] <= waiting + 0.005
+            seen += 1
+    assert seen > 50
+
+
 def test_puts_are_assigned_early_only_deep_in_the_money() -> None:
     """Every thirtieth early assignment of puts written 20 % in the money, against a lattice of its own.
 
@@ -306,6 +325,7 @@ def test_puts_are_assigned_early_only_deep_in_the_money() -> None:
     result = hr.run(market, DEEP_PUTS, account=hr.Account(cash=1e6, per_position=0.2))
     rows = early(result, "put")
     assert len(rows) > 300
+    assert_no_dividend_is_missed(rows)
     for row in rows.iloc[::30].itertuples():
         before, symbol = session_of(market, row.date) - 1, column(market, row.symbol)
         spot, rate = market.close[before, symbol], market.rate[before]

@@ -24,7 +24,7 @@ from hedgerow.kernels.layout import (
     WHY_STOP,
     WHY_STOP_GAP,
 )
-from hedgerow.kernels.quote import quote
+from hedgerow.kernels.quote import next_dividend, quote
 from hedgerow.kernels.state import NONE, OPEN, Clock, Desk, Scene
 from hedgerow.kernels.trades import close_position, deliver, post, settle_leg, write
 
@@ -62,17 +62,31 @@ def off_strikes(special: float, close: float, ordinal: int) -> float:
 
 
 @step
-def _due_early(leg: Any, bar: Any, clock: Clock, paid: float, smile: Any) -> bool:
+def _gains_by_waiting(leg: Any, bar: Any, clock: Clock, paid: float, today: int) -> bool:
+    """Whether the next dividend is more than interest on a put's strike, so that its holder waits for it.
+
+    Exercised on the ex-date `due` the put brings K - (S - D), now K - S; waiting costs K (e^(r t) - 1).
+    """
+    due, cash = today, paid
+    if paid <= 0.0:
+        due, cash = next_dividend(bar, clock), bar.pay_cash
+        if due == 0 or due > leg.expiry:
+            return False
+    return cash > leg.strike * math.expm1(clock.rate * (due - clock.ordinal) / DAYS_A_YEAR)
+
+
+@step
+def _due_early(leg: Any, bar: Any, clock: Clock, paid: float, today: int, smile: Any) -> bool:
     """Whether the holder of a leg we wrote exercises it after yesterday's close (`bar`, `clock`).
 
-    `paid` is the dividend a share that a holder of the option does without.
+    `paid` is the dividend a share of `today` that comes off no strike.
     """
     if leg.status == NONE or leg.quantity >= 0.0 or leg.expiry <= clock.ordinal:
         return False
     years = (leg.expiry - clock.ordinal) / DAYS_A_YEAR
     if leg.right == CALL and (paid <= 0.0 or bar.close <= leg.strike):
         return False
-    if leg.right == PUT and bar.close >= leg.strike:
+    if leg.right == PUT and (bar.close >= leg.strike or _gains_by_waiting(leg, bar, clock, paid, today)):
         return False
     _, volatility, _ = quote(leg.right, leg.strike, leg.expiry, bar.close, bar, clock, smile)
     if leg.right == CALL:
@@ -91,7 +105,7 @@ def _assigned_overnight(desk: Desk, position: Any, scene: Scene, action: Any) ->
     kept = off_strikes(action.special, bar.close / action.split, scene.today.ordinal)
     paid = (action.dividend - kept) * action.split
     for k in range(desk.plan.legs):
-        if _due_early(position.legs[k], bar, clock, paid, desk.smile):
+        if _due_early(position.legs[k], bar, clock, paid, scene.today.ordinal, desk.smile):
             settle_leg(desk, position, k, scene.session, WHY_ASSIGNED_EARLY, bar.close, 0.0, True)
     if position.shares == held:
         return
