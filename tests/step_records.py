@@ -122,7 +122,7 @@ def ops(*items: tuple[float, int, int]) -> Any:
 
 def plan(*specs: Any, **values: Any) -> Any:
     """A rule on long shares with every condition of entry free."""
-    usual: dict[str, Any] = {"shares": 1.0, "opening_cash": 100_000.0, "per_position": 0.5, "modern": 1}
+    usual: dict[str, Any] = {"shares": 1.0, "opening_cash": 100_000.0, "per_position": 0.5}
     usual |= dict.fromkeys(("worst_least", "best_least", "odds_least", "ratio_least"), -math.inf)
     usual |= dict.fromkeys(
         ("net_debit_most", "worst_most", "best_most", "odds_most", "spread_most"), math.inf

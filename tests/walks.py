@@ -84,6 +84,13 @@ def lively_market(seed: int = 11, sessions: int = 260, symbols: int = 4) -> Mark
     return replace(made, rate=np.full(sessions, 0.03), reports=tuple(sorted(reports)))
 
 
+def moved_to(market: Market, first: str) -> Market:
+    """The same market on weekdays from another Monday on, without its reports."""
+    dates = np.busday_offset(np.datetime64(first), np.arange(len(market.dates)))
+    shift = (dates - market.dates).astype(np.int64)
+    return replace(market, dates=dates, ordinals=market.ordinals + shift, reports=())
+
+
 def walked(
     market: Market,
     rule: str,

@@ -8,15 +8,18 @@ import sys
 from concurrent.futures import ThreadPoolExecutor
 from pathlib import Path
 
+import numpy as np
 import pytest
 
 import hedgerow.walk.run as run
 import hedgerow.walk.tables as tables
 from hedgerow.errors import StudyError
 from hedgerow.kernels import layout as at
+from hedgerow.rules.load import load_strategy
+from hedgerow.study.one import Bench
 from hedgerow.walk.account import NO_COSTS, Account
 from hedgerow.walk.run import Window
-from walks import RULES, digest, lively_market, same_bits, walked
+from walks import RULES, SURFACE, digest, lively_market, moved_to, same_bits, walked
 
 MARKET = lively_market()
 TESTS = Path(__file__).parents[1]
@@ -118,10 +121,6 @@ def test_progress_is_told() -> None:
 
 def bench_walk(told: list[tuple[int, int]]) -> None:
     """Walk the collar, writing down what progress says."""
-    from hedgerow.rules.load import load_strategy
-    from hedgerow.study.one import Bench
-    from walks import SURFACE
-
     bench = Bench(MARKET, SURFACE)
     program = bench.program(load_strategy({"name": "collar", **RULES["collar"]}))
     terms = run.Terms(Account(), NO_COSTS, Window.of(MARKET))
@@ -188,3 +187,19 @@ def test_windows_that_can_be() -> None:
     assert Window.of(MARKET, "2015-01-06", "2015-01-08") == Window(1, 4)
     assert Window.of(MARKET, "2015-01-10", "2015-01-18") == Window(5, 10)
     assert Window.of(MARKET, last="2015-01-05") == Window(0, 1)
+
+
+def test_old_strikes_end_where_today_s_begin() -> None:
+    """Historically strikes are 5 or 2.50 apart through 2014, and 1 or 0.50 from 2015 (80 FR 1559)."""
+    market = moved_to(lively_market(sessions=120), "2014-10-13")
+    bench = Bench(market, SURFACE, "historical")
+    program = bench.program(load_strategy({"name": "collar", **RULES["collar"]}))
+    terms = run.Terms(Account(per_position=0.2), NO_COSTS, Window.of(market), "historical")
+    events = run.walk_program(market, bench.tape, program, terms).events
+    entries = (events["kind"] == at.KIND_LEG) & (events["reason"] == at.WHY_ENTRY)
+    written = events[entries & (events["symbol"] != 0)]  # the first symbol splits, and its strikes with it
+    dates = market.dates[written["session"]]
+    strikes = written["strike"]
+    assert set(strikes[dates < np.datetime64("2014-12-31")] % 2.5) == {0.0}
+    assert set(strikes[dates > np.datetime64("2015-01-02")] % 0.5) == {0.0}
+    assert set(strikes[dates > np.datetime64("2015-01-02")] % 2.5) != {0.0}

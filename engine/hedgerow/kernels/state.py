@@ -106,7 +106,7 @@ PLAN = np.dtype(
         ("legs", np.int32),
         ("exits", np.int32),
         ("marks", np.int32),  # 1: one mark a position and close is kept
-        ("modern", np.int32),  # listing regime
+        ("modern_from", np.int32),  # ordinal from which today's strike spacing is listed; 0 always
         ("ladder", np.int32),  # positions a symbol at once
         ("spacing", np.int32),  # sessions between entries of one symbol
         ("cooling", np.int32),  # sessions without entry after a losing position

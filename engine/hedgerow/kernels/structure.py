@@ -71,7 +71,7 @@ def find_strike(
         leg, described = position.legs[k], desk.plan.specs[k]
         if k != number and leg.status != NONE and leg.quantity != 0.0:
             income -= described.side * described.ratio * leg_price(leg, described.side, clock, desk.costs)
-    pace = grid_step(spot, spec.cycle, desk.plan.modern)
+    pace = grid_step(spot, spec.cycle, 1 if clock.ordinal >= desk.plan.modern_from else 0)
     market = (spot, bar, clock, desk.smile, desk.costs)
     return choose_strike(spec, expiry, pace, market, (reference, money, income))
 

@@ -13,7 +13,7 @@ from hedgerow.errors import Fault, StudyError
 from hedgerow.events.log import EventLog, LegName, LogMeta
 from hedgerow.kernels.layout import KIND_DEPOSIT, NO_ROW, Costs, Floats, Records
 from hedgerow.kernels.state import COSTS, POSITION, SMILE, TOTALS, World
-from hedgerow.market.sessions import Regime
+from hedgerow.market.sessions import CLOSE_STRIKES_FROM, Regime
 from hedgerow.market.table import Market
 from hedgerow.rules.program import Program
 from hedgerow.walk.account import MARGINS, Account
@@ -89,7 +89,7 @@ def _plan(program: Program, account: Account, regime: str, marks: bool) -> Recor
     plan["most_positions"], plan["most_new"] = account.most_positions, account.most_new_a_day
     plan["most_sector"], plan["margin"] = account.most_per_sector, MARGINS[account.margin]
     plan["interest"], plan["marks"] = int(account.interest), int(marks)
-    plan["modern"] = int(regime == "modern")
+    plan["modern_from"] = 0 if regime == "modern" else CLOSE_STRIKES_FROM
     return plans
 
 

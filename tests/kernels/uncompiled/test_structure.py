@@ -70,6 +70,15 @@ def test_a_collar_is_chosen() -> None:
     assert second.mid > 0.5
 
 
+@pytest.mark.parametrize(("since", "strikes"), [(TODAY, (102.0, 96.0)), (TODAY + 1, (105.0, 95.0))])
+def test_strikes_were_wider_apart_once(since: int, strikes: tuple[float, float]) -> None:
+    """Before the day from which today's spacing holds they are five apart at this price."""
+    rule = plan(spec(**CALL_UP), spec(**PUT_DOWN), modern_from=since)
+    why, held = chosen(rule, EXPIRY, EXPIRY)
+    assert why == at.WHY_NONE
+    assert (held.legs[0].strike, held.legs[1].strike) == strikes
+
+
 def test_no_listed_expiry_and_no_listed_strike() -> None:
     """A leg whose expiry is not listed that day, and one three times above the price."""
     assert chosen(plan(spec(**CALL_UP)), 0)[0] == at.WHY_NO_EXPIRY
