@@ -112,7 +112,7 @@ class Dealer:
     def expire(self, position: Position, row: int, t: int, close: float, history: past.History) -> bool:
         """Settle a leg at its expiry; return whether shares changed hands."""
         worth = in_the_money(position.legs[row], close)
-        if worth <= 0.0 or worth < listed.exercise_threshold(history.ordinals[t]) - 1e-9:
+        if worth <= 0.0 or worth < listed.exercise_threshold() - 1e-9:
             self.pay_out(position, row, t, layout.WHY_EXPIRY, 0.0)
             return False
         if history.american:

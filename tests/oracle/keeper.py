@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import dataclasses
 import datetime as dt
 import math
 from typing import Any
@@ -62,7 +63,9 @@ class Keeper:
         """What the open of a session knows: yesterday's close, and a price."""
         history = self.histories[symbol]
         moment = Moment(history.ordinals[t], price, self.rates[t - 1], OPEN_HOURS)
-        return self.sights[symbol][t - 1], moment
+        sight = self.sights[symbol][t - 1]
+        payer = dataclasses.replace(sight.payer, amount=sight.payer.amount / history.split[t])
+        return dataclasses.replace(sight, payer=payer), moment
 
     def at_close(self, symbol: int, t: int) -> tuple[Sight, Moment]:
         """What the close of a session knows."""

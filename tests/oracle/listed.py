@@ -68,11 +68,9 @@ def choose_expiry(cycle: str, days: int, at_least: bool, today: int) -> int:
     return best if abs(best - wish) <= max(4.0, days / 2.0) else 0
 
 
-def exercise_threshold(today: int) -> float:
-    """Least amount in the money, a share, that is exercised by exception (OCC rule 805, amended)."""
-    if today < dt.date(2006, 10, 1).toordinal():
-        return 0.25
-    return 0.05 if today < dt.date(2008, 6, 1).toordinal() else 0.01
+def exercise_threshold() -> float:
+    """Least amount in the money, a share, that is exercised by exception today (OCC rule 805)."""
+    return 0.01
 
 
 def on_grid(wanted: float, step: float, snap: str) -> float:

@@ -22,14 +22,15 @@ def open_clock(scene: Scene) -> Clock:
     """The open of today: yesterday's rate, six and a half hours still to go."""
     today = scene.today
     rate = scene.yesterday.rate
-    return Clock(today.ordinal, OPEN_TO_CLOSE_DAYS, rate, scene.american, today.low_tick, today.high_tick)
+    ticks, split = (today.low_tick, today.high_tick), scene.bar.split
+    return Clock(today.ordinal, OPEN_TO_CLOSE_DAYS, rate, scene.american, ticks[0], ticks[1], split)
 
 
 @step
 def close_clock(scene: Scene) -> Clock:
     """The close of today."""
     today = scene.today
-    return Clock(today.ordinal, 0.0, today.rate, scene.american, today.low_tick, today.high_tick)
+    return Clock(today.ordinal, 0.0, today.rate, scene.american, today.low_tick, today.high_tick, 1.0)
 
 
 @step

@@ -27,7 +27,7 @@ def escrow(bar: Any, expiry: int, clock: Clock) -> float:
     held = 0.0
     while due <= expiry:
         if due > clock.ordinal:
-            held += bar.pay_cash * math.exp(-clock.rate * (due - clock.ordinal) / DAYS_A_YEAR)
+            held += bar.pay_cash / clock.split * math.exp(-clock.rate * (due - clock.ordinal) / DAYS_A_YEAR)
         if bar.pay_gap <= 0:
             break
         due += bar.pay_gap

@@ -21,6 +21,7 @@ BAR = np.dtype(
         ("close", np.float64),
         ("level", np.float64),  # volatility last known; NaN never yet
         ("anchor", np.float64),  # volatility in the long run
+        ("split", np.float64),  # new shares for one old, before this session's open
         ("pay_cash", np.float64),  # the next dividend a trader would expect, per share
         ("pay_ordinal", np.int32),  # when; 0 none
         ("pay_gap", np.int32),  # calendar days between dividends; 0 only once
@@ -209,6 +210,7 @@ class Clock(NamedTuple):
     american: int  # 1: exercise is possible before expiry
     low_tick: float
     high_tick: float
+    split: float = 1.0  # new shares for one old since the close whose bar is looked at
 
 
 class Scene(NamedTuple):

@@ -192,13 +192,16 @@ def choose_expiries(
     return np.where(np.abs(chosen - target) <= tolerance, chosen, 0)
 
 
-def exercise_threshold(ordinals: ArrayLike) -> Floats:
+def exercise_threshold(ordinals: ArrayLike, regime: Regime = "historical") -> Floats:
     """How far in the money, per share, an option must end to be exercised by exception; shape (T,).
 
-    0.25 before October 2006, 0.05 to May 2008, 0.01 from June 2008 (OCC rule 805 and its amendments).
+    0.25 before October 2006, 0.05 to May 2008, 0.01 from June 2008 (OCC rule 805 and its amendments); in the
+    modern regime 0.01 throughout. Raises StudyError for an unknown regime.
     """
+    check_regime(regime)
     days = np.asarray(ordinals, dtype=np.int64)
-    return np.where(days >= CENT_EXERCISE_FROM, 0.01, np.where(days >= NICKEL_EXERCISE_FROM, 0.05, 0.25))
+    cent = (days >= CENT_EXERCISE_FROM) | (regime == "modern")
+    return np.where(cent, 0.01, np.where(days >= NICKEL_EXERCISE_FROM, 0.05, 0.25))
 
 
 def tick_rules(ordinals: ArrayLike, regime: Regime = "modern") -> tuple[Floats, Floats]:

@@ -93,6 +93,7 @@ def _bars(market: Market, actions: Records, surface: Surface) -> Records:
     bars["low"] = np.fmin(market.low, bars["open"])
     for name, known in (("level", surface.level), ("anchor", surface.anchor)):
         bars[name] = carried(np.array(known, order="C"), len(known))
+    bars["split"] = market.split
     expected = expected_dividends(market)
     bars["pay_cash"], bars["pay_ordinal"], bars["pay_gap"] = expected
     bars["report"] = next_reports(market)
@@ -111,7 +112,7 @@ def _sessions(market: Market, regime: Regime) -> Records:
     sessions["ordinal"] = market.ordinals
     sessions["rate"] = market.rate
     sessions["low_tick"], sessions["high_tick"] = tick_rules(market.ordinals, regime)
-    sessions["exercise_threshold"] = exercise_threshold(market.ordinals)
+    sessions["exercise_threshold"] = exercise_threshold(market.ordinals, regime)
     return sessions
 
 
