@@ -17,7 +17,7 @@ from hedgerow.kernels.layout import (
     WHY_EXIT_RULE,
     WHY_ROLL,
 )
-from hedgerow.kernels.state import LIVE, MOVING, NONE, OPEN, WANTED, Clock, Desk, Scene
+from hedgerow.kernels.state import ADDING, LIVE, MOVING, NONE, OPEN, WANTED, Clock, Desk, Scene
 from hedgerow.kernels.structure import find_strike, leg_price, price_leg
 from hedgerow.kernels.trades import write
 from hedgerow.kernels.triggers import holds
@@ -144,9 +144,8 @@ def order_legs(desk: Desk, position: Any, scene: Scene, clock: Clock, word: int)
                 continue
             leg.status = MOVING
         else:
-            leg.status = WANTED
-        added = spec.add_length > 0 and leg.status == WANTED and not again
-        _note_order(desk, position, scene, k, WHY_ADDED if added else WHY_ROLL)
+            leg.status = WANTED if again else ADDING
+        _note_order(desk, position, scene, k, WHY_ADDED if leg.status == ADDING else WHY_ROLL)
 
 
 @step

@@ -8,7 +8,7 @@ from hedgerow.kernels.entry import take_stock
 from hedgerow.kernels.jit import step
 from hedgerow.kernels.layout import LOT_SHARES, MARGIN_CASH, WHY_ADDED, WHY_EXPIRY, WHY_LEFT_OVER, WHY_ROLL
 from hedgerow.kernels.payoff import first_expiry, measure
-from hedgerow.kernels.state import MOVING, NONE, WANTED, Clock, Desk, Scene
+from hedgerow.kernels.state import ADDING, MOVING, NONE, WANTED, Clock, Desk, Scene
 from hedgerow.kernels.structure import price_leg
 from hedgerow.kernels.trades import close_position, settle_leg, trade_leg, trade_shares
 
@@ -93,7 +93,7 @@ def settle_expired(desk: Desk, position: Any, scene: Scene, close: float, last: 
             if plan.specs[k].roll_at_expiry == 1 and position.shares == before:  # nothing was delivered
                 leg.status = WANTED
                 leg.wanted_strike = 0.0
-        again += 1 if leg.status == WANTED else 0
+        again += 1 if leg.status in (WANTED, ADDING) else 0
         live += 1 if leg.quantity != 0.0 else 0
     take_stock(position, plan.legs)
     if held != 0.0 and position.shares == 0.0:
@@ -118,9 +118,9 @@ def move_legs(desk: Desk, position: Any, session: int, spot: float, bar: Any, cl
     """Fill the leg orders of a position: buy back what is rolled, then write or buy what is wanted."""
     for k in range(desk.plan.legs):
         leg, spec = position.legs[k], desk.plan.specs[k]
-        if leg.wanted_strike <= 0.0 or (leg.status != WANTED and leg.status != MOVING):
+        if leg.wanted_strike <= 0.0 or leg.status not in (WANTED, ADDING, MOVING):
             continue
-        reason = WHY_ADDED if spec.add_length > 0 and leg.status == WANTED else WHY_ROLL
+        reason = WHY_ADDED if leg.status == ADDING else WHY_ROLL
         if leg.quantity != 0.0:
             price_leg(leg, spot, bar, clock, desk.smile)
             trade_leg(desk, position, k, session, reason, -leg.quantity, clock, spot)

@@ -126,7 +126,8 @@ PLAN = np.dtype(
 )
 
 FLAT, ORDERED, OPEN = 0, 1, 2  # a slot's position
-NONE, LIVE, WANTED, LEAVING, MOVING = 0, 1, 2, 3, 4  # a slot's leg: none, held, to open, to close, to roll
+# a slot's leg: none, held, to open (with the position, or again after expiry), to add for once, to roll
+NONE, LIVE, WANTED, ADDING, MOVING = 0, 1, 2, 3, 4
 
 LEG_STATE = np.dtype(
     [
