@@ -132,7 +132,7 @@ def order_legs(desk: Desk, position: Any, scene: Scene, clock: Clock, word: int)
     """Choose the legs to be rolled, written again after expiry, or added; they fill with the next orders."""
     for place in range(desk.plan.legs):
         k = desk.plan.order[place]
-        leg, spec = position.legs[k], desk.plan.specs[k]
+        leg = position.legs[k]
         again = leg.status == WANTED and leg.quantity == 0.0
         if not again and not _wants_move(desk, position, scene, k, word):
             continue
