@@ -100,7 +100,7 @@ def _due_early(leg: Any, bar: Any, clock: Clock, paid: float, today: int, smile:
 def _assigned_overnight(desk: Desk, position: Any, scene: Scene, action: Any) -> None:
     """Hand over shares for every leg that is exercised against us before the open."""
     yesterday, bar = scene.yesterday, scene.before
-    clock = Clock(yesterday.ordinal, 0.0, yesterday.rate, 1, 0.0, 0.0, 1.0)
+    clock = Clock(yesterday.ordinal, 0.0, yesterday.rate, scene.american, 0.0, 0.0, 1.0)
     held = position.shares
     kept = off_strikes(action.special, bar.close / action.split, scene.today.ordinal)
     paid = (action.dividend - kept) * action.split

@@ -122,20 +122,28 @@ def _cache_kind() -> Any:
     return Cache
 
 
-def _wrap(function: F, **flags: bool) -> F:
-    """Compile `function` on first call; keep it as it is when compiling is switched off."""
+def _wrap(function: F, *, alone: bool, **flags: bool) -> F:
+    """Compile `function` on first call; keep it as it is when compiling is switched off.
+
+    What stands `alone` may be called from Python and is kept for the next process; the rest is a part of it.
+    """
     if not COMPILED:
         return function
     import numba
     from numba.core import config
 
-    before = config.CACHE_DIR
-    config.CACHE_DIR = str(cache_folder())
-    try:
-        wrapped: Any = numba.njit(nogil=True, error_model="numpy", **flags)(function)
-        wrapped._cache = _cache_kind()(function)
-    finally:
-        config.CACHE_DIR = before
+    from hedgerow.kernels.joining import as_part, for_whole_numbers
+
+    wrapped: Any = numba.njit(nogil=True, error_model="numpy", no_cfunc_wrapper=True, **flags)(function)
+    as_part(wrapped, alone)
+    for_whole_numbers(wrapped)
+    if alone:
+        before = config.CACHE_DIR
+        config.CACHE_DIR = str(cache_folder())
+        try:
+            wrapped._cache = _cache_kind()(function)
+        finally:
+            config.CACHE_DIR = before
     return cast(F, wrapped)
 
 
@@ -144,7 +152,9 @@ def compiled(function: F) -> F:
 
     No fast-math, so that compiled and uncompiled runs agree to the bit; the interpreter lock is released.
     """
-    return _wrap(function, _nrt=True)  # said aloud: a caller's flags would be taken over otherwise
+    return _wrap(
+        function, alone=True, _nrt=True
+    )  # said aloud: a caller's flags would be taken over otherwise
 
 
 def step(function: F) -> F:
@@ -152,4 +162,4 @@ def step(function: F) -> F:
 
     Counting references to the walk's arrays at every call made the walk thirty times slower.
     """
-    return _wrap(function, _nrt=False, no_cpython_wrapper=True, no_cfunc_wrapper=True)
+    return _wrap(function, alone=False, _nrt=False, no_cpython_wrapper=True)
