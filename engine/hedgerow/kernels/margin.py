@@ -39,6 +39,12 @@ def _out_of_the_money(leg: Any, spot: float) -> float:
 
 
 @step
+def _same_terms(one: Any, other: Any) -> bool:
+    """Whether two legs have one strike and one expiry."""
+    return abs(one.strike - other.strike) < _DUST and one.expiry == other.expiry
+
+
+@step
 def _held_shares(position: Any, count: int, spot: float) -> float:
     """Maintenance of shares held, per share: less where a put protects them, none on a call they cover."""
     put, call = _find(position, count, PUT, 1.0), _find(position, count, CALL, -1.0)
@@ -54,7 +60,7 @@ def _held_shares(position: Any, count: int, spot: float) -> float:
     if call < 0:
         return min(protected, plain)
     written = position.legs[call]
-    if abs(written.strike - held.strike) < _DUST and written.expiry == held.expiry:
+    if _same_terms(written, held):
         return PROTECTED_SHARE * held.strike
     return min(protected, LONG_MAINTENANCE * written.strike)
 
@@ -66,24 +72,27 @@ def _short_shares(position: Any, count: int, spot: float) -> float:
     if call < 0:
         return SHORT_MAINTENANCE * spot
     held = position.legs[call]
-    if put >= 0 and abs(position.legs[put].strike - held.strike) < _DUST:
+    if put >= 0 and _same_terms(position.legs[put], held):
         return PROTECTED_SHARE * held.strike
     return min(PROTECTED_SHARE * held.strike + _out_of_the_money(held, spot), SHORT_MAINTENANCE * spot)
 
 
 @step
 def _written(position: Any, count: int, leg: Any, spot: float) -> float:
-    """Requirement beyond its premium of a leg that was written and no shares cover, per share."""
-    alone = max(WRITTEN_SHARE * spot - _out_of_the_money(leg, spot), WRITTEN_LEAST * leg.strike)
-    if leg.right == CALL:
-        alone = max(WRITTEN_SHARE * spot - _out_of_the_money(leg, spot), WRITTEN_LEAST * spot)
+    """Requirement beyond its premium of a leg that was written and no shares cover, per share.
+
+    With a bought leg behind it, of the same right and at least its life, the whole requirement is no more
+    than the distance of the strikes, and the premium counts towards that.
+    """
+    least = WRITTEN_LEAST * (spot if leg.right == CALL else leg.strike)
+    alone = max(WRITTEN_SHARE * spot - _out_of_the_money(leg, spot), least)
     behind = _find(position, count, leg.right, 1.0)
     if behind < 0 or position.legs[behind].expiry < leg.expiry:
         return alone
-    wide = position.legs[behind].strike - leg.strike
-    if leg.right == PUT:
-        wide = -wide
-    return min(alone, max(wide, 0.0))
+    held = position.legs[behind]
+    wide = held.strike - leg.strike if leg.right == CALL else leg.strike - held.strike
+    share = min(1.0, held.quantity / abs(leg.quantity))
+    return share * min(alone, max(wide, 0.0) - leg.mid) + (1.0 - share) * alone
 
 
 @step
@@ -103,6 +112,7 @@ def requirement(position: Any, count: int, shares: float, spot: float) -> tuple[
             more += leg.quantity * leg.mid
         elif leg.quantity < 0.0:
             covered = (shares > 0.0 and leg.right == CALL) or (shares < 0.0 and leg.right == PUT)
-            if not covered:
-                more -= leg.quantity * _written(position, count, leg, spot)
+            bare = -leg.quantity - (size if covered else 0.0)
+            if bare > 0.0:
+                more += bare * _written(position, count, leg, spot)
     return initial + more, maintenance + more

@@ -84,6 +84,15 @@ def test_a_share_of_what_has_no_bound_is_never_reached() -> None:
     assert not asked([(0.0, at.OP_GAIN_OF_DEBIT, -1)], position(gain=5.0, stake=0.0))
 
 
+def test_shares_that_are_held() -> None:
+    """Only shares of one's own count: none before an assignment, none sold short."""
+    for shares, holds_some in ((0.0, False), (-100.0, False), (100.0, True)):
+        assert asked([(1.0, at.OP_HOLDS_SHARES, -1)], position(shares=shares)) is holds_some
+    both = [(1.0, at.OP_HOLDS_SHARES, -1), (0.05, at.OP_STOCK_DOWN, -1), (0.0, at.OP_AND, -1)]
+    assert asked(both, position(shares=100.0, last_close=94.0, stock_price=100.0))
+    assert not asked(both, position(shares=0.0, last_close=94.0, stock_price=100.0))
+
+
 def test_sessions_held() -> None:
     """Session 17 less session 12 is five."""
     held = position(entered=12)
