@@ -47,6 +47,7 @@ MARKETS: dict[str, tuple[tuple[float, ...], dict[int, float]]] = {
     "gapping": ((50.0, 50.0, 50.0, 50.0, 44.0, 44.0, 43.5, 43.0, 43.0, 43.0), {4: 44.25}),
     "leaping": ((50.0, 50.0, 50.0, 50.0, 56.0, 56.0, 56.5, 57.0, 57.0, 57.0), {4: 56.0}),
     "recovering": ((50.0, 50.0, 48.0, 46.0, 46.0, 46.0, 47.5, 48.0, 52.0, 52.0), {}),
+    "collapsing": ((50.0, 50.0, 50.0, 50.0, 26.0, 25.0, 25.0, 25.0, 25.0, 25.0), {4: 26.0}),
     "split in two": ((50.0,) * 5 + (25.0,) * 5, {5: 25.0}),
 }
 
@@ -91,6 +92,7 @@ class Case:
     changes: dict[str, Any] = field(default_factory=dict)
     costs: dict[str, float] = field(default_factory=dict)
     cash: float = 12_000.0
+    margin: str = "cash"
 
     @cached_property
     def dates(self) -> list[date]:
@@ -130,7 +132,7 @@ class Case:
     def walked(self) -> EventLog:
         """What the walk makes of it."""
         costs = Costs(**{name: self.costs.get(name, 0.0) for name in Costs._fields})
-        account = hr.Account(cash=self.cash, per_position=1.0)
+        account = hr.Account(cash=self.cash, per_position=1.0, margin=self.margin)
         return hr.run(self.market, self.strategy, account=account, pricing=PRICING, costs=costs).log
 
     def reckoner(self) -> Reckoner:

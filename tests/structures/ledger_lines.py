@@ -10,6 +10,7 @@ A line is `session moment reason what ...`. The moment is `night` (yesterday's c
     leaving              an exit ordered                   dividend 0.50  a share
     borrow               of the shares sold short          split 2        new shares for one old
     over -581.75         the position's whole result       declined 1     an entry not made
+    interest             on a loan, 1.5 % a year           called 2600    for that much maintenance
 
 A line is about the position opened last, or about the one named by `#0`, `#1` at the end. Premiums are
 those of Black and Scholes without interest and dividends (Hull, Options, Futures and Other Derivatives) at a
@@ -126,6 +127,8 @@ class Reckoner:
         if what in ("ordered", "declined"):
             kind = at.KIND_SIGNALLED if what == "ordered" else at.KIND_DECLINED
             return {"kind": kind, "position": -1, "quantity": float(rest[0])}
+        if what in ("interest", "called"):
+            return self._owed(what, rest, session)
         if what == "opened":
             self.positions[number] = Held()
             return {"kind": at.KIND_OPENED, "quantity": float(rest[0])}
@@ -142,6 +145,18 @@ class Reckoner:
         if what in ("shares", "dividend", "borrow"):
             return self._shares(held, what, rest, session, moment)
         return self._leg(held, what, rest, session, moment)
+
+    def _owed(self, what: str, rest: list[str], session: int) -> dict[str, Any]:
+        """Interest on cash that is owed, or by how much equity falls short of the maintenance written."""
+        if what == "called":
+            return {
+                "kind": at.KIND_MARGIN_CALL,
+                "position": -1,
+                "price": float(rest[0]) - self.equity(session),
+            }
+        growth = math.exp(0.015 * (self.days[session] - self.days[session - 1]).days / 365.0) - 1.0
+        row = {"kind": at.KIND_INTEREST, "position": -1, "quantity": self.cash, "price": growth}
+        return row | {"cash": cents(self.cash * growth)}
 
     def _split(self, held: Held, ratio: float) -> dict[str, Any]:
         """New shares for old, and strikes that much lower."""

@@ -13,11 +13,11 @@ from pathlib import Path
 import pytest
 
 from hedgerow.events.log import EventLog
-from structures import collars, covered, kept, locked, protected
+from structures import collars, covered, kept, locked, on_margin, protected
 from structures.hand_case import STRATEGIES, Case, events_of
 from structures.ledger_lines import Reckoner
 
-TABLES = (collars, covered, kept, locked, protected)
+TABLES = (collars, covered, kept, locked, on_margin, protected)
 STRUCTURES = [structure for table in TABLES for structure in table.STRUCTURES]
 CASES = [case for structure in STRUCTURES for case in structure.cases()]
 NEITHER = {"cash", "index-buywrite"}  # no position at all; the covered call on another market

@@ -95,13 +95,21 @@ def _require(world: World, desk: Desk) -> None:
 
 @step
 def _call(world: World, desk: Desk, session: int) -> None:
-    """A maintenance call: the newest positions are ordered closed, until those left are covered by equity."""
+    """A maintenance call: the newest positions are ordered closed, until those left are covered by equity.
+
+    What is to be closed anyway counts first. An account that owes more than it has and holds nothing is in
+    debt; nobody calls it.
+    """
     totals = desk.totals
     short = totals.kept - totals.equity
-    if short <= 0.0:
+    if short <= 0.0 or totals.open == 0:
         return
     row = write(desk, session, -1, -1, KIND_MARGIN_CALL, WHY_MARGIN)
     row.price = short
+    for slot in range(world.positions.shape[0]):
+        position = world.positions[slot]
+        if position.status == OPEN and position.closing != 0:
+            short -= requirement(position, desk.plan.legs, position.shares, position.last_close)[1]
     while short > 0.0:
         newest = -1
         for slot in range(world.positions.shape[0]):
