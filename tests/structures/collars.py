@@ -6,7 +6,6 @@ from structures.hand_case import Structure
 
 FORTNIGHT = "01-08 01-09 01-10 01-11 01-12 01-16 01-17 01-18 01-19 01-22"
 QUARTER = "01-19 01-22 02-02 02-16 03-01 03-15 03-28 04-05 04-12 04-19"
-QUARTER_DAYS = "03-08 03-15 03-18 04-05 04-19 05-03 05-17 06-07 06-20 06-21"
 
 STRUCTURES = (
     Structure(
@@ -279,65 +278,36 @@ STRUCTURES = (
         {"days": QUARTER},
     ),
     Structure(
-        "put-spread collar",
-        "put-spread-collar",
+        "reverse collar, called before a dividend",
+        "collar-reverse",
         """
-        1 close entry opened 2
-        1 close entry shares +200
-        1 close entry put +200 47 06-21
-        1 close entry low-put -200 40 06-21
-        1 close entry call -200 53 06-21
+        0 close entry ordered 2
+        1 open entry opened 2
+        1 open entry shares +200
+        1 open entry call -200 49 02-16
+        1 open entry put +200 52 02-16
+        8 night assigned-early call assigned
+        8 night assigned-early shares -200 49
+        8 open left-over put -200 52 02-16
         """,
         {
             "still": """
-            9 close expiry put expired
-            9 close expiry low-put expired
-            9 close expiry call expired
-            9 close expiry shares -200
-            9 close expiry over +81.53
-            9 close entry opened 2
-            9 close entry shares +200
-            9 close entry put +200 47 09-20
-            9 close entry low-put -200 40 09-20
-            9 close entry call -200 53 09-20
+            8 open left-over over +66.77
+            8 close entry ordered 2
+            9 open entry opened 2
+            9 open entry shares +200
+            9 open entry call -200 49 03-15
+            9 open entry put +200 52 03-15
             """,
             "rising": """
-            9 close expiry put expired
-            9 close expiry low-put expired
-            9 close expiry call assigned
-            9 close expiry shares -200 53
-            9 close expiry over +681.53
-            9 close entry opened 2
-            9 close entry shares +200
-            9 close entry put +200 51 09-20
-            9 close entry low-put -200 43 09-20
-            9 close entry call -200 57 09-20
-            """,
-            "falling": """
-            9 close expiry put exercised
-            9 close expiry shares -200 47
-            9 close expiry low-put expired
-            9 close expiry call expired
-            9 close expiry over -518.47
-            9 close entry opened 2
-            9 close entry shares +200
-            9 close entry put +200 43 09-20
-            9 close entry low-put -200 36 09-20
-            9 close entry call -200 49 09-20
-            """,
-            "gapping": """
-            9 close expiry put exercised
-            9 close expiry shares -200 47
-            9 close expiry low-put expired
-            9 close expiry call expired
-            9 close expiry over -518.47
-            9 close entry opened 2
-            9 close entry shares +200
-            9 close entry put +200 40 09-20
-            9 close entry low-put -200 34 09-20
-            9 close entry call -200 46 09-20
+            8 open left-over over -308.52
+            8 close entry ordered 2
+            9 open entry opened 2
+            9 open entry shares +200
+            9 open entry call -200 52 03-15
+            9 open entry put +200 56 03-15
             """,
         },
-        {"days": QUARTER_DAYS},
+        {"columns": {"dividend": {8: 1.0}}},
     ),
 )

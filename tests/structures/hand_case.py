@@ -133,7 +133,9 @@ class Case:
         """What the walk makes of it."""
         costs = Costs(**{name: self.costs.get(name, 0.0) for name in Costs._fields})
         account = hr.Account(cash=self.cash, per_position=1.0, margin=self.margin)
-        return hr.run(self.market, self.strategy, account=account, pricing=PRICING, costs=costs).log
+        result = hr.run(self.market, self.strategy, account=account, pricing=PRICING, costs=costs)
+        assert len(result.trades) == result.log.terms.size  # the ledger adds up, or raises
+        return result.log
 
     def reckoner(self) -> Reckoner:
         """Plain arithmetic for the lines."""

@@ -360,4 +360,33 @@ STRUCTURES = (
         },
         {"days": SPREAD, "cash": 600.0},
     ),
+    Structure(
+        "reversal with costs",
+        "reversal",
+        """
+        0 close entry ordered 2
+        1 open entry opened 2
+        1 open entry shares -200
+        1 open entry call +200 50 02-16
+        1 open entry put -200 50 02-16
+        2 night none borrow
+        3 night none borrow
+        4 night none borrow
+        5 night none borrow
+        6 night none borrow
+        7 night none borrow
+        8 night none borrow
+        9 night none borrow
+        9 close expiry call expired
+        9 close expiry put assigned
+        9 close expiry shares +200 50
+        9 close expiry over -43.75
+        9 close entry ordered 2
+        """,
+        {
+            "gapping": """
+            """,
+        },
+        {"costs": COSTS | {"borrow": 0.02}},
+    ),
 )

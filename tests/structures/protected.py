@@ -1,4 +1,4 @@
-"""Structures with a put of their own: married, rolled, laddered, with income."""
+"""Structures with a put of their own: married, rolled, laddered, with income, put-spread collar."""
 
 from __future__ import annotations
 
@@ -8,6 +8,14 @@ HALF_YEAR = "01-19 01-22 02-16 03-15 04-19 05-17 06-07 06-21 07-05 07-19"
 ROLLS = "01-19 01-22 02-02 02-16 03-01 03-20 03-21 04-05 04-19 05-17"
 LADDER = "01-19 01-22 02-02 02-16 03-15 04-12 04-15 04-19 05-10 05-17"
 INCOME = "01-19 01-22 02-02 02-16 03-13 03-15 04-17 04-18 06-07 06-10"
+QUARTER_DAYS = "03-08 03-15 03-18 04-05 04-19 05-03 05-17 06-07 06-20 06-21"
+COSTS = {
+    "half_spread": 0.02,
+    "contract_fee": 0.65,
+    "assignment_fee": 5.0,
+    "trade_fee": 1.0,
+    "slippage": 0.001,
+}
 
 STRUCTURES = (
     Structure(
@@ -175,5 +183,119 @@ STRUCTURES = (
             """,
         },
         {"days": INCOME},
+    ),
+    Structure(
+        "married put with income and costs",
+        "married-put-with-income",
+        """
+        0 close entry ordered 2
+        1 open entry opened 2
+        1 open entry shares +200
+        1 open entry put +200 50 07-19
+        4 close roll put ordered 56 09-20
+        4 close added call ordered 60 04-19
+        5 open roll put -200 50 07-19
+        5 open roll put +200 56 09-20
+        5 open added call -200 60 04-19
+        6 close roll call ordered 60 05-17
+        7 open roll call +200 60 04-19
+        7 open roll call -200 60 05-17
+        8 close expiry call expired
+        8 close roll call ordered 61 07-19
+        9 open roll call -200 61 07-19
+        """,
+        {
+            "leaping": """
+            """,
+        },
+        {"days": INCOME, "costs": COSTS},
+    ),
+    Structure(
+        "put-spread collar",
+        "put-spread-collar",
+        """
+        1 close entry opened 2
+        1 close entry shares +200
+        1 close entry put +200 47 06-21
+        1 close entry low-put -200 40 06-21
+        1 close entry call -200 53 06-21
+        """,
+        {
+            "still": """
+            9 close expiry put expired
+            9 close expiry low-put expired
+            9 close expiry call expired
+            9 close expiry shares -200
+            9 close expiry over +81.53
+            9 close entry opened 2
+            9 close entry shares +200
+            9 close entry put +200 47 09-20
+            9 close entry low-put -200 40 09-20
+            9 close entry call -200 53 09-20
+            """,
+            "rising": """
+            9 close expiry put expired
+            9 close expiry low-put expired
+            9 close expiry call assigned
+            9 close expiry shares -200 53
+            9 close expiry over +681.53
+            9 close entry opened 2
+            9 close entry shares +200
+            9 close entry put +200 51 09-20
+            9 close entry low-put -200 43 09-20
+            9 close entry call -200 57 09-20
+            """,
+            "falling": """
+            9 close expiry put exercised
+            9 close expiry shares -200 47
+            9 close expiry low-put expired
+            9 close expiry call expired
+            9 close expiry over -518.47
+            9 close entry opened 2
+            9 close entry shares +200
+            9 close entry put +200 43 09-20
+            9 close entry low-put -200 36 09-20
+            9 close entry call -200 49 09-20
+            """,
+            "gapping": """
+            9 close expiry put exercised
+            9 close expiry shares -200 47
+            9 close expiry low-put expired
+            9 close expiry call expired
+            9 close expiry over -518.47
+            9 close entry opened 2
+            9 close entry shares +200
+            9 close entry put +200 40 09-20
+            9 close entry low-put -200 34 09-20
+            9 close entry call -200 46 09-20
+            """,
+        },
+        {"days": QUARTER_DAYS},
+    ),
+    Structure(
+        "put-spread collar with costs",
+        "put-spread-collar",
+        """
+        1 close entry opened 2
+        1 close entry shares +200
+        1 close entry put +200 47 06-21
+        1 close entry low-put -200 40 06-21
+        1 close entry call -200 53 06-21
+        9 close expiry put exercised
+        9 close expiry shares -200 47
+        9 close expiry low-put expired
+        9 close expiry call expired
+        9 close expiry over -553.91
+        9 close entry opened 2
+        9 close entry shares +200
+        9 close entry put +200 43 09-20
+        9 close entry low-put -200 36 09-20
+        9 close entry call -200 49 09-20
+        """,
+        {
+            "falling": """
+            """,
+        },
+        {"days": QUARTER_DAYS, "costs": COSTS},
     ),
 )

@@ -60,9 +60,9 @@ def test_events_and_cents(case: Case) -> None:
 
 @pytest.mark.parametrize("case", CASES[::7], ids=lambda case: case.name)
 def test_a_wrong_cent_is_seen(case: Case) -> None:
-    """A negative control: the same log does not fit lines with another strike, quantity or moment."""
+    """A negative control: the same log does not fit lines with another strike, quantity or end."""
     log = case.walked()
-    for old, new in ((" 50 ", " 51 "), ("+200", "+100"), ("expired", "assigned"), ("1 open", "1 night")):
+    for old, new in ((" 50 ", " 51 "), ("+200", "+100"), ("expired", "assigned"), ("opened 2", "opened 3")):
         spoiled = replace(case, told=case.told.replace(old, new))
         if spoiled.told != case.told:
             assert differences(spoiled, log)
