@@ -13,21 +13,28 @@ from pathlib import Path
 import numpy as np
 from bench_market import PUT_DISTANCE, Inputs
 
-from hedgerow.kernels import boundary
+from hedgerow.kernels import exercise
 from hedgerow.kernels.layout import Costs, Floats, SmileModel
 
 __all__ = ["COMPILER", "prepare_c", "run_c"]
 
 COMPILER = shutil.which("gcc")
 SOURCE = Path(__file__).with_name("collar.c")
-SIZES = (
-    "NODES",
-    "INNER",
-    "OUTER",
-    "FIRST_STEPS",
-    "REFINEMENTS",
-    "HARD_REFINEMENTS",
-)  # of the exercise boundary
+GRID = (  # of the table of early exercise, names of its constants
+    "LEAST",
+    "MOST",
+    "ROWS",
+    "NARROWEST",
+    "WIDEST",
+    "COLUMNS",
+    "FARTHEST",
+    "PLACES",
+    "BEND",
+    "FIRST_ROOT",
+    "PER_ROOT",
+    "PER_DEVIATION",
+    "PER_STRETCHED",
+)
 DOUBLES = ctypes.POINTER(ctypes.c_double)
 LONGS = ctypes.POINTER(ctypes.c_int64)
 BYTES = ctypes.POINTER(ctypes.c_uint8)
@@ -43,6 +50,7 @@ TAPE = {
     "low_tick": DOUBLES,
     "high_tick": DOUBLES,
     "threshold": DOUBLES,
+    "exercise": DOUBLES,
 }
 
 
@@ -75,7 +83,7 @@ def _library() -> ctypes.CDLL:
         raise RuntimeError("the C loop needs gcc, and there is no gcc on the search path of this machine")
     with tempfile.TemporaryDirectory() as folder:
         library = Path(folder) / "collar.so"
-        sizes = [f"-D{name}={getattr(boundary, name)}" for name in SIZES]
+        sizes = [f"-D{name}={getattr(exercise, name)!r}" for name in GRID]
         flags = ["-O3", "-std=c11", "-Wall", "-Wextra", "-Werror", "-shared", "-fPIC", *sizes]
         command = [COMPILER, *flags, "-o", str(library)]
         done = subprocess.run([*command, str(SOURCE), "-lm"], capture_output=True, text=True, check=False)
@@ -87,7 +95,8 @@ def _library() -> ctypes.CDLL:
 def prepare_c(inputs: Inputs) -> Callable[[], tuple[Floats, int]]:
     """The C loop with its inputs bound; returns equity at every close (T,) and positions opened."""
     sessions, symbols = inputs.shape
-    arrays = {name: np.ascontiguousarray(getattr(inputs, name)) for name in TAPE}
+    arrays = {name: np.ascontiguousarray(getattr(inputs, name)) for name in TAPE if name != "exercise"}
+    arrays["exercise"] = exercise.TABLE
     tape = _Tape(*(arrays[name].ctypes.data_as(kind) for name, kind in TAPE.items()))
     most, new = inputs.account.most_positions, inputs.account.most_new_a_day
     account = _Account(

@@ -34,7 +34,7 @@ typedef struct {
     const double *open, *close, *level, *anchor; /* (T, N) */
     const uint8_t *allowed;                      /* (T, N) */
     const int64_t *ordinal, *expiry;             /* (T,) */
-    const double *rate, *low_tick, *high_tick, *threshold;
+    const double *rate, *low_tick, *high_tick, *threshold, *exercise;
 } Tape;
 
 typedef struct {
@@ -79,7 +79,7 @@ static double fill(double side, Quote quote, double low, double high, const Cost
     return on_tick(price, low, high, side > 0.0 ? 1 : 2);
 }
 
-static Quote value(int right, double strike, double days, double spot, double level, double anchor,
+static Quote value(const double *exercise, int right, double strike, double days, double spot, double level, double anchor,
                    double rate, const Smile *smile) {
     double years = days / DAYS, pull = smile->kappa * years, base = level;
     double weight = pull > 0.0 ? -expm1(-pull) / pull : 1.0;
@@ -94,7 +94,8 @@ static Quote value(int right, double strike, double days, double spot, double le
         double z = fmin(fmax(deviations, -smile->wing), smile->wing);
         volatility = atm * fmax(0.3, 1.0 + scale * z * (smile->skew + smile->curvature * z));
     }
-    Quote quote = {american_or_european(right, spot, strike, years, rate, volatility), fabs(deviations)};
+    double mid = american_or_european(exercise, right, spot, strike, years, rate, volatility);
+    Quote quote = {mid, fabs(deviations)};
     return quote;
 }
 
@@ -112,7 +113,7 @@ static double lot_cost(double spot, Quote call, Quote put, double low, double hi
 int64_t collar(const Tape *tape, const Account *account, const Smile *smile, const Costs *costs,
                double *equity_out) {
     int64_t size = account->symbols, opened = 0, open = 0, waiting = 0;
-    make_tables();
+    const double *exercise = tape->exercise;
     Position *positions = calloc((size_t)size, sizeof(Position));
     int64_t *queue = calloc((size_t)size, sizeof(int64_t));
     double cash = account->cash;
@@ -131,8 +132,8 @@ int64_t collar(const Tape *tape, const Account *account, const Smile *smile, con
             Position *held = &positions[s];
             double spot = opens[s], days = (double)(held->expiry - today) + OPEN_TO_CLOSE;
             double before = tape->rate[t - 1], call_price, put_price;
-            Quote call = value(0, held->call_strike, days, spot, level[s - size], anchor[s - size], before, smile);
-            Quote put = value(1, held->put_strike, days, spot, level[s - size], anchor[s - size], before, smile);
+            Quote call = value(exercise, 0, held->call_strike, days, spot, level[s - size], anchor[s - size], before, smile);
+            Quote put = value(exercise, 1, held->put_strike, days, spot, level[s - size], anchor[s - size], before, smile);
             double capital = lot_cost(spot, call, put, low, high, costs, &call_price, &put_price);
             double lots = fmin(held->lots, floor((cash - costs->trade_fee) / capital + 1e-9));
             if (lots < 1.0 || call_price <= 0.0) { held->status = 0; continue; }
@@ -170,8 +171,8 @@ int64_t collar(const Tape *tape, const Account *account, const Smile *smile, con
                 continue;
             }
             double days = (double)(held->expiry - today);
-            double call = value(0, held->call_strike, days, spot, level[s], anchor[s], rate, smile).mid;
-            double put = value(1, held->put_strike, days, spot, level[s], anchor[s], rate, smile).mid;
+            double call = value(exercise, 0, held->call_strike, days, spot, level[s], anchor[s], rate, smile).mid;
+            double put = value(exercise, 1, held->put_strike, days, spot, level[s], anchor[s], rate, smile).mid;
             stock += held->shares * spot;
             options += -held->shares * call + held->shares * put;
         }
@@ -186,8 +187,8 @@ int64_t collar(const Tape *tape, const Account *account, const Smile *smile, con
             held->call_strike = units(spot, step, 1) * step;
             held->put_strike = units(spot * (1.0 + account->put_distance), step, 2) * step;
             held->expiry = expiry;
-            Quote call = value(0, held->call_strike, days, spot, level[s], anchor[s], rate, smile);
-            Quote put = value(1, held->put_strike, days, spot, level[s], anchor[s], rate, smile);
+            Quote call = value(exercise, 0, held->call_strike, days, spot, level[s], anchor[s], rate, smile);
+            Quote put = value(exercise, 1, held->put_strike, days, spot, level[s], anchor[s], rate, smile);
             double capital = lot_cost(spot, call, put, low, high, costs, &call_price, &put_price);
             double budget = account->per_position * equity, left = cash - promised - costs->trade_fee;
             double lots = floor(fmin(budget, left) / capital + 1e-9);

@@ -1,56 +1,20 @@
 """One option on a stock without dividends in plain Python: European, American where a put may be exercised.
 
-The method is that of Andersen, Lake & Offengenden 2016 (Journal of Computational Finance 20, system A) for
-the exercise boundary, in the depth ln(K/B)/sqrt(t) at a few times, and Kim's integral (Review of Financial
-Studies 3, 1990) for what early exercise adds. Where that is proven under half a cent it is left out. The
-numbers of times, points and rounds are those of the compiled kernel, so that both do the same work.
+What early exercise adds is read by cubic interpolation off the table that the compiled kernels read, so that
+all loops do the same work. Where it is proven under half a cent it is left out.
 """
 
 from __future__ import annotations
 
 import math
 
-import numpy as np
-
-from hedgerow.kernels.boundary import FIRST_STEPS, HARD_REFINEMENTS, INNER, NODES, OUTER, REFINEMENTS
+from hedgerow.kernels import exercise
 
 __all__ = ["american_or_european"]
 
 ROOT_HALF = math.sqrt(0.5)
-DENSITY_AT_ZERO = 1.0 / math.sqrt(2.0 * math.pi)
 HALF_TICK = 0.005
-Table = list[list[list[float]]]
-
-
-def _half_rule(points: int) -> tuple[list[float], list[float]]:
-    """Gauss-Legendre points and weights on [0, 1]."""
-    places, weights = np.polynomial.legendre.leggauss(points)
-    return (0.5 * (1.0 + places)).tolist(), (0.5 * weights).tolist()
-
-
-ROOTS = [((i + 1) / NODES) ** 0.8 for i in range(NODES)]
-HALF_IN, WEIGHT_IN = _half_rule(INNER)
-HALF_OUT, WEIGHT_OUT = _half_rule(OUTER)
-
-
-def _lagrange(known: int, place: float) -> list[float]:
-    """Weights of the first `known` nodes in Lagrange interpolation at a place, zero for the others."""
-    weights = [
-        math.prod((place - ROOTS[k]) / (ROOTS[j] - ROOTS[k]) for k in range(known) if k != j)
-        for j in range(known)
-    ]
-    return weights + [0.0] * (NODES - known)
-
-
-def _scaled(known: int, place: float, left: float) -> list[float]:
-    return [weight * left for weight in _lagrange(known, place * left)]
-
-
-LEFT_IN = [math.sqrt(1.0 - half * half) for half in HALF_IN]
-LEFT_OUT = [math.sqrt(1.0 - half * half) for half in HALF_OUT]
-MARCHING: Table = [[_scaled(i + 1, ROOTS[i], left) for left in LEFT_IN] for i in range(NODES)]
-TOGETHER: Table = [[_scaled(NODES, ROOTS[i], left) for left in LEFT_IN] for i in range(NODES)]
-OUTWARD = [_scaled(NODES, 1.0, left) for left in LEFT_OUT]
+TABLE = exercise.TABLE.tolist()
 
 
 def cdf(x: float) -> float:
@@ -81,72 +45,39 @@ def put_bound(spot: float, strike: float, years: float, rate: float, volatility:
     return strike * (1.0 - math.exp(-rate * years)) * likely
 
 
-def _first_guess(years: float, rate: float, volatility: float) -> float:
-    """Depth of the flat boundary of Bjerksund & Stensland 1993."""
-    m = -rate / (volatility * volatility) - 0.5
-    beta = max(-2.0 * m, 1.0001)
-    high = max(beta / (beta - 1.0), 1.0001)
-    fall = (2.0 * volatility * math.sqrt(years) - rate * years) / (high - 1.0)
-    return math.log1p((high - 1.0) * -math.expm1(-max(fall, 1e-8)))
+def cubic(x: float) -> list[float]:
+    """Weights of the points -1, 0, 1, 2 in cubic interpolation to x."""
+    low, high = x * (x - 1.0), (x + 1.0) * (x - 2.0)
+    return [-low * (x - 2.0) / 6.0, high * (x - 1.0) * 0.5, -high * x * 0.5, low * (x + 1.0) / 6.0]
 
 
-def _step(table: Table, known: int, i: int, depths: list[float], put: tuple[float, float, float]) -> float:
-    """One Newton step for scaled depth i over the first `known` nodes; `put` is (years, rate, volatility)."""
-    years, rate, volatility = put
-    root = math.sqrt(years) * ROOTS[i]
-    time, deviation, depth = root * root, volatility * root, depths[i] * root
-    d2 = (rate * time - depth) / deviation - 0.5 * deviation
-    front = math.exp(-rate * time - 0.5 * d2 * d2) * DENSITY_AT_ZERO / deviation
-    carried = front * math.exp(depth)
-    above = above_slope = 0.0
-    for k in range(INNER):
-        row = table[i][k]
-        elapsed, span, inner = time * HALF_IN[k] * HALF_IN[k], deviation * HALF_IN[k], 0.0
-        for j in range(known):
-            inner += row[j] * depths[j]
-        d = (max(inner * root, 0.0) - depth + rate * elapsed) / span - 0.5 * span
-        term = WEIGHT_IN[k] * math.exp(-rate * elapsed - 0.5 * d * d)
-        above += term
-        above_slope -= term * d * (1.0 - row[i]) / span
-    scale = 2.0 * DENSITY_AT_ZERO * root / volatility
-    n = front + rate * scale * above
-    n_slope = -front * d2 / deviation + rate * scale * above_slope
-    below = carried + cdf(d2 + deviation)
-    if not (n > 0.0 and below > 0.0):
-        return depths[i]
-    slope = max(1.0 - n_slope / n - carried * d2 / deviation / below, 0.2)
-    better = depth + (-depth - math.log(n / below)) / slope
-    return min(max(better, 0.25 * depth), 4.0 * depth, 50.0) / root
+def before(place: float, points: int) -> int:
+    """The point before a place, with a neighbour before it and two after."""
+    return min(max(int(place), 1), points - 3)
 
 
-def _exercise_depths(put: tuple[float, float, float]) -> list[float]:
-    """Scaled depths of the exercise boundary at a few times; `put` is (years, rate, volatility)."""
-    years, rate, volatility = put
-    shortest = years * ROOTS[0] * ROOTS[0]
-    depths = [_first_guess(shortest, rate, volatility) / math.sqrt(shortest)] + [0.0] * (NODES - 1)
-    for _ in range(FIRST_STEPS):
-        depths[0] = _step(MARCHING, 1, 0, depths, put)
-    for i in range(1, NODES):
-        depths[i] = depths[0] if i == 1 else depths[i - 1] ** 2 / depths[i - 2]
-        depths[i] = _step(MARCHING, i + 1, i, depths, put)
-    hard = rate > 5.0 * volatility * volatility
-    for _ in range(HARD_REFINEMENTS if hard else REFINEMENTS):
-        depths = [_step(TOGETHER, NODES, i, depths, put) for i in range(NODES)]
-    return depths
-
-
-def _exercise_premium(away: float, depths: list[float], put: tuple[float, float, float]) -> float:
-    """What early exercise adds, in strikes, with `away` = ln(S/K); `put` is (years, rate, volatility)."""
-    years, rate, volatility = put
-    root, total = math.sqrt(years), 0.0
-    for half, weight, row in zip(HALF_OUT, WEIGHT_OUT, OUTWARD, strict=True):
-        elapsed, depth = years * half * half, 0.0
-        for j in range(NODES):
-            depth += row[j] * depths[j]
-        span = volatility * math.sqrt(elapsed)
-        d2 = (away + max(depth, 0.0) * root + rate * elapsed) / span - 0.5 * span
-        total += weight * half * rate * math.exp(-rate * elapsed) * cdf(-d2)
-    return max(2.0 * years * total, 0.0)
+def premium(away: float, leaning: float, deviation: float) -> float:
+    """What early exercise adds, in strikes, with `away` = ln(S/K); negative at or under the boundary."""
+    row = (math.sqrt(math.sqrt(leaning)) - exercise.FIRST_ROOT) * exercise.PER_ROOT
+    column = (deviation - exercise.NARROWEST) * exercise.PER_DEVIATION
+    i, j = before(row, exercise.ROWS), before(column, exercise.COLUMNS)
+    corner = [
+        (down * across, line)
+        for down, plane in zip(cubic(row - i), TABLE[i - 1 : i + 3], strict=True)
+        for across, line in zip(cubic(column - j), plane[j - 1 : j + 3], strict=True)
+    ]
+    distance = away / deviation + sum(weight * line[0] for weight, line in corner)
+    if distance <= 0.0:
+        return -1.0
+    if distance >= exercise.FARTHEST:
+        return 0.0
+    place = (math.sqrt(distance + exercise.BEND**2) - exercise.BEND) * exercise.PER_STRETCHED
+    k = before(place, exercise.PLACES)
+    z = sum(
+        along * sum(weight * line[k + c] for weight, line in corner)
+        for c, along in enumerate(cubic(place - k))
+    )
+    return leaning * deviation * cdf(z)
 
 
 def american_or_european(
@@ -159,9 +90,6 @@ def american_or_european(
     most = put_bound(spot, strike, years, rate, volatility)
     if most < HALF_TICK:
         return plain
-    put = (years, rate, volatility)
-    gain, away = max(strike - spot, 0.0), math.log(spot / strike)
-    depths = _exercise_depths(put)
-    if away <= -depths[-1] * math.sqrt(years):
-        return max(gain, plain)
-    return max(plain + min(strike * _exercise_premium(away, depths, put), most), gain)
+    root, gain = math.sqrt(years), max(strike - spot, 0.0)
+    extra = premium(math.log(spot / strike), rate * root / volatility, volatility * root)
+    return max(plain + min(strike * max(extra, 0.0), most), gain)

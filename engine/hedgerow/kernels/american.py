@@ -1,7 +1,8 @@
 """American options on a lognormal price; one option at a time.
 
-Arguments, units and limits are those of `hedgerow.kernels.lognormal`; how the exercise boundary is found
-stands in `hedgerow.kernels.boundary`. A call is a put with price and strike, rate and dividend yield
+Arguments, units and limits are those of `hedgerow.kernels.lognormal`. Puts without a dividend yield are read
+off the table of `hedgerow.kernels.exercise`; for the others, and the few outside it, the exercise boundary is
+found as `hedgerow.kernels.boundary` says. A call is a put with price and strike, rate and dividend yield
 exchanged (McDonald & Schroder 1998, "A parity result for American options", Journal of Computational
 Finance 1). Where the rate is negative and the dividend yield lower still, exercise has two boundaries; such
 a put gets the larger of its European and intrinsic value.
@@ -12,6 +13,7 @@ from __future__ import annotations
 import math
 
 from hedgerow.kernels.boundary import Problem, exercise_depths, exercise_premium, is_exercised, top_of
+from hedgerow.kernels.exercise import is_tabled, tabled_premium
 from hedgerow.kernels.jit import compiled
 from hedgerow.kernels.layout import CALL, PUT
 from hedgerow.kernels.lognormal import discount, european, intrinsic, is_certain
@@ -104,22 +106,55 @@ def _certain_put(spot: float, strike: float, years: float, rate: float, dividend
 
 
 @compiled
+def _solved_premium(log_moneyness: float, problem: Problem) -> float:
+    """Value what early exercise adds to a put that is not exercised now, in strikes; 0 where it is."""
+    depths = exercise_depths(problem)
+    if is_exercised(log_moneyness, depths, problem):
+        return 0.0
+    return exercise_premium(log_moneyness, 0.0, depths, problem)
+
+
+@compiled
 def _put_premium(
-    spot: float, strike: float, years: float, rate: float, dividend_yield: float, volatility: float
+    spot: float,
+    strike: float,
+    years: float,
+    rate: float,
+    dividend_yield: float,
+    volatility: float,
+    most: float,
 ) -> float:
     """Value what early exercise adds to a put that is not exercised now, money per share; 0 where it is.
 
-    Never over the bound; nothing where the bound is negligible or exercise has two boundaries.
+    Never over the bound `most`; nothing where that is negligible or exercise has two boundaries.
     """
-    most = _put_bound(spot, strike, years, rate, dividend_yield, volatility)
     if rate < 0.0 or not most > _NOTHING * strike:
         return 0.0
-    problem = Problem(years, rate, dividend_yield, volatility, top_of(rate, dividend_yield))
-    depths = exercise_depths(problem)
-    log_moneyness = math.log(spot / strike)
-    if is_exercised(log_moneyness, depths, problem):
-        return 0.0
-    return min(strike * exercise_premium(log_moneyness, 0.0, depths, problem), most)
+    log_moneyness, root = math.log(spot / strike), math.sqrt(years)
+    leaning, deviation = rate * root / volatility, volatility * root
+    if dividend_yield == 0.0 and is_tabled(leaning, deviation):
+        extra = max(tabled_premium(log_moneyness, leaning, deviation), 0.0)
+    else:
+        problem = Problem(years, rate, dividend_yield, volatility, top_of(rate, dividend_yield))
+        extra = _solved_premium(log_moneyness, problem)
+    return min(strike * extra, most)
+
+
+@compiled
+def _early_exercise(
+    right: int,
+    spot: float,
+    strike: float,
+    years: float,
+    rate: float,
+    dividend_yield: float,
+    volatility: float,
+    most: float,
+) -> float:
+    """Value what early exercise adds, at most `most`, to an option not exercised now; 0 where it is."""
+    if right == CALL:
+        return _put_premium(strike, spot, years, dividend_yield, rate, volatility, most)
+    return _put_premium(spot, strike, years, rate, dividend_yield, volatility, most)
 
 
 @compiled
@@ -132,10 +167,7 @@ def american(
     dividend_yield: float,
     volatility: float,
 ) -> float:
-    """Value an American option, money per share; never under its European nor its intrinsic value.
-
-    Source of the method: module docstring of `hedgerow.kernels.boundary`.
-    """
+    """Value an American option, money per share; never under its European nor its intrinsic value."""
     gain = intrinsic(right, spot, strike)
     if years <= 0.0:
         return gain
@@ -143,10 +175,8 @@ def american(
         if right == CALL:
             return _certain_put(strike, spot, years, dividend_yield, rate)
         return _certain_put(spot, strike, years, rate, dividend_yield)
-    if right == CALL:
-        extra = _put_premium(strike, spot, years, dividend_yield, rate, volatility)
-    else:
-        extra = _put_premium(spot, strike, years, rate, dividend_yield, volatility)
+    most = early_exercise_bound(right, spot, strike, years, rate, dividend_yield, volatility)
+    extra = _early_exercise(right, spot, strike, years, rate, dividend_yield, volatility, most)
     value = european(right, spot, strike, years, rate, dividend_yield, volatility) + extra
     return gain if value < gain else value
 
@@ -170,7 +200,11 @@ def american_or_european(
     most = early_exercise_bound(right, spot, strike, years, rate, dividend_yield, volatility)
     if most < 0.5 * tick:
         return plain
-    return american(right, spot, strike, years, rate, dividend_yield, volatility)
+    if is_certain(spot, strike, years, volatility):
+        return american(right, spot, strike, years, rate, dividend_yield, volatility)
+    extra = _early_exercise(right, spot, strike, years, rate, dividend_yield, volatility, most)
+    value, gain = plain + extra, intrinsic(right, spot, strike)
+    return gain if value < gain else value
 
 
 @compiled

@@ -22,6 +22,7 @@ from typing import NamedTuple
 
 import numpy as np
 
+from hedgerow.kernels.exercise import is_tabled, tabled_depth
 from hedgerow.kernels.jit import compiled
 from hedgerow.kernels.layout import Floats
 from hedgerow.kernels.lognormal import discount
@@ -171,9 +172,24 @@ def _step(table: Floats, known: int, i: int, depths: Floats, problem: Problem) -
 def exercise_depths(problem: Problem) -> Floats:
     """Find scaled depths ln(X/B(t)) / sqrt(t) of the exercise boundary at NODES times, the last the longest.
 
-    `problem.rate` >= 0, and above the dividend yield when it is 0; volatility and years above 0.
+    `problem.rate` >= 0, and above the dividend yield when it is 0; volatility and years above 0. Read off a
+    table where there is no yield and the table covers all times; see `hedgerow.kernels.exercise`.
     """
     depths = np.empty(NODES)
+    if problem.dividend_yield == 0.0:
+        root = math.sqrt(problem.years)
+        leaning, deviation = problem.rate * root / problem.volatility, problem.volatility * root
+        if is_tabled(leaning, deviation) and is_tabled(leaning * _ROOTS[0], deviation * _ROOTS[0]):
+            for i in range(NODES):
+                depths[i] = tabled_depth(leaning * _ROOTS[i], deviation * _ROOTS[i]) * problem.volatility
+            return depths
+    _solve(depths, problem)
+    return depths
+
+
+@compiled
+def _solve(depths: Floats, problem: Problem) -> None:
+    """Write the scaled depths into `depths`, the shortest time first, then refined together."""
     shortest = problem.years * _ROOTS[0] * _ROOTS[0]
     depths[0] = _first_guess(shortest, problem) / math.sqrt(shortest)
     for _ in range(FIRST_STEPS):
@@ -188,7 +204,6 @@ def exercise_depths(problem: Problem) -> Floats:
             better[i] = _step(_TOGETHER, NODES, i, depths, problem)
         for i in range(NODES):
             depths[i] = better[i]
-    return depths
 
 
 @compiled

@@ -31,7 +31,7 @@ COMPILED = os.environ.get("HEDGEROW_UNCOMPILED", "") in ("", "0")
 
 
 def _fingerprint() -> str:
-    """Hash every kernel source and the versions that turn it into machine code."""
+    """Hash every kernel source and table, and the versions that turn them into machine code."""
     import llvmlite
     import numba
     import numpy as np
@@ -40,7 +40,7 @@ def _fingerprint() -> str:
     for part in (platform.python_version(), platform.machine(), numba.__version__, llvmlite.__version__):
         digest.update(part.encode())
     digest.update(np.__version__.encode())
-    for source in sorted(Path(__file__).parent.glob("*.py")):
+    for source in sorted(path for path in Path(__file__).parent.iterdir() if path.suffix in (".py", ".npy")):
         digest.update(source.name.encode())
         digest.update(source.read_bytes())
     return digest.hexdigest()[:16]
