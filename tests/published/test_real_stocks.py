@@ -278,9 +278,9 @@ def test_calls_are_assigned_early_only_for_a_dividend() -> None:
 
 
 def is_paid_to(events: pd.DataFrame, row: Any) -> bool:
-    """Whether the position of an assignment was paid a dividend on that day."""
+    """Whether the position of an assignment was paid a dividend on that day; shares then owed owe theirs."""
     same = (events["position"] == row.position) & (events["date"] == row.date)
-    return bool((events[same]["kind"] == "dividend").any())
+    return bool(((events[same]["kind"] == "dividend") & (events[same]["quantity"] > 0.0)).any())
 
 
 def lattice_put(spot: float, strike: float, years: float, rate: float, volatility: float) -> float:
