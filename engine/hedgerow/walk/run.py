@@ -190,7 +190,8 @@ def walk_program(
     `progress` is called with sessions done and to do. The interpreter lock is released while walking.
     """
     account, window = terms.account, terms.window
-    tables = Tables(tape.bars.shape[1] * int(program.plan[0]["ladder"]))
+    slots = tape.bars.shape[1] * int(program.plan[0]["ladder"])
+    tables = Tables(slots, window.stop - window.start, terms.marks)
     world = make_world(tape, program, terms, tables)
     queue = np.zeros(world.positions.shape[0] + 1)
     _deposit(world, window.start, account.cash)
