@@ -55,7 +55,8 @@ def test_chunks_do_not_matter(monkeypatch: pytest.MonkeyPatch, rule: str, sessio
 def test_tables_that_have_to_grow_do_not_matter(monkeypatch: pytest.MonkeyPatch, rule: str) -> None:
     """Room for next to nothing at first, growing by a hundredth at a time."""
     expected = walked(MARKET, rule)
-    monkeypatch.setattr(tables, "LEAST_ROWS", 1)
+    monkeypatch.setattr(tables, "EVENTS_A_SESSION", 0)
+    monkeypatch.setattr(tables, "TERMS_A_SESSION", 0.0)
     monkeypatch.setattr(tables, "GROWTH", 1.01)
     assert walked(MARKET, rule).same_as(expected)
 
