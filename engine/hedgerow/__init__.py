@@ -19,6 +19,7 @@ _HOMES = {
     "Account": "hedgerow.walk.account",
     "Costs": "hedgerow.kernels.layout",
     "DataError": "hedgerow.errors",
+    "ExtensionError": "hedgerow.errors",
     "HedgerowError": "hedgerow.errors",
     "InputError": "hedgerow.errors",
     "Market": "hedgerow.market",
@@ -29,6 +30,8 @@ _HOMES = {
     "StudyError": "hedgerow.errors",
     "StudyResult": "hedgerow.study.compare",
     "SurfaceModel": "hedgerow.volatility.model",
+    "extend": "hedgerow",
+    "load_extension": "hedgerow.extend",
     "load_market": "hedgerow.market",
     "load_strategy": "hedgerow.rules.load",
     "load_study": "hedgerow.study.declare",
@@ -41,6 +44,8 @@ __all__ = ["__version__", *_HOMES]
 
 def __getattr__(name: str) -> Any:
     """Import a public name when it is first used, so that importing the package is light."""
+    if name == "extend":
+        return importlib.import_module("hedgerow.extend")
     if name not in _HOMES:
         raise AttributeError(f"the package hedgerow has no public name {name!r}")
     return getattr(importlib.import_module(_HOMES[name]), name)

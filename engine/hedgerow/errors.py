@@ -5,6 +5,7 @@
         DataError            prices, dividends, splits, reports, rates, dataset.yaml
         RulesError           a strategy file
         StudyError           a study file, its account, pricing or costs
+        ExtensionError       a file of signals, estimators or costs of the user's own
         PlaceError           a folder or file that cannot be read or written
       RunError               the run itself failed (exit code 1)
         ReconcileError       money or quantities of a log do not add up
@@ -22,6 +23,7 @@ from typing import Self
 
 __all__ = [
     "DataError",
+    "ExtensionError",
     "Fault",
     "HedgerowError",
     "InputError",
@@ -96,6 +98,10 @@ class RulesError(InputError):
 
 class StudyError(InputError):
     """A study file, its account, pricing or costs are wrong."""
+
+
+class ExtensionError(InputError):
+    """A user's own signal, estimator or model of costs is wrong."""
 
 
 class PlaceError(InputError):

@@ -3,22 +3,21 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import replace
 
 import numpy as np
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from array_market import array_market, cut, random_market, report, with_split
+from array_market import cut, random_market
 from hedgerow.errors import RulesError
+from hedgerow.extend.check_signal import SIGNAL_CHECKS, answer, later_sessions_change, small_parameters
+from hedgerow.extend.invented import changed_after, reporting_market
 from hedgerow.kernels.layout import Floats
-from hedgerow.market.table import Market, Report
 from hedgerow.signals import SIGNALS, Panel, named_signal, signal
 
 NAMES = sorted(SIGNALS)
 BY_BARS = [name for name in NAMES if SIGNALS[name].by_bars]
-SMALL = {"sessions": 5, "over": 7, "fast": 3, "slow": 6, "smooth": 4, "width": 1.0}
 PROMISED = {
     "close_over_mean",
     "close_under_mean",
@@ -44,45 +43,7 @@ PROMISED = {
 
 def params_of(name: str) -> dict[str, float]:
     """Small parameters, so that a short history has much to say."""
-    return {item.name: SMALL[item.name] for item in SIGNALS[name].parameters}
-
-
-def bits(name: str, market: Market, sessions: int | None = None) -> bytes:
-    """The signal's answer over the first sessions, as bytes."""
-    return Panel(market).evaluate(name, params_of(name))[:sessions].tobytes()
-
-
-def reporting_market(seed: int, sessions: int = 340, holes: float = 0.03) -> Market:
-    """Draw a market whose symbols report every 63 sessions, announced 15 days ahead, and pay as often."""
-    market = random_market(seed, sessions, 2, holes)
-    dividend = np.zeros_like(market.close)
-    dividend[20::63, 0], dividend[41::60, 1] = 0.5, 0.25
-    rng = np.random.default_rng(seed)
-    reports = [
-        report(market, session, float(rng.normal(1.0, 0.5)), symbol, 15)
-        for symbol in (0, 1)
-        for session in range(5 + 3 * symbol, sessions, 63)
-    ]
-    return replace(market, reports=tuple(sorted(reports)), dividend=dividend)
-
-
-def changed_after(market: Market, sessions: int, seed: int) -> Market:
-    """Change every price, and whatever of a report was not known, after the first `sessions` sessions."""
-    other = random_market(seed, len(market.ordinals), 2, 0.1)
-    mixed = {
-        field: np.vstack([getattr(market, field)[:sessions], getattr(other, field)[sessions:] * 9.0])
-        for field in ("open", "high", "low", "close")
-    }
-    mixed["dividend"] = np.vstack([market.dividend[:sessions], np.full_like(market.close[sessions:], 0.1)])
-    today = int(market.ordinals[sessions - 1])
-    reports: list[Report] = []
-    for item in market.reports:
-        if item.reaction_ordinal <= today:
-            reports.append(item)
-        elif item.announced_ordinal <= today:
-            reports.append(item._replace(eps=-7.0))
-    late = Report(0, today + 40, today + 30, today + 41, 99.0)
-    return array_market(mixed.pop("close"), **mixed, reports=tuple(sorted([*reports, late])))
+    return small_parameters(SIGNALS[name])
 
 
 def test_the_promised_signals_are_there() -> None:
@@ -90,51 +51,29 @@ def test_the_promised_signals_are_there() -> None:
     assert set(NAMES) >= PROMISED
 
 
+@pytest.mark.parametrize("rule", SIGNAL_CHECKS)
+@pytest.mark.parametrize("name", NAMES)
+def test_every_rule_of_the_house_is_kept(name: str, rule: str) -> None:
+    """What is asked of a user's signal is asked of each of the package's own."""
+    assert SIGNAL_CHECKS[rule](SIGNALS[name]) == ""
+
+
 @pytest.mark.parametrize("name", NAMES)
 @settings(max_examples=12)
 @given(seed=st.integers(0, 10**6), sessions=st.integers(1, 339))
 def test_time_runs_one_way(name: str, seed: int, sessions: int) -> None:
     """Bit for bit the same up to a close when all after it is changed, or is not there."""
-    market = reporting_market(seed)
-    whole = bits(name, market, sessions)
-    assert whole == bits(name, changed_after(market, sessions, seed + 1), sessions)
-    assert whole == bits(name, cut(market, sessions))
+    assert not later_sessions_change(SIGNALS[name], reporting_market(seed), sessions, seed + 1)
 
 
 @pytest.mark.parametrize("name", NAMES)
-@pytest.mark.parametrize("ratio", [2.0, 0.25])
-def test_splits_and_the_unit_of_price_do_not_matter(name: str, ratio: float) -> None:
-    """Bit for bit the same through a split of the same worth (a power of two keeps ratios exact)."""
-    market = reporting_market(1)
-    halved = with_split(market, 200, ratio)
-    after = int(market.ordinals[200])
-    eps = tuple(r._replace(eps=r.eps / ratio) if r.ordinal >= after else r for r in market.reports)
-    assert bits(name, market) == bits(name, replace(halved, reports=eps))
-
-
-@pytest.mark.parametrize("name", NAMES)
-def test_each_symbol_stands_alone(name: str) -> None:
-    """Bit for bit the same for a symbol alone and beside another; with `of` in every column."""
+def test_of_a_symbol_stands_in_every_column(name: str) -> None:
+    """With `of` the signal of that symbol alone is in every column."""
     market = reporting_market(2)
-    panel = Panel(market)
-    found = panel.evaluate(name, params_of(name))
-    for index, symbol in enumerate(market.symbols):
+    for symbol in market.symbols:
         alone = Panel(market.select([symbol])).evaluate(name, params_of(name))
-        assert found[:, index].tobytes() == alone[:, 0].tobytes()
-        spread = panel.evaluate(name, params_of(name), symbol)
-        assert spread.shape == found.shape
+        spread = Panel(market).evaluate(name, params_of(name), symbol)
         np.testing.assert_array_equal(spread, np.repeat(alone, 2, axis=1))
-
-
-@pytest.mark.parametrize("name", BY_BARS)
-def test_a_session_without_a_bar_is_passed_over(name: str) -> None:
-    """Bit for bit the answers of the bars alone, one after another, and nothing in the holes."""
-    market = random_market(3, 200, 1, 0.2)
-    has = ~np.isnan(market.close[:, 0])
-    fields = {field: getattr(market, field)[has] for field in ("open", "high", "low", "close")}
-    dense = array_market(fields.pop("close"), **fields)
-    found = Panel(market).evaluate(name, params_of(name))
-    assert found[has].tobytes() == Panel(dense).evaluate(name, params_of(name)).tobytes()
 
 
 @pytest.mark.parametrize("name", NAMES)
@@ -147,34 +86,18 @@ def test_nothing_is_said_without_a_bar(name: str) -> None:
     assert not in_holes.any() if found.dtype == np.bool_ else np.isnan(in_holes).all()
 
 
-@pytest.mark.parametrize("name", BY_BARS)
-def test_lookback_is_what_it_needs(name: str) -> None:
-    """Nothing is said before the lookback is there; a number is known from then on."""
-    market = random_market(5, 60)
-    found = Panel(market).evaluate(name, params_of(name))
-    lookback = named_signal(name).lookback_sessions(params_of(name))
-    early = found[: lookback - 1]
-    assert not early.any() if found.dtype == np.bool_ else np.isnan(early).all()
-    if named_signal(name).kind == "number":
-        assert not np.isnan(found[lookback - 1 :]).any()
-
-
-@pytest.mark.parametrize("name", NAMES)
-def test_kind_bounds_and_phrase(name: str) -> None:
-    """A yes-or-no signal gives bools, sometimes yes; a number stays within its bounds; the phrase reads."""
-    chosen = named_signal(name)
+@pytest.mark.parametrize("name", [name for name in NAMES if SIGNALS[name].number is None])
+def test_yes_or_no_is_sometimes_yes(name: str) -> None:
+    """A yes-or-no signal is neither always no nor always yes on an invented market."""
     found = Panel(reporting_market(6)).evaluate(name, params_of(name))
-    if chosen.number is None:
-        assert found.dtype == np.bool_
-        assert 0 < found.sum() < found.size
-    else:
-        assert found.dtype == np.float64
-        assert np.nanmin(found) >= chosen.number.least
-        assert np.nanmax(found) <= chosen.number.most
-    words = chosen.words(params_of(name))
-    assert words.startswith("the ")
-    assert "{" not in words
-    assert "\n" not in words
+    assert 0 < found.sum() < found.size
+
+
+@pytest.mark.parametrize("name", [name for name in BY_BARS if SIGNALS[name].number is not None])
+def test_a_number_is_known_from_its_lookback_on(name: str) -> None:
+    """Once the lookback is there a number of the package's own stays known."""
+    found = Panel(random_market(5, 60)).evaluate(name, params_of(name))
+    assert not np.isnan(found[named_signal(name).lookback_sessions(params_of(name)) - 1 :]).any()
 
 
 @pytest.mark.parametrize("name", NAMES)
@@ -200,11 +123,12 @@ def peeking() -> Iterator[str]:
 
 
 def test_a_signal_that_peeks_is_caught(peeking: str) -> None:
-    """Negative control: both comparisons above tell a signal that looks at tomorrow."""
-    market = reporting_market(8, holes=0.0)
-    whole = bits(peeking, market, 100)
-    assert whole != bits(peeking, cut(market, 100))
-    assert whole != bits(peeking, changed_after(market, 100, 9), 100)
+    """Negative control: a signal that looks at tomorrow is told from later prices and from their absence."""
+    chosen, market = SIGNALS[peeking], reporting_market(8, holes=0.0)
+    whole = answer(chosen, market)[:100].tobytes()
+    assert whole != answer(chosen, cut(market, 100)).tobytes()
+    assert whole != answer(chosen, changed_after(market, 100, 9))[:100].tobytes()
+    assert later_sessions_change(chosen, market, 100, 9)
 
 
 def test_a_name_is_taken_once() -> None:

@@ -190,7 +190,7 @@ def test_faults_of_the_study_and_of_its_strategies_in_one_pass(tmp_path: Path) -
         ("account: {most_positions: 0}", "range"),
         ("account: {interest: NO}", "flag"),
         ("account: 5000", "shape"),
-        ("costs: free", "shape"),
+        ("costs: free", "unknown"),
         ("costs: {half_sprad: 3%}", "unknown-word"),
         ("costs: {contract_fee: -1}", "range"),
         ("pricing: {listings: modrn}", "choice"),

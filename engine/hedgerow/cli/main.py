@@ -10,7 +10,7 @@ from typing import Annotated
 import typer
 
 from hedgerow import __version__
-from hedgerow.cli import data, rules
+from hedgerow.cli import data, extensions, rules
 from hedgerow.cli.run import run
 from hedgerow.errors import HedgerowError
 
@@ -27,6 +27,7 @@ app = typer.Typer(
 app.command()(run)
 app.add_typer(data.app, name="data")
 app.add_typer(rules.app, name="rules")
+app.add_typer(extensions.app, name="extensions")
 
 
 def _version(wanted: bool) -> None:

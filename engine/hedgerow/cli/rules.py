@@ -32,12 +32,16 @@ class Kind(StrEnum):
 
 
 Files = Annotated[list[Path], typer.Argument(help="Strategy or study files.", show_default=False)]
+Extensions = Annotated[
+    list[str] | None, typer.Option("--extension", help="A file of your own signals or costs, read first.")
+]
 File = Annotated[Path, typer.Argument(help="A strategy file, or a study file for all of its variants.")]
 
 
 @app.command(help="Check strategy and study files; print every fault with its place.")
-def check(files: Files) -> None:
+def check(files: Files, extension: Extensions = None) -> None:
     """Print a line for each file that is right, and every fault of the others; raises Exit 2 for those."""
+    _extended(extension)
     faulty = 0
     for path in files:
         line, faults = _checked(path)
@@ -48,11 +52,12 @@ def check(files: Files) -> None:
 
 
 @app.command(help="Tell in plain English what a strategy does.")
-def explain(file: File) -> None:
+def explain(file: File, extension: Extensions = None) -> None:
     """Print a strategy, or every variant of a study, in plain English; raises Exit 2 for a faulty file."""
     from hedgerow.errors import InputError
     from hedgerow.rules.explain import explain as told
 
+    _extended(extension)
     try:
         texts = [told(strategy) for strategy in _strategies(file)]
     except InputError as error:
@@ -65,10 +70,13 @@ def explain(file: File) -> None:
 
 
 @app.command()
-def schema(kind: Annotated[Kind, typer.Argument(help="The kind of file.")]) -> None:
+def schema(
+    kind: Annotated[Kind, typer.Argument(help="The kind of file.")], extension: Extensions = None
+) -> None:
     """Print the JSON Schema of a kind of file, for editors."""
     from hedgerow.rules.publish import as_text, strategy_schema
 
+    _extended(extension)
     if kind is Kind.strategy:
         typer.echo(as_text(strategy_schema()), nl=False)
         return
@@ -78,12 +86,21 @@ def schema(kind: Annotated[Kind, typer.Argument(help="The kind of file.")]) -> N
 
 
 @app.command()
-def words() -> None:
+def words(extension: Extensions = None) -> None:
     """List the rule language at a glance: words, what may stand after them, signals."""
     from hedgerow.rules.glossary import sections
 
+    _extended(extension)
     for section in sections():
         typer.echo("\n".join(_table(section)) + "\n")
+
+
+def _extended(extensions: list[str] | None) -> None:
+    """Use the files of extensions given. Raises ExtensionError with every fault of the first faulty one."""
+    if extensions:
+        from hedgerow.extend import load_extensions
+
+        load_extensions(extensions)
 
 
 def is_study(tree: Tree) -> bool:

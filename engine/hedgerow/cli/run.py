@@ -24,6 +24,10 @@ File = Annotated[
 MarketOption = Annotated[
     Path | None, typer.Option("--market", help="Prices for a strategy file: a folder, CSV or Parquet.")
 ]
+Extensions = Annotated[
+    list[str] | None,
+    typer.Option("--extension", help="A file of your own signals or costs, for a strategy file."),
+]
 Out = Annotated[Path | None, typer.Option("--out", help="Folder for the ledgers; runs/NAME when not given.")]
 Replace = Annotated[bool, typer.Option("--replace", help="Overwrite a finished run in that folder.")]
 Json = Annotated[bool, typer.Option("--json", help="Print one JSON object for programs.")]
@@ -39,11 +43,12 @@ def run(
     as_json: Json = False,
     quiet: Quiet = False,
     workers: Workers = 2,
+    extension: Extensions = None,
 ) -> None:
     """Replay a study and compare its variants; leave a folder of ledgers."""
     from hedgerow.report.files import check_place, write_run
 
-    study = _study(file, market)
+    study = _study(file, market, extension or [])
     place = out or _usual_place(study.name)
     check_place(place, replace)
     result = _walked(study, workers)
@@ -62,7 +67,7 @@ def run(
         _show(result, place)
 
 
-def _study(file: Path, market: Path | None) -> Study:
+def _study(file: Path, market: Path | None, extensions: list[str]) -> Study:
     """The study of a file; a strategy file needs the market beside it. Raises InputError."""
     from hedgerow.cli.rules import is_study
     from hedgerow.errors import StudyError
@@ -72,6 +77,16 @@ def _study(file: Path, market: Path | None) -> Study:
 
     tree = tree_of_file(file)
     recorded = tree.plain.get("study") if isinstance(tree.plain, dict) and not tree.faults else None
+    earlier = isinstance(recorded, dict) and market is None
+    if extensions and (earlier or is_study(tree)):
+        found = "a study file names its own extensions, and --extension was given too"
+        raise StudyError.one(
+            str(file),
+            "two-extensions",
+            found,
+            "",
+            "write it under `extensions` in the study, and leave it out here",
+        )
     if isinstance(recorded, dict) and market is None:
         return load_study(recorded)  # the run.yaml of an earlier run
     if is_study(tree):
@@ -89,7 +104,8 @@ def _study(file: Path, market: Path | None) -> Study:
         raise StudyError.one(
             f"--market {market}", "file-missing", found, "a folder, CSV or Parquet is needed"
         )
-    return study_of_strategy(file, market)
+    named = {"extensions": extensions} if extensions else {}
+    return study_of_strategy(file, market, **named)
 
 
 def _usual_place(name: str) -> Path:

@@ -12,6 +12,8 @@ from threading import Event
 from typing import Any
 
 from hedgerow.errors import Fault, RunError, StudyError
+from hedgerow.extend.costs import CostModel
+from hedgerow.kernels.layout import Costs
 from hedgerow.market import Market, load_market
 from hedgerow.rules.schema import Strategy
 from hedgerow.study.declare import Study
@@ -39,9 +41,15 @@ class StudyResult:
         return self.bench.market
 
     @property
+    def costs(self) -> Costs:
+        """The costs of the study, in numbers."""
+        given = self.study.costs
+        return given.costs(self.market) if isinstance(given, CostModel) else given
+
+    @property
     def assumptions(self) -> tuple[str, ...]:
         """What was assumed about premiums and costs, in words."""
-        surface, costs = self.study.surface, self.study.costs
+        surface, costs = self.study.surface, self.costs
         terms = ", ".join(f"{term.estimator} {term.parameter:g}" for term in surface.terms)
         observed = surface.observed != "none"
         source = "observed volatility" if observed else f"volatility from {terms} sessions"
@@ -60,11 +68,18 @@ class StudyResult:
         last = self.market.last_bar[self.bench.traded.astype(bool)]
         return int((last < len(self.market.dates) - 1).sum())
 
+    def _study_plain(self) -> dict[str, Any]:
+        """The words of the study, its paths in full."""
+        plain = self.study.plain() | {"market": str(Path(self.study.market).resolve())}
+        for item in plain.get("extensions", []):
+            item["file"] = str(Path(item["file"]).resolve()) if item["file"].endswith(".py") else item["file"]
+        return plain
+
     def record(self) -> dict[str, Any]:
         """Everything needed to repeat the run, plain values."""
         market = self.market
         return {
-            "study": self.study.plain() | {"market": str(Path(self.study.market).resolve())},
+            "study": self._study_plain(),
             "data": {
                 "source": market.source,
                 "fingerprint": market.fingerprint,
@@ -73,6 +88,8 @@ class StudyResult:
                 "last": str(market.dates[-1]),
                 "findings": [f"{f.severity}: {f.text}" for f in market.findings],
             },
+            "costs": self.costs._asdict(),
+            "extensions": {one.source: list(one.names) for one in self.study.extensions},
             "versions": versions(),
         }
 

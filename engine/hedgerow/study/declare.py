@@ -11,6 +11,8 @@ from typing import Any
 from pydantic import ValidationError
 
 from hedgerow.errors import Fault, StudyError
+from hedgerow.extend.costs import CostModel
+from hedgerow.extend.load import Extension
 from hedgerow.kernels.layout import Costs
 from hedgerow.market.sessions import Regime
 from hedgerow.rules.base import loosened
@@ -20,6 +22,7 @@ from hedgerow.rules.load import read_strategy
 from hedgerow.rules.overrides import changed
 from hedgerow.rules.schema import Strategy
 from hedgerow.rules.words import Loose, shown
+from hedgerow.study.extending import extensions_plain, read_extensions
 from hedgerow.study.words import AccountWords, CostWords, StudyWords
 from hedgerow.textfile import capped
 from hedgerow.volatility.model import RANGES, SurfaceModel
@@ -34,7 +37,8 @@ class Study:
     """A declared experiment, every path and strategy of it resolved.
 
     `symbols` None means all stocks of the market; `first` and `last` are ISO dates, None for the data's own
-    ends; `variants` are pairs of a name and its strategy, in the order of the file.
+    ends; `variants` are pairs of a name and its strategy, in the order of the file; `costs` are numbers, or a
+    model that gives them once the market is known.
     """
 
     name: str
@@ -46,11 +50,12 @@ class Study:
     last: str | None = None
     account: Account = field(default_factory=Account)
     surface: SurfaceModel = field(default_factory=SurfaceModel)
-    costs: Costs = field(default_factory=lambda: CostWords().costs())
+    costs: Costs | CostModel = field(default_factory=lambda: CostWords().costs())
     listings: Regime = "modern"
     yardstick: str = "buy and hold"
     seed: int = 1
     path: Path | None = None
+    extensions: tuple[Extension, ...] = ()
 
     def plain(self) -> dict[str, Any]:
         """Everything resolved, as a mapping that `load_study` reads back to an equal study.
@@ -67,12 +72,19 @@ class Study:
             "window": {word: day for word, day in window.items() if day is not None},
             "account": account.model_dump(),
             "pricing": {"volatility": _surface_plain(self.surface), "listings": self.listings},
-            "costs": CostWords.of(self.costs).model_dump(),
+            "extensions": extensions_plain(self.extensions),
+            "costs": self._costs_plain(),
             "variants": {name: {"strategy": strategy.plain()} for name, strategy in self.variants},
             "yardstick": self.yardstick,
             "seed": self.seed,
         }
-        return {word: value for word, value in plain.items() if value != ""}
+        return {word: value for word, value in plain.items() if value not in ("", [])}
+
+    def _costs_plain(self) -> str | dict[str, Any]:
+        """The words of the costs; the name of a model."""
+        if isinstance(self.costs, CostModel):
+            return self.costs.name
+        return CostWords.of(self.costs).model_dump()
 
 
 def _surface_plain(surface: SurfaceModel) -> dict[str, Any]:
@@ -107,6 +119,9 @@ def read_study(tree: Tree, folder: Path, path: Path | None = None) -> tuple[Stud
     """The study of a tree and no faults, or None and every fault in the order of the files."""
     if tree.faults and not tree.plain:
         return None, tree.faults
+    extensions, extension_faults = read_extensions(tree, folder)
+    if extension_faults:
+        return None, extension_faults  # what they would have registered is not known: all else would be too
     loose: list[Loose] = []
     words: StudyWords | None = None
     try:
@@ -121,7 +136,7 @@ def read_study(tree: Tree, folder: Path, path: Path | None = None) -> tuple[Stud
     faults = sorted({*tree.all_faults(loose, "the study"), *surface_faults, *variant_faults})
     if faults or words is None or surface is None:
         return None, faults
-    return _study(words, folder, path, surface, variants), []
+    return replace(_study(words, folder, path, surface, variants), extensions=extensions), []
 
 
 def _study(
@@ -141,7 +156,7 @@ def _study(
         last=words.window.last,
         account=words.account.account(),
         surface=surface,
-        costs=words.costs.costs(),
+        costs=words.chosen_costs,
         listings="historical" if words.pricing.listings == "historical" else "modern",
         yardstick=words.yardstick,
         seed=words.seed,

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, field
 from functools import cached_property
 from pathlib import Path
@@ -16,6 +16,8 @@ from pydantic import ValidationError
 from hedgerow.errors import Fault, StudyError, nearest_word
 from hedgerow.events.log import EventLog
 from hedgerow.evidence import Summary, summarise
+from hedgerow.extend.costs import CostModel, named_costs
+from hedgerow.extend.load import load_extensions
 from hedgerow.kernels.layout import Bytes, Costs, Floats
 from hedgerow.ledger import Ledger
 from hedgerow.market import load_market
@@ -151,7 +153,7 @@ class Bench:
         self,
         strategy: Strategy,
         account: Account,
-        costs: Costs,
+        costs: Costs | CostModel,
         window: Window,
         variant: str = "",
         progress: Progress | None = None,
@@ -161,7 +163,8 @@ class Bench:
 
         Raises RulesError when the strategy asks for what the market has not.
         """
-        terms = Terms(account, costs, window, self.listings)
+        numbers = costs.costs(self.market) if isinstance(costs, CostModel) else costs
+        terms = Terms(account, numbers, window, self.listings)
         log = walk_program(self.market, self.tape, self.program(strategy), terms, variant, progress)
         yardstick = buy_and_hold(self.market, self.traded, window, account.cash) if beside else None
         return Result(log, self.market.rate, yardstick)
@@ -173,17 +176,20 @@ def run(
     *,
     account: Account | Mapping[str, Any] | None = None,
     pricing: SurfaceModel | Mapping[str, Any] | str | None = None,
-    costs: Costs | Mapping[str, Any] | str | None = None,
+    costs: Costs | CostModel | Mapping[str, Any] | str | None = None,
     first: str | None = None,
     last: str | None = None,
+    extensions: Sequence[str | Path] = (),
 ) -> Result:
     """Run one strategy on a market.
 
     `market` is a market or the place of its prices; `strategy` a strategy, its words or its file; `account`
     an account or its words; `pricing` a surface model, its words or a preset's name;
-    `costs` are costs, their words or "none"; `first` and `last` are ISO dates within the data. Raises
-    RulesError, StudyError or ReconcileError.
+    `costs` are costs, their words, the name of a model or "none"; `first` and `last` are ISO dates within the
+    data; `extensions` are files of signals, estimators and costs of your own. Raises RulesError, StudyError,
+    ExtensionError or ReconcileError.
     """
+    load_extensions(extensions)
     rule = strategy if isinstance(strategy, Strategy) else load_strategy(strategy)
     model = pricing if isinstance(pricing, SurfaceModel) else surface_words(pricing)
     prices = market if isinstance(market, Market) else load_market(market)
@@ -203,12 +209,14 @@ def _account(account: Account | Mapping[str, Any] | None) -> Account:
         raise StudyError(tree_of_mapping(words, "account").all_faults(loosened(error), "account")) from None
 
 
-def _costs(costs: Costs | Mapping[str, Any] | str | None) -> Costs:
+def _costs(costs: Costs | CostModel | Mapping[str, Any] | str | None) -> Costs | CostModel:
     """Costs as the walk takes them. Raises StudyError with every fault of their words."""
-    if isinstance(costs, Costs):
+    if isinstance(costs, Costs | CostModel):
         return costs
     if costs == "none":
         return NO_COSTS
+    if isinstance(costs, str) and costs:
+        return named_costs(costs)
     if not isinstance(costs, Mapping | None):
         found = f"the costs are {costs!r}, which is neither `none` nor a mapping of costs"
         raise StudyError.one(

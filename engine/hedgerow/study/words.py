@@ -9,16 +9,20 @@ from typing import Annotated, Any, Self
 from pydantic import Field, GetCoreSchemaHandler, GetJsonSchemaHandler
 from pydantic_core import CoreSchema, core_schema
 
+from hedgerow.errors import StudyError
+from hedgerow.extend.costs import COST_MODELS, CostModel, named_costs
 from hedgerow.kernels.layout import Costs
 from hedgerow.rules.base import Words
 from hedgerow.rules.figures import Number, Percent, Share, Whole
 from hedgerow.rules.words import Choice, Flag, Loose, Scalar, Text, WordsError, refuse, shown
-from hedgerow.walk.account import DEFAULT_COSTS, MARGINS, NO_COSTS, Account
+from hedgerow.study.extending import extension_faults
+from hedgerow.walk.account import COST_RANGES, DEFAULT_COSTS, MARGINS, NO_COSTS, Account
 
 __all__ = ["AccountWords", "CostWords", "Day", "PricingWords", "StudyWords", "WindowWords"]
 
 _D = DEFAULT_COSTS
-_MONEY = Number(0.0, 10_000.0, "money")
+_MOST = COST_RANGES
+_MONEY = Number(*_MOST["contract_fee"], "money")
 
 
 class Day(Scalar):
@@ -79,16 +83,16 @@ class AccountWords(Words):
 class CostWords(Words):
     """What trading takes away; the reasons of the defaults stand at `DEFAULT_COSTS`."""
 
-    half_spread: Annotated[float, Percent(0.0, 0.5)] = _D.half_spread
-    spread_rise: Annotated[float, Number(0.0, 10.0)] = _D.spread_rise
-    floor_ticks: Annotated[float, Number(0.0, 20.0, "ticks")] = _D.floor_ticks
+    half_spread: Annotated[float, Percent(*_MOST["half_spread"])] = _D.half_spread
+    spread_rise: Annotated[float, Number(*_MOST["spread_rise"])] = _D.spread_rise
+    floor_ticks: Annotated[float, Number(*_MOST["floor_ticks"], "ticks")] = _D.floor_ticks
     whole_ticks: Annotated[bool, Flag()] = bool(_D.use_ticks)
     contract_fee: Annotated[float, _MONEY] = _D.contract_fee
     share_fee: Annotated[float, _MONEY] = _D.share_fee
     trade_fee: Annotated[float, _MONEY] = _D.trade_fee
     assignment_fee: Annotated[float, _MONEY] = _D.assignment_fee
-    slippage: Annotated[float, Percent(0.0, 0.1)] = _D.slippage
-    borrow: Annotated[float, Percent(0.0, 5.0)] = _D.borrow
+    slippage: Annotated[float, Percent(*_MOST["slippage"])] = _D.slippage
+    borrow: Annotated[float, Percent(*_MOST["borrow"])] = _D.borrow
 
     @classmethod
     def of(cls, costs: Costs) -> CostWords:
@@ -103,7 +107,7 @@ class CostWords(Words):
 
 
 class _CostsOrNone:
-    """Reads a mapping of cost words, or `none` for exact prices without any."""
+    """Reads a mapping of cost words, the name of a model of costs, or `none` for exact prices without any."""
 
     def __get_pydantic_core_schema__(self, source: Any, handler: GetCoreSchemaHandler) -> CoreSchema:
         return core_schema.no_info_wrap_validator_function(_read_costs, handler(source))
@@ -111,14 +115,20 @@ class _CostsOrNone:
     def __get_pydantic_json_schema__(
         self, schema: CoreSchema, handler: GetJsonSchemaHandler
     ) -> dict[str, Any]:
-        return {"anyOf": [{"const": "none"}, handler(schema)]}
+        return {"anyOf": [{"enum": ["none", *sorted(COST_MODELS)]}, handler(schema)]}
 
 
 def _read_costs(value: Any, handler: Any) -> Any:
     if value == "none":
         return CostWords.of(NO_COSTS)
+    if isinstance(value, str) and value:
+        try:
+            return named_costs(value)
+        except StudyError as error:
+            fault = error.faults[0]
+            refuse("unknown", f"is {shown(value)}, which is no model of costs", fault.allowed, fault.remedy)
     if not isinstance(value, Mapping | CostWords):
-        refuse("shape", f"is {shown(value)}", "allowed: `none`, or a mapping of costs")
+        refuse("shape", f"is {shown(value)}", "allowed: `none`, the name of a model, or a mapping of costs")
     return handler(value)
 
 
@@ -139,6 +149,7 @@ class StudyWords(Words):
     window: WindowWords = WindowWords()
     account: AccountWords = AccountWords()
     pricing: PricingWords = PricingWords()
+    extensions: Any = None
     costs: Annotated[CostWords, _CostsOrNone()] = CostWords()
     strategy: Any = None
     variants: Any = None
@@ -147,8 +158,15 @@ class StudyWords(Words):
 
     @classmethod
     def judge(cls, raw: Mapping[Any, Any], made: Self | None) -> list[Loose]:
-        """Symbols that are no list of text, variants that are no mapping of mappings."""
-        return [*_symbol_faults(raw.get("symbols", "all")), *_variant_faults(raw)]
+        """Symbols that are no list of text, variants that are no mapping of mappings, odd extensions."""
+        odd = extension_faults(raw.get("extensions"))
+        return [*_symbol_faults(raw.get("symbols", "all")), *_variant_faults(raw), *odd]
+
+    @property
+    def chosen_costs(self) -> Costs | CostModel:
+        """The numbers written, or the model named."""
+        given: Any = self.costs
+        return given if isinstance(given, CostModel) else self.costs.costs()
 
     @property
     def chosen(self) -> tuple[str, ...] | None:

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from hedgerow.errors import Fault, StudyError, nearest_word
 from hedgerow.kernels.layout import MARGIN_CASH, MARGIN_REGULATION, Costs
 
-__all__ = ["DEFAULT_COSTS", "MARGINS", "NO_COSTS", "Account"]
+__all__ = ["COST_RANGES", "DEFAULT_COSTS", "MARGINS", "NO_COSTS", "Account"]
 
 # Half-spread: quoted half-spreads of S&P 500 stock options 2004-15 were 8.6 % of the premium over all
 # strikes, effective ones 6.8 %, and patient traders paid less than 40 % of that (Muravyev & Pearson 2020);
@@ -26,6 +26,18 @@ DEFAULT_COSTS = Costs(
     slippage=0.0002,
     borrow=0.005,
 )
+COST_RANGES: dict[str, tuple[float, float]] = {
+    "half_spread": (0.0, 0.5),
+    "spread_rise": (0.0, 10.0),
+    "floor_ticks": (0.0, 20.0),
+    "use_ticks": (0.0, 1.0),
+    "contract_fee": (0.0, 10_000.0),
+    "share_fee": (0.0, 10_000.0),
+    "trade_fee": (0.0, 10_000.0),
+    "assignment_fee": (0.0, 10_000.0),
+    "slippage": (0.0, 0.1),
+    "borrow": (0.0, 5.0),
+}  # the least and the most of each, in the unit of `Costs`
 MARGINS = {"cash": MARGIN_CASH, "regulation": MARGIN_REGULATION}
 NO_COSTS = Costs(*([0.0] * len(Costs._fields)))
 
