@@ -17,7 +17,7 @@ import yaml
 import hedgerow as hr
 from cli_runs import SESSIONS, Runner, Said
 from hedgerow import __version__
-from hedgerow.report.files import RUN_FILES
+from hedgerow.report.files import RUN_FILES, STRESS_FILES
 
 WIDTH = 100
 
@@ -36,7 +36,7 @@ def test_a_study_is_shown_and_its_ledgers_left(hedgerow: Runner) -> None:
         assert words in said.out
     assert f"2015-01-05 to 2015-06-19, {SESSIONS} sessions" in said.out
     assert said.out.rstrip().endswith("Every trade and every cent: runs/short-or-long")
-    assert {path.name for path in Path("runs/short-or-long").iterdir()} == set(RUN_FILES)
+    assert {path.name for path in Path("runs/short-or-long").iterdir()} == {*RUN_FILES, *STRESS_FILES}
 
 
 def test_it_fits_the_screen_and_is_plain_when_piped(hedgerow: Runner) -> None:

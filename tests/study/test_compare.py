@@ -15,7 +15,9 @@ from hedgerow.errors import RulesError, RunError, StudyError
 from hedgerow.study import compare
 from hedgerow.study.compare import run_study
 from hedgerow.study.declare import load_study
+from hedgerow.study.evidence_of import sessions_of_evidence
 from hedgerow.study.one import Bench, Result
+from hedgerow.walk.run import Window
 from walks import RULES, lively_market
 
 MARKET = lively_market(sessions=130)
@@ -63,11 +65,16 @@ def test_threads_change_nothing(folder: Path) -> None:
 
 
 def test_progress_counts_every_session_of_every_variant(folder: Path) -> None:
-    """Pieces that add up to three times 130."""
-    told: list[int] = []
-    run_study(study(folder), market=MARKET, progress=told.append)
-    assert sum(told) == 3 * 130
-    assert min(told) >= 1
+    """Pieces that add up to three times 130, and with evidence to what it was said to be besides."""
+    for words, more in (({"evidence": "none"}, 0), ({}, None)):
+        told: list[int] = []
+        declared = study(folder, **words)
+        run_study(declared, market=MARKET, progress=told.append)
+        if more is None:
+            more = sessions_of_evidence(declared, Window.of(MARKET))
+            assert more > 3 * 130
+        assert sum(told) == 3 * 130 + more
+        assert min(told) >= 1
 
 
 def test_a_fault_in_one_variant_stops_the_others(folder: Path, monkeypatch: pytest.MonkeyPatch) -> None:

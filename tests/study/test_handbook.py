@@ -10,6 +10,7 @@ import pytest
 
 from hedgerow.rules.document import tree_of_text
 from hedgerow.study.declare import read_study
+from hedgerow.study.evidence_words import Asked, EvidenceWords
 from hedgerow.study.words import AccountWords, CostWords, PricingWords, StudyWords, WindowWords
 from hedgerow.volatility.model import PRESETS, RANGES
 from rule_words import collar
@@ -24,7 +25,7 @@ ROWS = {
 FIRST, VARIANTS = re.findall(r"```yaml\n(.*?)```", HANDBOOK, flags=re.DOTALL)
 
 
-@pytest.mark.parametrize("model", [StudyWords, AccountWords, CostWords])
+@pytest.mark.parametrize("model", [StudyWords, AccountWords, CostWords, EvidenceWords])
 def test_every_word_has_a_row(model: Any) -> None:
     """Tables hold every word of the models."""
     assert set(model.words()) <= set(ROWS)
@@ -38,14 +39,33 @@ def test_every_word_of_pricing_is_there() -> None:
     assert all(f"`{name}`" in HANDBOOK for name in PRESETS)
 
 
-@pytest.mark.parametrize("model", [AccountWords, CostWords])
+@pytest.mark.parametrize("model", [AccountWords, CostWords, EvidenceWords])
 def test_defaults_in_the_tables(model: Any) -> None:
     """Compares the column of defaults with the defaults of the models, as they are written."""
     written = model().model_dump()
-    for word in model.words():
+    for word in set(model.words()) - {"stress"}:
         value = written[word]
         shown = str(value).lower() if isinstance(value, bool) else f"{value}"
         assert ROWS[word][1].strip("`") == shown, word
+
+
+def test_defaults_of_the_stress() -> None:
+    """The values that the text names are those of the model; the example reads."""
+    told = re.search(
+        r"ratios from (\S+) to (\S+), skews of (.*?), half-spreads of (.*?)%\.", HANDBOOK, re.DOTALL
+    )
+    assert told is not None
+    ends, asked = [float(told[1]), float(told[2])], Asked()
+    assert ends == [asked.ratios[0], asked.ratios[-1]]
+    for text, values in ((told[3], asked.skews), (told[4], [100.0 * one for one in asked.half_spreads])):
+        numbers = [float(part) for part in re.findall(r"-?\d+(?:\.\d+)?", text)]
+        assert numbers == pytest.approx(list(values))
+    line = next(line for line in HANDBOOK.splitlines() if line.strip().startswith("evidence: {"))
+    study, faults = read_study(tree_of_text(f"{FIRST}{line.strip()}\n", "README.md"), CONFIGS)
+    assert [str(fault) for fault in faults] == []
+    assert study is not None
+    assert study.evidence is not None
+    assert (study.evidence.draws, study.evidence.ratios) == (2000, (0.8, 1.0, 1.2, 1.4))
 
 
 @pytest.mark.parametrize("name", sorted(set(RANGES) - {"history"}))

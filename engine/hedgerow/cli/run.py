@@ -15,6 +15,9 @@ if TYPE_CHECKING:
 
 __all__ = ["run"]
 
+RUNS = Path("runs")
+"""Where runs go when no folder is named, and where the tries on the same prices are counted."""
+
 File = Annotated[
     Path,
     typer.Argument(
@@ -54,13 +57,15 @@ def run(
     result = _walked(study, workers)
     ledgers = [one.ledger for one in result.results]
     summaries = [one.summary for one in result.results]
-    write_run(place, ledgers, summaries, result.record(), replace=replace)
+    write_run(place, ledgers, summaries, result.record(), replace=replace, evidence=result.evidence)
+    _remember(result)
     _hint(summaries)
     if as_json:
-        described = {"folder": str(place), "variants": {one.variant: one.as_dict() for one in summaries}}
-        typer.echo(
-            json.dumps(described | {"cautions": list(_cautions(result))}, ensure_ascii=False, indent=2)
-        )
+        told: dict[str, Any] = {"variants": {one.variant: one.as_dict() for one in summaries}}
+        if result.evidence is not None:
+            told["evidence"] = result.evidence.as_dict()
+        told |= {"cautions": list(_cautions(result))}
+        typer.echo(json.dumps({"folder": str(place)} | told, ensure_ascii=False, indent=2))
     elif quiet:
         typer.echo(place)
     else:
@@ -111,9 +116,9 @@ def _study(file: Path, market: Path | None, extensions: list[str]) -> Study:
 def _usual_place(name: str) -> Path:
     """runs/ and the study's name as a file name; a number is added where a run stands already."""
     plain = "".join(letter if letter.isalnum() else "-" for letter in name.lower()).strip("-") or "run"
-    place, number = Path("runs") / plain, 2
+    place, number = RUNS / plain, 2
     while place.exists():
-        place, number = Path("runs") / f"{plain}-{number}", number + 1
+        place, number = RUNS / f"{plain}-{number}", number + 1
     return place
 
 
@@ -121,23 +126,38 @@ def _walked(study: Study, workers: int) -> StudyResult:
     """Run a study behind a progress bar."""
     from hedgerow.cli.progress import progress
     from hedgerow.kernels.jit import is_compiled
-    from hedgerow.study.compare import bench_of, run_study
+    from hedgerow.study.compare import bench_of, costed, run_study
+    from hedgerow.study.evidence_of import sessions_of_evidence
+    from hedgerow.study.tries import tried_before
 
     if not is_compiled() and sys.stderr.isatty():
         typer.echo(
             "First run on this machine: compiling, about a minute; later runs start at once.", err=True
         )
     bench, window = bench_of(study)
-    whole = (window.stop - window.start) * len(study.variants)
+    whole = (window.stop - window.start) * len(study.variants) + sessions_of_evidence(
+        costed(study, bench.market), window
+    )
+    before = tried_before(RUNS, bench.market)
     with progress("Replaying", whole) as counter:
-        return run_study(study, market=bench.market, workers=workers, progress=counter.advance)
+        return run_study(study, market=bench.market, workers=workers, progress=counter.advance, tried=before)
+
+
+def _remember(result: StudyResult) -> None:
+    """Write the variants down among those tried on these prices, or say that it cannot be done."""
+    from hedgerow.study.tries import RECORD, record_tries
+
+    if not record_tries(RUNS, result.study, result.market):
+        typer.echo(f"The variants could not be added to {RUNS / RECORD}; later runs count too few.", err=True)
 
 
 def _cautions(result: StudyResult) -> tuple[str, ...]:
     """The cautions of this result."""
     from hedgerow.report.cautions import Basis, cautions
 
-    return cautions(Basis(len(result.results), result.assumptions, result.ended))
+    evidence = result.evidence
+    tried = len(result.results) if evidence is None else evidence.tries.count.in_all
+    return cautions(Basis(tried, result.assumptions, result.ended))
 
 
 def _show(result: StudyResult, place: Path) -> None:
@@ -146,7 +166,7 @@ def _show(result: StudyResult, place: Path) -> None:
 
     study = result.study
     summaries = [one.summary for one in result.results]
-    print_comparison(Comparison(summaries, study.name, study.question, _cautions(result)))
+    print_comparison(Comparison(summaries, study.name, study.question, _cautions(result), result.evidence))
     warnings = sum(finding.severity == "warning" for finding in result.market.findings)
     if warnings:
         typer.echo(f"\nThe data check has {warnings} warnings: hedgerow data check {study.market}")

@@ -18,9 +18,10 @@ import yaml
 from hedgerow.errors import PlaceError
 from hedgerow.events.store import write_logs
 from hedgerow.evidence.figures import Summary
+from hedgerow.evidence.findings import Evidence
 from hedgerow.ledger import Ledger
 
-__all__ = ["FINISHED", "RUN_FILES", "check_place", "harmless", "write_run"]
+__all__ = ["FINISHED", "RUN_FILES", "STRESS_FILES", "check_place", "harmless", "write_run"]
 
 FINISHED = "run.yaml"
 """The file that a finished run folder has; it is written last."""
@@ -34,6 +35,9 @@ RUN_FILES = (
     "summary.json",
     FINISHED,
 )
+
+STRESS_FILES = ("stress.parquet", "stress.csv")
+"""Further files of a run whose comparisons were repeated under other premiums and costs."""
 
 FORMULA_STARTS = ("=", "+", "-", "@", "\t", "\r")
 
@@ -67,11 +71,13 @@ def write_run(
     *,
     replace: bool = False,
     extra: Mapping[str, str | bytes] | None = None,
+    evidence: Evidence | None = None,
 ) -> Path:
-    """Write a run folder (RUN_FILES) in one step and return it.
+    """Write a run folder (RUN_FILES, with a stress STRESS_FILES) in one step and return it.
 
     ledgers and summaries: one a variant, in the same order; every frame carries a `variant` column. run:
-    what is needed to repeat the run, plain values. extra: further files by name. Raises PlaceError when the
+    what is needed to repeat the run, plain values. extra: further files by name. evidence: goes into
+    summary.json and the files of the stress. Raises PlaceError when the
     place is taken or cannot be written; then nothing is left behind, and a run that stood there still does.
     """
     place = check_place(folder, replace)
@@ -81,6 +87,7 @@ def write_run(
     try:
         part.mkdir(parents=True)
         _fill(part, ledgers, summaries, extra or {})
+        _weigh(part, summaries, evidence)
         (part / FINISHED).write_text(
             yaml.safe_dump(dict(run), sort_keys=False, allow_unicode=True), encoding="utf-8"
         )
@@ -114,12 +121,22 @@ def _fill(
     harmless(trades).to_csv(part / "trades.csv", index=False, date_format="%Y-%m-%d", lineterminator="\n")
     _parquet(pd.concat([ledger.legs for ledger in ledgers], ignore_index=True), part / "legs.parquet")
     _parquet(pd.concat([ledger.equity for ledger in ledgers], ignore_index=True), part / "equity.parquet")
-    described = {"format": 1, "variants": {one.variant: one.as_dict() for one in summaries}}
-    text = json.dumps(described, indent=2, ensure_ascii=False, allow_nan=False)
-    (part / "summary.json").write_text(text + "\n", encoding="utf-8")
     for name, content in extra.items():
         data = content.encode("utf-8") if isinstance(content, str) else content
         (part / name).write_bytes(data)
+
+
+def _weigh(part: Path, summaries: Sequence[Summary], evidence: Evidence | None) -> None:
+    """Write summary.json and, where comparisons were stressed, the files of the stress."""
+    described: dict[str, Any] = {"format": 1, "variants": {one.variant: one.as_dict() for one in summaries}}
+    if evidence is not None:
+        described["evidence"] = evidence.as_dict()
+    text = json.dumps(described, indent=2, ensure_ascii=False, allow_nan=False)
+    (part / "summary.json").write_text(text + "\n", encoding="utf-8")
+    if evidence is not None and len(evidence.stress):
+        table, page = (part / name for name in STRESS_FILES)
+        _parquet(evidence.stress, table)
+        harmless(evidence.stress).to_csv(page, index=False, lineterminator="\n")
 
 
 def _parquet(frame: pd.DataFrame, path: Path) -> None:

@@ -16,6 +16,8 @@ from rich.text import Text
 
 from hedgerow.events.kinds import OUTCOMES
 from hedgerow.evidence.figures import Curve, Summary
+from hedgerow.evidence.findings import Evidence
+from hedgerow.report.evidence_text import evidence_parts, verdict_parts
 from hedgerow.report.rows import ACCOUNT_ROWS, SECTIONS
 from hedgerow.units import percent_text
 
@@ -32,12 +34,13 @@ GOOD, BAD = "green", "yellow"
 
 @dataclass(frozen=True, slots=True)
 class Comparison:
-    """What is shown: summaries (one a variant), a title, a question, and the cautions."""
+    """What is shown: summaries (one a variant), a title, a question, the cautions, and the evidence."""
 
     summaries: Sequence[Summary]
     title: str
     question: str = ""
     cautions: Sequence[str] = ()
+    evidence: Evidence | None = None
 
     @property
     def yardstick(self) -> tuple[str, Curve] | None:
@@ -79,10 +82,14 @@ def _parts(comparison: Comparison, width: int, draws: bool) -> Iterator[Renderab
         yield _outcomes(block, column, draws)
         yield Text()
     yield from _declined(comparison.summaries)
+    if comparison.evidence is not None:
+        yield from evidence_parts(comparison.evidence)
     if comparison.cautions:
         yield Text("Before you rely on this", style=HEADING)
         for caution in comparison.cautions:
             yield _item(caution, QUIET)
+    if comparison.evidence is not None:
+        yield from verdict_parts(comparison.evidence)
 
 
 def _head(comparison: Comparison) -> Iterator[RenderableType]:

@@ -4,24 +4,28 @@ from __future__ import annotations
 
 import importlib.metadata
 import platform
-from collections.abc import Callable
+from collections.abc import Callable, Collection
 from concurrent.futures import ThreadPoolExecutor
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 from threading import Event
 from typing import Any
 
 from hedgerow.errors import Fault, RunError, StudyError
+from hedgerow.evidence.findings import Evidence
 from hedgerow.extend.costs import CostModel
 from hedgerow.kernels.layout import Costs
 from hedgerow.market import Market, load_market
 from hedgerow.rules.schema import Strategy
 from hedgerow.study.declare import Study
+from hedgerow.study.evidence_of import evidence_of
 from hedgerow.study.one import Bench, Result
 from hedgerow.study.places import told_in_place
+from hedgerow.study.stress import costs_of
+from hedgerow.study.tries import keys_of
 from hedgerow.walk.run import Window
 
-__all__ = ["StudyResult", "bench_of", "run_study"]
+__all__ = ["StudyResult", "bench_of", "costed", "run_study"]
 
 Progress = Callable[[int], None]
 VERSIONED = ("hedgerow", "numpy", "pandas", "numba", "pyarrow")
@@ -29,11 +33,15 @@ VERSIONED = ("hedgerow", "numpy", "pandas", "numba", "pyarrow")
 
 @dataclass(frozen=True, eq=False)
 class StudyResult:
-    """A study, the market it ran on, and one result a variant, in the order of the file."""
+    """A study, the market it ran on, one result a variant, in the order of the file, and what they are worth.
+
+    `evidence` is None where the study asks for none, and where the record is too short for any.
+    """
 
     study: Study
     bench: Bench
     results: tuple[Result, ...]
+    evidence: Evidence | None = None
 
     @property
     def market(self) -> Market:
@@ -43,8 +51,7 @@ class StudyResult:
     @property
     def costs(self) -> Costs:
         """The costs of the study, in numbers."""
-        given = self.study.costs
-        return given.costs(self.market) if isinstance(given, CostModel) else given
+        return costs_of(costed(self.study, self.market))
 
     @property
     def assumptions(self) -> tuple[str, ...]:
@@ -100,6 +107,12 @@ def versions() -> dict[str, str]:
     return found | {"python": platform.python_version()}
 
 
+def costed(study: Study, market: Market) -> Study:
+    """The study with its costs in numbers: a model of costs has said what they are on the market."""
+    given = study.costs
+    return replace(study, costs=given.costs(market)) if isinstance(given, CostModel) else study
+
+
 def bench_of(study: Study, market: Market | None = None) -> tuple[Bench, Window]:
     """The study's market made ready, and its window. Raises DataError or StudyError."""
     loaded = load_market(Path(study.market)) if market is None else market
@@ -133,12 +146,18 @@ def _window(study: Study, bench: Bench) -> Window:
 
 
 def run_study(
-    study: Study, *, market: Market | None = None, workers: int = 2, progress: Progress | None = None
+    study: Study,
+    *,
+    market: Market | None = None,
+    workers: int = 2,
+    progress: Progress | None = None,
+    tried: Collection[str] = (),
 ) -> StudyResult:
-    """Run every variant of a study. The results do not depend on the number of `workers`, threads.
+    """Run every variant of a study and weigh them. Nothing depends on the number of `workers`, threads.
 
-    `progress` is called with the number of sessions newly walked. Raises DataError, StudyError, RulesError or
-    ReconcileError.
+    `progress` is called with the number of sessions newly walked, or their equal in other work. `tried` are
+    the keys (`study.tries`) of variants evaluated before on the same prices, which the evidence counts.
+    Raises DataError, StudyError, RulesError or ReconcileError.
     """
     bench, window = bench_of(study, market)
     stopped = Event()
@@ -165,4 +184,15 @@ def run_study(
                 rest = list(pool.map(one, study.variants[1:]))
             finally:
                 stopped.set()
-    return StudyResult(study, bench, (first, *rest))
+        results = (first, *rest)
+        count = len({*tried, *keys_of(study).values()})
+        evidence = evidence_of(
+            costed(study, bench.market),
+            bench,
+            window,
+            results,
+            workers=workers,
+            progress=progress,
+            tried=count,
+        )
+    return StudyResult(study, bench, results, evidence)

@@ -22,6 +22,7 @@ from hedgerow.rules.load import read_strategy
 from hedgerow.rules.overrides import changed
 from hedgerow.rules.schema import Strategy
 from hedgerow.rules.words import Loose, shown
+from hedgerow.study.evidence_words import Asked, EvidenceWords
 from hedgerow.study.extending import extensions_plain, read_extensions
 from hedgerow.study.words import AccountWords, CostWords, StudyWords
 from hedgerow.textfile import capped
@@ -38,7 +39,7 @@ class Study:
 
     `symbols` None means all stocks of the market; `first` and `last` are ISO dates, None for the data's own
     ends; `variants` are pairs of a name and its strategy, in the order of the file; `costs` are numbers, or a
-    model that gives them once the market is known.
+    model that gives them once the market is known; `evidence` None works none out.
     """
 
     name: str
@@ -53,6 +54,7 @@ class Study:
     costs: Costs | CostModel = field(default_factory=lambda: CostWords().costs())
     listings: Regime = "modern"
     yardstick: str = "buy and hold"
+    evidence: Asked | None = field(default_factory=Asked)
     seed: int = 1
     path: Path | None = None
     extensions: tuple[Extension, ...] = ()
@@ -76,6 +78,7 @@ class Study:
             "costs": self._costs_plain(),
             "variants": {name: {"strategy": strategy.plain()} for name, strategy in self.variants},
             "yardstick": self.yardstick,
+            "evidence": "none" if self.evidence is None else EvidenceWords.of(self.evidence).model_dump(),
             "seed": self.seed,
         }
         return {word: value for word, value in plain.items() if value not in ("", [])}
@@ -159,6 +162,7 @@ def _study(
         costs=words.chosen_costs,
         listings="historical" if words.pricing.listings == "historical" else "modern",
         yardstick=words.yardstick,
+        evidence=None if words.evidence is None else words.evidence.asked(),
         seed=words.seed,
         path=path,
     )

@@ -15,6 +15,7 @@ from hedgerow.kernels.layout import Costs
 from hedgerow.rules.base import Words
 from hedgerow.rules.figures import Number, Percent, Share, Whole
 from hedgerow.rules.words import Choice, Flag, Loose, Scalar, Text, WordsError, refuse, shown
+from hedgerow.study.evidence_words import EvidenceOrNone, EvidenceWords
 from hedgerow.study.extending import extension_faults
 from hedgerow.walk.account import COST_RANGES, DEFAULT_COSTS, MARGINS, NO_COSTS, Account
 
@@ -154,6 +155,7 @@ class StudyWords(Words):
     strategy: Any = None
     variants: Any = None
     yardstick: Annotated[str, Choice(("buy and hold", "none"))] = "buy and hold"
+    evidence: Annotated[EvidenceWords | None, EvidenceOrNone] = EvidenceWords()
     seed: Annotated[int, Whole(0, 2**31 - 1)] = 1
 
     @classmethod

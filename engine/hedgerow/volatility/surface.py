@@ -41,7 +41,7 @@ from hedgerow.volatility.model import SurfaceModel
 from hedgerow.volatility.observed import NONE, observed_level
 from hedgerow.volatility.registry import Bars
 
-__all__ = ["Surface", "SurfaceModel", "build"]
+__all__ = ["Surface", "SurfaceModel", "build", "with_smile"]
 
 LONGEST_DAYS = 1100
 _ANCHOR_HISTORY_SESSIONS = 252
@@ -82,6 +82,19 @@ def build(model: SurfaceModel, market: Market, days: tuple[int, int] = (1, LONGE
     surface = Surface(_frozen(level), _frozen(level if anchor is None else anchor), model.smile, model)
     _refuse_arbitrage(surface, days, bool(market.reports))
     return surface
+
+
+def with_smile(
+    surface: Surface, model: SurfaceModel, with_reports: bool, days: tuple[int, int] = (1, LONGEST_DAYS)
+) -> Surface:
+    """Return a surface with its level and anchor as they are and the smile of another model.
+
+    `model` may differ from the surface's own in what the smile holds (ratio, points, pull, skew and so on),
+    not in what the level is estimated from. Raises StudyError as `build` does.
+    """
+    changed = Surface(surface.level, surface.anchor, model.smile, model)
+    _refuse_arbitrage(changed, days, with_reports)
+    return changed
 
 
 def _frozen(values: Floats) -> Floats:

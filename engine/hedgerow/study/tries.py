@@ -1,0 +1,88 @@
+"""How many variants were ever tried on the same prices: a small record beside the runs of a project.
+
+One line of JSON a variant: `data`, the fingerprint of the prices, `variant`, a hash of everything about it
+that can change its result, and its name and study for people. A variant that was tried before has its line
+already, whatever it was called then, and is not counted again.
+"""
+
+from __future__ import annotations
+
+import hashlib
+import json
+import os
+from collections.abc import Mapping
+from pathlib import Path
+from typing import Any
+
+from hedgerow.market import Market
+from hedgerow.rules.schema import Strategy
+from hedgerow.study.declare import Study
+
+__all__ = ["RECORD", "keys_of", "record_tries", "tried_before"]
+
+RECORD = "tries.jsonl"
+"""Name of the record; it lies in the folder of the runs."""
+
+_ABOUT_PEOPLE = ("name", "about", "question", "variants", "market", "evidence", "seed", "yardstick")
+"""What a study says that changes no result of a variant; the market is known by its fingerprint."""
+
+
+def keys_of(study: Study) -> dict[str, str]:
+    """Return the key of every variant of a study by name: 32 hexadecimal digits of a SHA-256."""
+    shared = {word: value for word, value in study.plain().items() if word not in _ABOUT_PEOPLE}
+    return {name: _key(shared, strategy) for name, strategy in study.variants}
+
+
+def _key(shared: Mapping[str, Any], strategy: Strategy) -> str:
+    rule = {word: value for word, value in strategy.plain().items() if word not in _ABOUT_PEOPLE}
+    text = json.dumps([shared, rule], sort_keys=True, separators=(",", ":"), default=str)
+    return hashlib.sha256(text.encode("utf-8")).hexdigest()[:32]
+
+
+def tried_before(folder: str | Path, market: Market) -> frozenset[str]:
+    """Return the keys of all variants recorded in a folder as tried on a market's prices.
+
+    A line that cannot be read, cut short by a crash for example, is passed over: the record is a count, and a
+    count that is one too low is better than a run that cannot be made. Nothing there means none.
+    """
+    try:
+        lines = (Path(folder) / RECORD).read_text(encoding="utf-8", errors="replace").splitlines()
+    except OSError:
+        return frozenset()
+    rows = [_row(line) for line in lines]
+    return frozenset(
+        row["variant"] for row in rows if row.get("data") == market.fingerprint and "variant" in row
+    )
+
+
+def _row(line: str) -> dict[str, str]:
+    try:
+        row = json.loads(line)
+    except ValueError:
+        return {}
+    return {str(k): str(v) for k, v in row.items()} if isinstance(row, dict) else {}
+
+
+def record_tries(folder: str | Path, study: Study, market: Market) -> bool:
+    """Add the variants of a study that are not in the folder's record; return whether it could be written.
+
+    The new lines go to the end in one piece, so that runs side by side do not mix theirs.
+    """
+    known = tried_before(folder, market)
+    lines = [
+        json.dumps({"data": market.fingerprint, "variant": key, "name": name, "study": study.name})
+        for name, key in keys_of(study).items()
+        if key not in known
+    ]
+    if not lines:
+        return True
+    try:
+        Path(folder).mkdir(parents=True, exist_ok=True)
+        place = os.open(Path(folder) / RECORD, os.O_WRONLY | os.O_CREAT | os.O_APPEND, 0o666)
+        try:
+            os.write(place, "".join(f"{line}\n" for line in dict.fromkeys(lines)).encode("utf-8"))
+        finally:
+            os.close(place)
+    except OSError:
+        return False
+    return True
