@@ -76,7 +76,7 @@ def clock(**values: Any) -> Clock:
 
 def smile(model: SmileModel = FLAT_SMILE) -> Any:
     """A surface's parameters as a record."""
-    return np.array([tuple(model)], SMILE).view(np.recarray)[0]
+    return records(SMILE, **model._asdict())[0]
 
 
 def costs(given: Costs = FREE) -> Any:
@@ -127,7 +127,7 @@ def plan(*specs: Any, **values: Any) -> Any:
     usual |= dict.fromkeys(
         ("net_debit_most", "worst_most", "best_most", "odds_most", "spread_most"), math.inf
     )
-    usual |= {"most_positions": 10, "most_new": 10, "ladder": 1, "legs": len(specs)}
+    usual |= {"most_positions": 10, "most_new": 10, "ladder": 1, "legs": len(specs), "judged": 1}
     out = records(PLAN, **(usual | values))[0]
     for number, given in enumerate(specs):
         out.specs[number] = given

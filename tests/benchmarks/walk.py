@@ -5,7 +5,8 @@ over_c                  its time over that of a single-purpose C loop for the sa
 plain_python_over       the time of a straightforward loop in plain Python over the walk's, on a small market
 threads_2_speedup       two walks one after the other, over the two at once on two threads
 
-Each time is the best of a few. All loops must end with the same equity, or nothing is printed.
+Each time is the best of a few; what is compared is run in turns, so that a busy moment of the machine falls
+on both. All loops must end with the same equity, or nothing is printed.
 """
 
 from __future__ import annotations
@@ -28,14 +29,15 @@ from hedgerow.kernels.layout import Floats
 TOLERANCE = 1e-6  # relative, of equity at every close: rounding can move a cent, and a cent can move a lot
 
 
-def best(job: Callable[[], object], times: int) -> float:
-    """The shortest of a few runs, in seconds."""
-    taken = []
+def best(times: int, *jobs: Callable[[], object]) -> list[float]:
+    """The shortest of a few runs of each job, in seconds; the jobs take turns."""
+    taken: list[list[float]] = [[] for _ in jobs]
     for _ in range(times):
-        start = time.perf_counter()
-        job()
-        taken.append(time.perf_counter() - start)
-    return min(taken)
+        for job, runs in zip(jobs, taken, strict=True):
+            start = time.perf_counter()
+            job()
+            runs.append(time.perf_counter() - start)
+    return [min(runs) for runs in taken]
 
 
 def gap(found: Floats, expected: Floats) -> float:
@@ -75,20 +77,19 @@ def measure(sessions: int, symbols: int, rate: float, times: int) -> dict[str, f
     difference = same_result(stage)  # compiles, and warms every cache
     memory = peak_gigabytes()
     cells = sessions * symbols
-    walk = best(lambda: run_walk(stage), times)
-    plain_c = best(prepare_c(stage.inputs), times)
-    one_after_other = best(lambda: (run_walk(stage), run_walk(stage)), times)
-    together = best(lambda: at_once(lambda: run_walk(stage), 2), times)
+    walk, plain_c = best(times, lambda: run_walk(stage), prepare_c(stage.inputs))
+    one_after_other, together = best(
+        times, lambda: (run_walk(stage), run_walk(stage)), lambda: at_once(lambda: run_walk(stage), 2)
+    )
     small = make_stage(min(sessions, 1500), min(symbols, 20), rate=rate)
     same_result(small)
+    plain_python, small_walk = best(2, prepare_plain(small.inputs), lambda: run_walk(small))
     return {
         "sessions": sessions,
         "symbols": symbols,
         "ns_per_symbol_session": round(walk / cells * 1e9, 1),
         "over_c": round(walk / plain_c, 3),
-        "plain_python_over": round(
-            best(prepare_plain(small.inputs), 1) / best(lambda: run_walk(small), 5), 1
-        ),
+        "plain_python_over": round(plain_python / small_walk, 1),
         "threads_2_speedup": round(one_after_other / together, 2),
         "c_ns_per_symbol_session": round(plain_c / cells * 1e9, 1),
         "prepare_seconds": round(prepared, 2),
@@ -108,7 +109,7 @@ def main() -> None:
     parser.add_argument(
         "--rate", type=float, default=0.03, help="interest a year; 0: no put is exercised early"
     )
-    parser.add_argument("--times", type=int, default=3, help="runs of which the shortest counts")
+    parser.add_argument("--times", type=int, default=5, help="runs of which the shortest counts")
     given = parser.parse_args()
     figures = measure(given.sessions, given.symbols, given.rate, given.times)
     if given.json:

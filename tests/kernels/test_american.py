@@ -97,6 +97,30 @@ def test_the_european_value_stands_in_only_within_half_a_tick() -> None:
     assert 40 < stood_in < 200
 
 
+@given(
+    right=st.sampled_from([CALL, PUT]),
+    s=st.floats(5.0, 500.0),
+    t=st.floats(1e-3, 3.0),
+    r=st.floats(-0.03, 0.15),
+    v=st.floats(0.0, 2.0),
+    tick=st.sampled_from([0.01, 0.05, math.inf]),
+)
+def test_knowing_more_beforehand_changes_nothing(
+    right: int, s: float, t: float, r: float, v: float, tick: float
+) -> None:
+    """Knowing the strike against the forward gives the value of `american_or_european`, nearly to the bit.
+
+    Also without volatility, or at a negative rate. Half a tick is a step: near it either value may stand.
+    """
+    span = amer.Span(t, math.sqrt(t), r, math.exp(-r * t))
+    away = math.log(100.0 / s) - r * t
+    value = amer.on_forward(right, s, 100.0, away, v, span, tick)
+    expected = amer.american_or_european(right, s, 100.0, t, r, 0.0, v, tick)
+    bound = amer.early_exercise_bound(right, s, 100.0, t, r, 0.0, v)
+    if abs(bound - 0.5 * tick) > 1e-9:
+        assert value == pytest.approx(expected, rel=1e-9, abs=1e-9)
+
+
 scalars = {
     "s": st.floats(5.0, 500.0),
     "t": st.floats(1e-3, 3.0),

@@ -248,3 +248,24 @@ def test_more_signals_than_bits() -> None:
     assert len(ops_of(made(exit=[exit_rule({"any": [*many[:62], held]})]), 0)) == 2 * 63 - 1
     with pytest.raises(RulesError, match="more than 62 different signals"):
         made(exit=[exit_rule({"any": [*many, held]})])
+
+
+CALL = {"call": leg("sell", "call", 10, "weekly", strike={"from_spot": "0%"})}
+PUT = {"put": leg("sell", "put", 10, "weekly", strike={"from_spot": "0%"})}
+
+
+@pytest.mark.parametrize(
+    ("judged", "words"),
+    [
+        (0, {}),
+        (0, {"accept": {"net_credit": True, "spread_to_premium": {"at_most": "90%"}}}),
+        (1, {"accept": {"worst_loss": {"at_most": "5%"}}}),
+        (1, {"accept": {"odds_of_best": {"at_least": "50%"}}}),
+        (0, {"legs": CALL}),
+        (1, {"legs": CALL | PUT}),
+        (1, {"shares": "none", "legs": PUT}),
+    ],
+)
+def test_an_entry_is_judged_only_where_something_asks_for_it(judged: int, words: dict[str, Any]) -> None:
+    """A bound on worst, best or odds, or something that may be owed, needs the figures at the decision."""
+    assert made(**words).plan[0]["judged"] == judged

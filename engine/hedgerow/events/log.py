@@ -7,7 +7,7 @@ Events stand in the order in which they happened.
 from __future__ import annotations
 
 from collections.abc import Iterable, Mapping
-from dataclasses import dataclass
+from dataclasses import InitVar, dataclass
 from typing import Any
 
 import numpy as np
@@ -84,7 +84,8 @@ class LogMeta:
 class EventLog:
     """A whole run: events (E,), terms (P,), days (T,) and marks (M,), read-only records.
 
-    `marks` may be empty, or hold only the last session, or every position at every close.
+    `marks` may be empty, or hold only the last session, or every position at every close. Codes are looked
+    through unless they are `known` to lie within the meta, as those a walk has just written are.
     """
 
     meta: LogMeta
@@ -92,8 +93,9 @@ class EventLog:
     terms: Records
     days: Records
     marks: Records
+    known: InitVar[bool] = False
 
-    def __post_init__(self) -> None:
+    def __post_init__(self, known: bool) -> None:
         for name, layout in LAYOUTS.items():
             table = np.asarray(getattr(self, name))
             if table.dtype != layout or table.ndim != 1:
@@ -101,7 +103,8 @@ class EventLog:
             view = table.view()
             view.flags.writeable = False
             object.__setattr__(self, name, view)
-        _check_codes(self)
+        if not known:
+            _check_codes(self)
 
     @classmethod
     def join(

@@ -169,7 +169,8 @@ def _read(place: Path, file: pq.ParquetFile) -> tuple[EventLog, ...]:
     for variant in described["variants"]:
         dates = described["calendars"][variant["calendar"]]
         meta = LogMeta.from_dict({**variant["meta"], "dates": dates})
-        logs.append(EventLog(meta, *(_table(file, groups, name, variant["rows"][name]) for name in LAYOUTS)))
+        tables = {name: _table(file, groups, name, variant["rows"][name]) for name in LAYOUTS}
+        logs.append(EventLog(meta, **tables, known=False))
     return tuple(logs)
 
 

@@ -11,23 +11,35 @@ a put gets the larger of its European and intrinsic value.
 from __future__ import annotations
 
 import math
+from typing import NamedTuple
 
 from hedgerow.kernels.boundary import Problem, exercise_depths, exercise_premium, is_exercised, top_of
 from hedgerow.kernels.exercise import is_tabled, tabled_premium
 from hedgerow.kernels.jit import compiled
 from hedgerow.kernels.layout import CALL, PUT
 from hedgerow.kernels.lognormal import discount, european, intrinsic, is_certain
-from hedgerow.kernels.normal import cdf
+from hedgerow.kernels.normal import ROOT_HALF, cdf
 
 __all__ = [
+    "Span",
     "american",
     "american_or_european",
     "call_exercise_is_due_before_dividend",
     "early_exercise_bound",
+    "on_forward",
     "put_exercise_is_due",
 ]
 
 _NOTHING = 1e-9  # an early exercise premium under this share of the strike is left out
+
+
+class Span(NamedTuple):
+    """The time to an expiry, worked out once for all options that expire then."""
+
+    years: float
+    root: float  # of the years
+    rate: float
+    discount: float  # of money due at the expiry
 
 
 @compiled
@@ -40,9 +52,14 @@ def _most_likely(
     argument has one turning point, at s = a/m, so the chance is largest there or at the end.
     """
     away = math.log(spot / level)
+    return _reached(away, years, rate - dividend_yield - 0.5 * volatility * volatility, volatility)
+
+
+@compiled
+def _reached(away: float, years: float, drift: float, volatility: float) -> float:
+    """The largest chance, over all times up to `years`, to be `away` or more under today's logarithm."""
     if away <= 0.0:
         return 1.0
-    drift = rate - dividend_yield - 0.5 * volatility * volatility
     when = years
     if drift > 0.0:
         when = min(years, away / drift)
@@ -130,14 +147,20 @@ def _put_premium(
     """
     if rate < 0.0 or not most > _NOTHING * strike:
         return 0.0
-    log_moneyness, root = math.log(spot / strike), math.sqrt(years)
+    log_moneyness = math.log(spot / strike)
+    if dividend_yield == 0.0:
+        return min(strike * _plain_premium(log_moneyness, years, math.sqrt(years), rate, volatility), most)
+    problem = Problem(years, rate, dividend_yield, volatility, top_of(rate, dividend_yield))
+    return min(strike * _solved_premium(log_moneyness, problem), most)
+
+
+@compiled
+def _plain_premium(log_moneyness: float, years: float, root: float, rate: float, volatility: float) -> float:
+    """Value what early exercise adds to a put without dividends that is not exercised now, in strikes."""
     leaning, deviation = rate * root / volatility, volatility * root
-    if dividend_yield == 0.0 and is_tabled(leaning, deviation):
-        extra = max(tabled_premium(log_moneyness, leaning, deviation), 0.0)
-    else:
-        problem = Problem(years, rate, dividend_yield, volatility, top_of(rate, dividend_yield))
-        extra = _solved_premium(log_moneyness, problem)
-    return min(strike * extra, most)
+    if is_tabled(leaning, deviation):
+        return max(tabled_premium(log_moneyness, leaning, deviation), 0.0)
+    return _solved_premium(log_moneyness, Problem(years, rate, 0.0, volatility, top_of(rate, 0.0)))
 
 
 @compiled
@@ -205,6 +228,37 @@ def american_or_european(
     extra = _early_exercise(right, spot, strike, years, rate, dividend_yield, volatility, most)
     value, gain = plain + extra, intrinsic(right, spot, strike)
     return gain if value < gain else value
+
+
+@compiled
+def on_forward(
+    right: int, spot: float, strike: float, away: float, volatility: float, span: Span, tick: float
+) -> float:
+    """Value what `american_or_european` values, without dividends, where more is known beforehand.
+
+    `away` is ln(strike / forward). An infinite `tick` makes it European. One formula less a few logarithms:
+    with the strike's own K = K e^(-r T) + interest, the bound on early exercise is that interest times the
+    largest chance to be under the strike.
+    """
+    if not (spot > 0.0 and volatility > 0.0 and span.rate >= 0.0):
+        return american_or_european(right, spot, strike, span.years, span.rate, 0.0, volatility, tick)
+    owed = strike * span.discount
+    deviation = volatility * span.root
+    d1 = 0.5 * deviation - away / deviation
+    a, b = d1 * ROOT_HALF, (d1 - deviation) * ROOT_HALF
+    if right == CALL:
+        return max(0.5 * (spot * math.erfc(-a) - owed * math.erfc(-b)), 0.0)
+    plain = max(0.5 * (owed * math.erfc(b) - spot * math.erfc(a)), 0.0)
+    interest = strike - owed
+    if interest < 0.5 * tick:
+        return plain
+    over = -(away + span.rate * span.years)
+    drift = span.rate - 0.5 * volatility * volatility
+    most = interest * _reached(over, span.years, drift, volatility)
+    if most < 0.5 * tick:
+        return plain
+    extra = strike * _plain_premium(over, span.years, span.root, span.rate, volatility)
+    return max(plain + min(extra, most), strike - spot)
 
 
 @compiled

@@ -64,10 +64,10 @@ def list_candidates(world: World, desk: Desk, session: int, queue: Floats) -> in
     size = 0
     ranked = desk.plan.rank_figure != RANK_NONE or world.rank.shape[0] > 1
     for symbol in range(world.bars.shape[1]):
-        if world.may_enter[session, symbol] == 0 or world.bars[session, symbol].signs & HAS_BAR == 0:
+        if world.may_enter[session, symbol] == 0:
             continue
         slot = _free_slot(world, desk.plan, session, symbol)
-        if slot < 0:
+        if slot < 0 or world.bars[session, symbol].signs & HAS_BAR == 0:
             continue
         at = size
         if ranked:

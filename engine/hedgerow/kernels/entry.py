@@ -103,12 +103,13 @@ def consider(desk: Desk, position: Any, scene: Scene, clock: Clock) -> int:
     if why != WHY_NONE:
         return why
     debit, credit, fees = lot_cost(desk, position, spot, clock)
-    shares = plan.shares * LOT_SHARES
-    horizon = first_expiry(position.legs, plan.legs)
-    moment = (spot, bar, clock, desk.smile)
-    figures = measure(position.legs, plan.legs, shares, debit, horizon, moment, desk.scratch)
+    figures = (0.0, 0.0, 0.0, 0.0, 0.0, 0.0)
+    if plan.judged == 1:
+        horizon, moment = first_expiry(position.legs, plan.legs), (spot, bar, clock, desk.smile)
+        shares = plan.shares * LOT_SHARES
+        figures = measure(position.legs, plan.legs, shares, debit, horizon, moment, desk.scratch)
     owed = figures[5]
-    wide = spread_share(desk, position, clock)
+    wide = spread_share(desk, position, clock) if plan.spread_most < math.inf else 0.0
     why = judge(plan, debit + owed, credit, LOT_SHARES * spot, figures, wide)
     if why != WHY_NONE:
         return why
@@ -236,13 +237,21 @@ def _buy(desk: Desk, position: Any, session: int, spot: float, clock: Clock) -> 
 
 
 @step
+def _value_wanted(desk: Desk, position: Any, spot: float, bar: Any, clock: Clock) -> None:
+    """Price every wanted leg at this moment."""
+    for k in range(desk.plan.legs):
+        leg = position.legs[k]
+        if leg.status == WANTED:
+            price_leg(leg, spot, bar, clock, desk.smile)
+
+
+@step
 def fill_entry(desk: Desk, position: Any, session: int, spot: float, bar: Any, clock: Clock) -> None:
     """Fill an ordered position at `spot`, with as many of its lots as cash allows; `bar` knows volatility."""
     plan = desk.plan
     _take_back(desk, position)
-    for k in range(plan.legs):
-        if position.legs[k].status == WANTED:
-            price_leg(position.legs[k], spot, bar, clock, desk.smile)
+    if plan.fill_close == 0:  # else all was valued a moment ago
+        _value_wanted(desk, position, spot, bar, clock)
     debit, credit, fees = lot_cost(desk, position, spot, clock)
     shares = plan.shares * LOT_SHARES
     horizon = first_expiry(position.legs, plan.legs)

@@ -35,6 +35,7 @@ __all__ = [
 ]
 
 FILE = Path(__file__).with_name("exercise.npy")
+Weights = tuple[float, float, float, float]
 LEAST, MOST, ROWS = 1e-5, 3.0, 34
 NARROWEST, WIDEST, COLUMNS = 1e-4, 1.8, 8
 FARTHEST, PLACES = 7.0, 21
@@ -79,7 +80,7 @@ def _before(place: float, points: int) -> int:
 
 
 @compiled
-def _cubic(x: float) -> tuple[float, float, float, float]:
+def _cubic(x: float) -> Weights:
     """Weights of the points -1, 0, 1, 2 in cubic interpolation to `x`."""
     low, high = x * (x - 1.0), (x + 1.0) * (x - 2.0)
     return -low * (x - 2.0) / 6.0, high * (x - 1.0) * 0.5, -high * x * 0.5, low * (x + 1.0) / 6.0
@@ -90,7 +91,12 @@ def tabled_depth(leaning: float, deviation: float) -> float:
     """ln(strike / boundary) over `deviation` for a put that the table covers."""
     row, column = _row(leaning), _column(deviation)
     i, j = _before(row, ROWS), _before(column, COLUMNS)
-    down, across = _cubic(row - i), _cubic(column - j)
+    return _depth(i, j, _cubic(row - i), _cubic(column - j))
+
+
+@compiled
+def _depth(i: int, j: int, down: Weights, across: Weights) -> float:
+    """The boundary's distance between the points around (i, j)."""
     depth = 0.0
     for a in range(4):
         for b in range(4):
@@ -104,15 +110,17 @@ def tabled_premium(log_moneyness: float, leaning: float, deviation: float) -> fl
 
     `log_moneyness` is ln(price / strike). EXERCISED stands for a price at or under the boundary.
     """
-    distance = log_moneyness / deviation + tabled_depth(leaning, deviation)
+    row, column = _row(leaning), _column(deviation)
+    i, j = _before(row, ROWS), _before(column, COLUMNS)
+    down, across = _cubic(row - i), _cubic(column - j)
+    distance = log_moneyness / deviation + _depth(i, j, down, across)
     if distance <= 0.0:
         return EXERCISED
     if distance >= FARTHEST:
         return 0.0
-    row, column = _row(leaning), _column(deviation)
     place = (math.sqrt(distance + BEND * BEND) - BEND) * PER_STRETCHED
-    i, j, k = _before(row, ROWS), _before(column, COLUMNS), _before(place, PLACES)
-    down, across, along = _cubic(row - i), _cubic(column - j), _cubic(place - k)
+    k = _before(place, PLACES)
+    along = _cubic(place - k)
     z0, z1, z2, z3 = 0.0, 0.0, 0.0, 0.0
     for a in range(4):
         for b in range(4):

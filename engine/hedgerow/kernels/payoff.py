@@ -12,8 +12,9 @@ from typing import Any
 from hedgerow.kernels.jit import step
 from hedgerow.kernels.layout import CALL, DAYS_A_YEAR, Floats
 from hedgerow.kernels.lognormal import chance_above, european, intrinsic
-from hedgerow.kernels.quote import at_the_money_for, escrow
-from hedgerow.kernels.smile import volatility_at
+from hedgerow.kernels.normal import cdf
+from hedgerow.kernels.quote import at_the_money_for, escrow, tenor_of
+from hedgerow.kernels.smile import bent
 from hedgerow.kernels.state import Clock
 
 __all__ = ["chance_beyond", "first_expiry", "measure", "payoff"]
@@ -89,13 +90,15 @@ def chance_beyond(price: float, horizon: int, moment: tuple[float, Any, Clock, A
     spot, bar, clock, smile = moment
     if price <= 0.0:
         return 1.0
-    days = horizon - clock.ordinal + clock.extra_days
-    years = days / DAYS_A_YEAR
+    tenor = tenor_of(horizon, clock, smile)
     base = spot - escrow(bar, horizon, clock)
     atm = at_the_money_for(bar, horizon, clock, smile)
-    away = math.log(price / base) - clock.rate * years
-    volatility = volatility_at(atm, away, years, days, smile)
-    return chance_above(base, price, years, clock.rate, 0.0, volatility)
+    away = math.log(price / base) - clock.rate * tenor.years
+    volatility = bent(atm, away / (atm * tenor.root), tenor.scale, smile)
+    deviation = volatility * tenor.root
+    if not deviation > 0.0:
+        return chance_above(base, price, tenor.years, clock.rate, 0.0, volatility)
+    return cdf(-away / deviation - 0.5 * deviation)
 
 
 @step

@@ -17,6 +17,7 @@ __all__ = [
     "at_the_money",
     "at_the_money_pulled",
     "bend_of_strike",
+    "bent",
     "pull_weight",
     "skew_scale",
     "volatility_at",
@@ -88,15 +89,22 @@ def bend_of_strike(deviations: float, scale: float, model: SmileModel) -> float:
 
 
 @compiled
+def bent(atm: float, deviations: float, scale: float, model: SmileModel) -> float:
+    """Volatility (annual fraction) at `deviations` standardized log-moneyness; flat where that is NaN."""
+    if (model.skew == 0.0 and model.curvature == 0.0) or math.isnan(deviations):
+        return atm
+    return atm * bend_of_strike(deviations, scale, model)
+
+
+@compiled
 def volatility_at(atm: float, log_moneyness: float, years: float, days: float, model: SmileModel) -> float:
     """Volatility (annual fraction) of the option whose ln(strike / forward) is `log_moneyness`.
 
     `years` is the time left, `days` the calendar days to expiry; without time left the smile is flat.
     """
-    if (model.skew == 0.0 and model.curvature == 0.0) or not (atm > 0.0 and years > 0.0):
+    if not (atm > 0.0 and years > 0.0):
         return atm
-    deviations = log_moneyness / (atm * math.sqrt(years))
-    return atm * bend_of_strike(deviations, skew_scale(days, model), model)
+    return bent(atm, log_moneyness / (atm * math.sqrt(years)), skew_scale(days, model), model)
 
 
 @compiled

@@ -82,7 +82,22 @@ OP = np.dtype([("value", np.float64), ("code", np.int32), ("arg", np.int32)], al
 
 # the rule as a whole, the account and the walk's own switches
 COSTS = np.dtype([(name, np.float64) for name in Costs._fields])
-SMILE = np.dtype([(name, np.float64) for name in SmileModel._fields])
+TENORS = 128
+
+# what the days to an expiry and the rate decide; the walk works it out once, since all symbols share it
+TENOR = np.dtype(
+    [
+        ("days", np.float64),  # calendar days to expiry
+        ("rate", np.float64),
+        ("discount", np.float64),
+        ("years", np.float64),
+        ("root", np.float64),  # of the years
+        ("weight", np.float64),  # of today's level against the anchor
+        ("scale", np.float64),  # of skew and curvature; 0 nothing worked out yet
+    ],
+    align=True,
+)
+SMILE = np.dtype([(name, np.float64) for name in SmileModel._fields] + [("tenors", TENOR, (TENORS,))])
 
 PLAN = np.dtype(
     [
@@ -112,6 +127,7 @@ PLAN = np.dtype(
         ("spacing", np.int32),  # sessions between entries of one symbol
         ("cooling", np.int32),  # sessions without entry after a losing position
         ("moves", np.int32),  # 1: some leg is rolled or added later
+        ("judged", np.int32),  # 1: an entry has to know best, worst, odds or what could be owed
         ("order", np.int32, (MAX_LEGS,)),  # legs in the order in which their strikes are chosen
         ("exit_start", np.int32, (MOST_EXITS,)),  # of each exit rule, in the operations
         ("exit_length", np.int32, (MOST_EXITS,)),

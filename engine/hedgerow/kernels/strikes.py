@@ -8,7 +8,6 @@ from typing import Any
 from hedgerow.kernels.jit import step
 from hedgerow.kernels.layout import (
     CALL,
-    DAYS_A_YEAR,
     DELTA,
     DEVIATIONS,
     FROM_SPOT,
@@ -20,8 +19,8 @@ from hedgerow.kernels.layout import (
 )
 from hedgerow.kernels.listing import fill_price, is_listed, snap, steps_from
 from hedgerow.kernels.normal import quantile
-from hedgerow.kernels.quote import at_the_money_for, forward_of, quote
-from hedgerow.kernels.smile import volatility_at
+from hedgerow.kernels.quote import at_the_money_for, forward_of, quote, tenor_of
+from hedgerow.kernels.smile import bent
 from hedgerow.kernels.state import Clock
 
 __all__ = ["choose_strike", "premium", "wanted_strike"]
@@ -53,18 +52,17 @@ def _beyond(spec: Any, expiry: int, spot: float, bar: Any, clock: Clock, smile: 
     The volatility depends on the strike, so that a few rounds of fixed-point iteration are made; what is
     left is far below a listed step.
     """
-    days = expiry - clock.ordinal + clock.extra_days
-    years = days / DAYS_A_YEAR
+    tenor = tenor_of(expiry, clock, smile)
     forward = forward_of(spot, bar, expiry, clock)
     atm = at_the_money_for(bar, expiry, clock, smile)
     if spec.strike_rule == DEVIATIONS:
-        return forward * math.exp(spec.strike_value * atm * math.sqrt(years))
+        return forward * math.exp(spec.strike_value * atm * tenor.root)
     sign = 1.0 if spec.right == CALL else -1.0
     distance = quantile(spec.strike_value) * sign
     tilt = 0.5 if spec.strike_rule == DELTA else -0.5
     away = 0.0
     for _ in range(FIXED_POINT_ROUNDS):
-        deviation = volatility_at(atm, away, years, days, smile) * math.sqrt(years)
+        deviation = bent(atm, away / (atm * tenor.root), tenor.scale, smile) * tenor.root
         away = tilt * deviation * deviation - distance * deviation
     return forward * math.exp(away)
 

@@ -293,6 +293,21 @@ def _legs(plan: Records, strategy: Strategy, bits: _Bits) -> None:
     plan["moves"] = int(any(leg.roll is not None or leg.add_when is not None for leg in strategy.legs))
 
 
+def _is_judged(strategy: Strategy) -> bool:
+    """Whether an entry must know best, worst or odds, or may owe more than its shares bring.
+
+    Shares held cover as many written calls, so that nothing can be owed; a written put may owe its strike.
+    """
+    accept = strategy.accept
+    if accept is not None:
+        bounds = (accept.worst_loss, accept.best_gain, accept.odds_of_best, accept.best_over_worst)
+        if any(bound is not None for bound in bounds):
+            return True
+    written = [leg for leg in strategy.legs if leg.sign < 0]
+    calls = sum(leg.ratio for leg in written)
+    return strategy.shares != "long" or calls > 1.0 or any(leg.right == "put" for leg in written)
+
+
 def _plan(strategy: Strategy, bits: _Bits) -> Records:
     """The strategy's part of the plan."""
     plans = np.zeros(1, PLAN)
@@ -308,6 +323,7 @@ def _plan(strategy: Strategy, bits: _Bits) -> Records:
     _bounds(plan, "odds_least", "odds_most", None if accept is None else accept.odds_of_best)
     _bounds(plan, "ratio_least", "", None if accept is None else accept.best_over_worst)
     _bounds(plan, "", "spread_most", None if accept is None else accept.spread_to_premium)
+    plan["judged"] = int(_is_judged(strategy))
     plan["fill_close"] = int(strategy.fill == "close")
     plan["legs"], plan["exits"] = len(strategy.legs), len(strategy.exit)
     plan["keep_shares"] = int(strategy.after_assignment == "keep")

@@ -108,7 +108,11 @@ def _sessions(tape: Tape, program: Program) -> Records:
 
 def _one(values: tuple[float, ...], layout: np.dtype[np.void]) -> Records:
     """One record of plain numbers."""
-    return np.array([tuple(values)], layout).view(np.recarray)
+    assert layout.names is not None
+    out = np.zeros(1, layout)
+    for name, value in zip(layout.names, values, strict=False):  # what a walk adds for itself begins empty
+        out[name] = value
+    return out.view(np.recarray)
 
 
 def make_world(tape: Tape, program: Program, terms: Terms, tables: Tables) -> World:
@@ -206,4 +210,4 @@ def walk_program(
         session = _step(world, session, stop, window.start, queue)
         if progress is not None:
             progress(session - window.start, window.stop - window.start)
-    return EventLog(_meta(market, program, account, variant), **tables.cut(world.totals[0]))
+    return EventLog(_meta(market, program, account, variant), **tables.cut(world.totals[0]), known=True)
