@@ -82,6 +82,10 @@ class InputError(HedgerowError):
         self.faults: tuple[Fault, ...] = tuple(faults)
         super().__init__("\n".join(str(fault) for fault in self.faults))
 
+    def __reduce__(self) -> tuple[type[Self], tuple[tuple[Fault, ...]]]:
+        """How it travels between processes: as its faults, not as its text."""
+        return type(self), (self.faults,)
+
     @classmethod
     def one(cls, where: str, code: str, found: str, allowed: str = "", remedy: str = "") -> Self:
         """An error of one fault whose line is not known."""

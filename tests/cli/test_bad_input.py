@@ -299,7 +299,7 @@ def full(*_: Any, **__: Any) -> None:
     raise OSError(errno.ENOSPC, os.strerror(errno.ENOSPC))
 
 
-@pytest.mark.parametrize("writer", ["write_logs", "_parquet", "_move"])
+@pytest.mark.parametrize("writer", ["write_logs", "write_frame", "move_in"])
 def test_a_full_disk(hedgerow: Runner, monkeypatch: pytest.MonkeyPatch, writer: str) -> None:
     """At the first file, among the others, and at the last step: one message, nothing left, old runs kept."""
     assert hedgerow("run", "study.yaml", "--out", "mine", "--quiet").code == 0

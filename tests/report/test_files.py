@@ -144,7 +144,7 @@ def test_a_write_that_breaks_leaves_the_place_as_it_was(
     def full(*_: object, **__: object) -> None:
         raise OSError(28, "No space left on device")
 
-    monkeypatch.setattr("hedgerow.report.files._parquet", full)
+    monkeypatch.setattr("hedgerow.report.files.write_frame", full)
     with pytest.raises(PlaceError, match="No space left on device"):
         write(folder, replace=True)
     if standing:
@@ -177,7 +177,7 @@ def test_ctrl_c_leaves_nothing(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) 
     def interrupted(*_: object, **__: object) -> None:
         raise KeyboardInterrupt
 
-    monkeypatch.setattr("hedgerow.report.files._parquet", interrupted)
+    monkeypatch.setattr("hedgerow.report.files.write_frame", interrupted)
     with pytest.raises(KeyboardInterrupt):
         write(tmp_path / "run")
     assert list(tmp_path.iterdir()) == []

@@ -15,6 +15,7 @@ from hedgerow.errors import StudyError
 from hedgerow.kernels.layout import Costs
 from hedgerow.rules.load import load_strategy
 from hedgerow.study.declare import Study, load_study, study_of_strategy
+from hedgerow.study.trials import trials_of
 from hedgerow.study.words import CostWords, Day
 from hedgerow.volatility.model import PRESETS, SurfaceModel
 from hedgerow.walk.account import DEFAULT_COSTS, NO_COSTS, Account
@@ -132,7 +133,8 @@ def test_shipped_studies(path: Path) -> None:
     """Each is right, has several variants that differ, a question, and comes back from its own words."""
     study = load_study(path)
     assert study.question
-    assert len({strategy for _, strategy in study.variants}) == len(study.variants) > 1
+    trials = trials_of(study)
+    assert len({trials.strategy(number) for number in range(len(trials))}) == len(trials) > 1
     assert (study.market / "prices.csv").exists()
     assert replace(load_study(study.plain()), path=path) == study
 

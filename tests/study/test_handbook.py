@@ -11,6 +11,8 @@ import pytest
 from hedgerow.rules.document import tree_of_text
 from hedgerow.study.declare import read_study
 from hedgerow.study.evidence_words import Asked, EvidenceWords
+from hedgerow.study.gridwords import WalkForwardWords
+from hedgerow.study.trials import trials_of
 from hedgerow.study.words import AccountWords, CostWords, PricingWords, StudyWords, WindowWords
 from hedgerow.volatility.model import PRESETS, RANGES
 from rule_words import collar
@@ -22,10 +24,10 @@ ROWS = {
     for cells in (line.split("|") for line in HANDBOOK.splitlines())
     if len(cells) > 4 and cells[1].startswith(" `")
 }
-FIRST, VARIANTS = re.findall(r"```yaml\n(.*?)```", HANDBOOK, flags=re.DOTALL)
+FIRST, VARIANTS, GRIDS = re.findall(r"```yaml\n(.*?)```", HANDBOOK, flags=re.DOTALL)
 
 
-@pytest.mark.parametrize("model", [StudyWords, AccountWords, CostWords, EvidenceWords])
+@pytest.mark.parametrize("model", [StudyWords, AccountWords, CostWords, EvidenceWords, WalkForwardWords])
 def test_every_word_has_a_row(model: Any) -> None:
     """Tables hold every word of the models."""
     assert set(model.words()) <= set(ROWS)
@@ -84,7 +86,7 @@ def test_first_example_is_right() -> None:
 
 
 def test_example_of_variants_is_right() -> None:
-    """Every kind of change in it can be made on a collar with an exit called `cut`."""
+    """Every kind of change in it can be made on the weekly collar with an exit called `cut`."""
     base = collar(exit=[{"name": "cut", "if": {"loss": {"at_least": "2%"}}}])
     tree = tree_of_text("name: a\nmarket: ../datasets/orchard-bay\n" + VARIANTS, "README.md")
     tree.plain["strategy"] = base
@@ -92,3 +94,16 @@ def test_example_of_variants_is_right() -> None:
     assert [str(fault) for fault in faults] == []
     assert study is not None
     assert len(study.variants) == 8
+
+
+def test_example_of_a_grid_is_right() -> None:
+    """Its 54 combinations can be made on the weekly collar, and 18 drawn of them."""
+    tree = tree_of_text("name: a\nmarket: ../datasets/orchard-bay\n" + GRIDS, "README.md")
+    tree.plain["strategy"] = "../strategies/collar-weekly.yaml"
+    study, faults = read_study(tree, CONFIGS)
+    assert [str(fault) for fault in faults] == []
+    assert study is not None
+    assert study.grid is not None
+    assert study.grid.size == 54
+    trials_of(study).check()
+    assert 9 < len(trials_of(study)) <= 18

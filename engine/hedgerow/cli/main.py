@@ -11,6 +11,7 @@ import typer
 
 from hedgerow import __version__
 from hedgerow.cli import data, extensions, rules
+from hedgerow.cli.look import look
 from hedgerow.cli.run import run
 from hedgerow.errors import HedgerowError
 
@@ -25,6 +26,7 @@ app = typer.Typer(
     pretty_exceptions_enable=False,
 )
 app.command()(run)
+app.command()(look)
 app.add_typer(data.app, name="data")
 app.add_typer(rules.app, name="rules")
 app.add_typer(extensions.app, name="extensions")

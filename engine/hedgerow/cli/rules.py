@@ -15,11 +15,12 @@ if TYPE_CHECKING:
     from hedgerow.rules.document import Tree
     from hedgerow.rules.glossary import Section
     from hedgerow.rules.schema import Strategy
+    from hedgerow.study.declare import Study
 
 __all__ = ["app"]
 
 WIDTH = 100
-STUDY_WORDS = ("market", "strategy", "variants", "account", "window", "pricing", "costs")
+STUDY_WORDS = ("market", "strategy", "variants", "grid", "account", "window", "pricing", "costs")
 
 app = typer.Typer(name="rules", help="Check, explain and list the rule language.", no_args_is_help=True)
 
@@ -120,13 +121,29 @@ def _checked(path: Path) -> tuple[str, list[Fault]]:
         from hedgerow.study.declare import read_study
 
         study, faults = read_study(tree, path.parent, path)
-        count = 0 if study is None else len(study.variants)
+        count, more = _tried(study, path)
+        faults += more
         name = "" if study is None else study.name
         return f"ok  {path}: study `{name}`, {_counted(count, 'variant')}", capped(faults)
     strategy, faults = read_strategy(tree)
     count = 0 if strategy is None else len(strategy.legs)
     name = "" if strategy is None else strategy.name
     return f"ok  {path}: strategy `{name}`, {_counted(count, 'leg')}", capped(faults)
+
+
+def _tried(study: Study | None, path: Path) -> tuple[int, list[Fault]]:
+    """How many variants a study tries, and the faults of combinations of its grid."""
+    from hedgerow.errors import StudyError
+    from hedgerow.study.trials import trials_of
+
+    if study is None:
+        return 0, []
+    trials = trials_of(study)
+    try:
+        trials.check(str(path))
+    except StudyError as error:
+        return len(trials), list(error.faults)
+    return len(trials), []
 
 
 def _strategies(path: Path) -> Iterator[Strategy]:

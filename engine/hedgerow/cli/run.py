@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
+import itertools
 import json
 import sys
+from collections.abc import Iterator
 from pathlib import Path
 from typing import TYPE_CHECKING, Annotated, Any
 
@@ -35,7 +37,29 @@ Out = Annotated[Path | None, typer.Option("--out", help="Folder for the ledgers;
 Replace = Annotated[bool, typer.Option("--replace", help="Overwrite a finished run in that folder.")]
 Json = Annotated[bool, typer.Option("--json", help="Print one JSON object for programs.")]
 Quiet = Annotated[bool, typer.Option("--quiet", help="Write the folder and print only its name.")]
-Workers = Annotated[int, typer.Option("--workers", min=1, max=64, help="Threads for the variants.")]
+MOST_WORKERS = 64
+
+
+def _where(text: str) -> int | str:
+    """Where variants run: so many threads, or the address of a cluster. Raises BadParameter."""
+    if "://" in text:
+        return text
+    if not text.isdecimal() or not 1 <= int(text) <= MOST_WORKERS:
+        told = f"{text!r} is neither a number of threads from 1 to {MOST_WORKERS} nor an address"
+        raise typer.BadParameter(f"{told} such as tls://host:8786")
+    return int(text)
+
+
+Workers = Annotated[
+    Any,
+    typer.Option(
+        "--workers",
+        "--cluster",
+        parser=_where,
+        metavar="N|ADDRESS",
+        help="Threads for the variants; for a large study also a Dask scheduler, such as tls://host:8786.",
+    ),
+]
 
 
 def run(
@@ -45,14 +69,20 @@ def run(
     replace: Replace = False,
     as_json: Json = False,
     quiet: Quiet = False,
-    workers: Workers = 2,
+    workers: Workers = "2",
     extension: Extensions = None,
 ) -> None:
     """Replay a study and compare its variants; leave a folder of ledgers."""
     from hedgerow.report.files import check_place, write_run
 
     study = _study(file, market, extension or [])
-    place = out or _usual_place(study.name)
+    if study.is_large:
+        from hedgerow.cli.large import How, run_large_study
+
+        run_large_study(study, How(out, replace, as_json, quiet, workers), _usual_places(study.name))
+        return
+    _no_cluster(workers)
+    place = out or next(place for place in _usual_places(study.name) if not place.exists())
     check_place(place, replace)
     result = _walked(study, workers)
     ledgers = [one.ledger for one in result.results]
@@ -113,13 +143,21 @@ def _study(file: Path, market: Path | None, extensions: list[str]) -> Study:
     return study_of_strategy(file, market, **named)
 
 
-def _usual_place(name: str) -> Path:
-    """runs/ and the study's name as a file name; a number is added where a run stands already."""
+def _no_cluster(workers: int | str) -> None:
+    """Raise StudyError when a cluster was asked for what is not worth one."""
+    from hedgerow.errors import StudyError
+
+    if isinstance(workers, str):
+        found = "this study names its variants one by one, and only a large study runs on a cluster"
+        remedy = "leave --cluster out, or write a grid"
+        raise StudyError.one(f"--cluster {workers}", "not-large", found, remedy=remedy)
+
+
+def _usual_places(name: str) -> Iterator[Path]:
+    """runs/ and the study's name as a file name, then the same with numbers."""
     plain = "".join(letter if letter.isalnum() else "-" for letter in name.lower()).strip("-") or "run"
-    place, number = RUNS / plain, 2
-    while place.exists():
-        place, number = RUNS / f"{plain}-{number}", number + 1
-    return place
+    yield RUNS / plain
+    yield from (RUNS / f"{plain}-{number}" for number in itertools.count(2))
 
 
 def _walked(study: Study, workers: int) -> StudyResult:

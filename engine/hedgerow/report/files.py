@@ -21,7 +21,18 @@ from hedgerow.evidence.figures import Summary
 from hedgerow.evidence.findings import Evidence
 from hedgerow.ledger import Ledger
 
-__all__ = ["FINISHED", "RUN_FILES", "STRESS_FILES", "check_place", "harmless", "write_run"]
+__all__ = [
+    "FINISHED",
+    "RUN_FILES",
+    "STRESS_FILES",
+    "check_place",
+    "fill_folder",
+    "harmless",
+    "move_in",
+    "unwritable",
+    "write_frame",
+    "write_run",
+]
 
 FINISHED = "run.yaml"
 """The file that a finished run folder has; it is written last."""
@@ -59,7 +70,7 @@ def check_place(folder: str | Path, replace: bool = False) -> Path:
                 raise _refused(place, "a finished run stands there and was not to be replaced")
         _check_parent(place)
     except OSError as error:
-        raise _unwritable(place, error) from error
+        raise unwritable(place, error) from error
     return place
 
 
@@ -86,15 +97,15 @@ def write_run(
     done = False
     try:
         part.mkdir(parents=True)
-        _fill(part, ledgers, summaries, extra or {})
+        fill_folder(part, ledgers, summaries, extra or {})
         _weigh(part, summaries, evidence)
         (part / FINISHED).write_text(
             yaml.safe_dump(dict(run), sort_keys=False, allow_unicode=True), encoding="utf-8"
         )
-        _move(part, place)
+        move_in(part, place)
         done = True
     except OSError as error:
-        raise _unwritable(place, error) from error
+        raise unwritable(place, error) from error
     finally:
         shutil.rmtree(part, ignore_errors=True)
         for parent in () if done else made:
@@ -112,15 +123,16 @@ def harmless(frame: pd.DataFrame) -> pd.DataFrame:
     return safe
 
 
-def _fill(
+def fill_folder(
     part: Path, ledgers: Sequence[Ledger], summaries: Sequence[Summary], extra: Mapping[str, str | bytes]
 ) -> None:
+    """Write the ledgers of some variants and `extra` files into a folder."""
     write_logs(part / "events.parquet", [ledger.log for ledger in ledgers])
     trades = pd.concat([ledger.trades for ledger in ledgers], ignore_index=True)
-    _parquet(trades, part / "trades.parquet")
+    write_frame(trades, part / "trades.parquet")
     harmless(trades).to_csv(part / "trades.csv", index=False, date_format="%Y-%m-%d", lineterminator="\n")
-    _parquet(pd.concat([ledger.legs for ledger in ledgers], ignore_index=True), part / "legs.parquet")
-    _parquet(pd.concat([ledger.equity for ledger in ledgers], ignore_index=True), part / "equity.parquet")
+    write_frame(pd.concat([ledger.legs for ledger in ledgers], ignore_index=True), part / "legs.parquet")
+    write_frame(pd.concat([ledger.equity for ledger in ledgers], ignore_index=True), part / "equity.parquet")
     for name, content in extra.items():
         data = content.encode("utf-8") if isinstance(content, str) else content
         (part / name).write_bytes(data)
@@ -135,15 +147,16 @@ def _weigh(part: Path, summaries: Sequence[Summary], evidence: Evidence | None) 
     (part / "summary.json").write_text(text + "\n", encoding="utf-8")
     if evidence is not None and len(evidence.stress):
         table, page = (part / name for name in STRESS_FILES)
-        _parquet(evidence.stress, table)
+        write_frame(evidence.stress, table)
         harmless(evidence.stress).to_csv(page, index=False, lineterminator="\n")
 
 
-def _parquet(frame: pd.DataFrame, path: Path) -> None:
+def write_frame(frame: pd.DataFrame, path: Path) -> None:
+    """Write a frame as Parquet."""
     pq.write_table(pa.Table.from_pandas(frame, preserve_index=False), path, compression="zstd")
 
 
-def _move(part: Path, place: Path) -> None:
+def move_in(part: Path, place: Path) -> None:
     """Put the finished folder in its place; an old run is set aside first and comes back when that fails."""
     if not place.exists():
         os.replace(part, place)
@@ -186,7 +199,8 @@ def _refused(place: Path, why: str) -> PlaceError:
     )
 
 
-def _unwritable(place: Path, error: OSError) -> PlaceError:
+def unwritable(place: Path, error: OSError) -> PlaceError:
+    """The error of a folder that cannot be written."""
     return PlaceError.one(
         str(place),
         "cannot write",

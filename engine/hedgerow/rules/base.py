@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterator, Mapping
+from functools import cache
 from typing import Any, ClassVar, Self
 
 from pydantic import (
@@ -86,10 +87,9 @@ class Words(BaseModel):
     def _read(cls, value: Any, handler: ModelWrapValidatorHandler[Self]) -> Self:
         if isinstance(value, cls):
             return value
-        words = cls.words()
+        words, inner = _words_of(cls)
         if not isinstance(value, Mapping):
             refuse("shape", f"is {shown(value)}", f"allowed: a mapping of {listed(words)}")
-        inner = {field.alias for field in cls.model_fields.values() if (field.alias or "").startswith("<")}
         known = {key: item for key, item in value.items() if key in words or key in inner}
         faults = [cls.stranger(key) for key in value if key not in known]
         if cls.one_of:
@@ -117,6 +117,13 @@ class Words(BaseModel):
     def plain(self) -> dict[str, Any]:
         """The words again, as a mapping that reads back to an equal value; defaults are left out."""
         return dict(_lists(self.model_dump(by_alias=True, exclude_defaults=True, exclude_none=True)))
+
+
+@cache
+def _words_of(model: type[Words]) -> tuple[tuple[str, ...], frozenset[str]]:
+    """The words of a mapping, and the names that only its own code writes."""
+    aliases = (field.alias or "" for field in model.model_fields.values())
+    return model.words(), frozenset(alias for alias in aliases if alias.startswith("<"))
 
 
 def _lists(value: Any) -> Any:

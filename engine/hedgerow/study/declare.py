@@ -24,6 +24,9 @@ from hedgerow.rules.schema import Strategy
 from hedgerow.rules.words import Loose, shown
 from hedgerow.study.evidence_words import Asked, EvidenceWords
 from hedgerow.study.extending import extensions_plain, read_extensions
+from hedgerow.study.grid import Grid
+from hedgerow.study.gridwords import WalkForwardWords, grid_of
+from hedgerow.study.trials import value_faults
 from hedgerow.study.words import AccountWords, CostWords, StudyWords
 from hedgerow.textfile import capped
 from hedgerow.volatility.model import RANGES, SurfaceModel
@@ -38,8 +41,9 @@ class Study:
     """A declared experiment, every path and strategy of it resolved.
 
     `symbols` None means all stocks of the market; `first` and `last` are ISO dates, None for the data's own
-    ends; `variants` are pairs of a name and its strategy, in the order of the file; `costs` are numbers, or a
-    model that gives them once the market is known; `evidence` None works none out.
+    ends; `variants` are pairs of a name and its strategy, in the order of the file, with a `grid` the one it
+    changes; `costs` are numbers, or a model that gives them once the market is known; `evidence` None works
+    none out; `held_out` is the ISO date from which the rest is kept aside.
     """
 
     name: str
@@ -58,6 +62,14 @@ class Study:
     seed: int = 1
     path: Path | None = None
     extensions: tuple[Extension, ...] = ()
+    grid: Grid | None = None
+    walk_forward: WalkForwardWords | None = None
+    held_out: str | None = None
+
+    @property
+    def is_large(self) -> bool:
+        """Whether it is run in batches of figures, and not variant by variant with every ledger."""
+        return self.grid is not None or self.walk_forward is not None or self.held_out is not None
 
     def plain(self) -> dict[str, Any]:
         """Everything resolved, as a mapping that `load_study` reads back to an equal study.
@@ -76,7 +88,7 @@ class Study:
             "pricing": {"volatility": _surface_plain(self.surface), "listings": self.listings},
             "extensions": extensions_plain(self.extensions),
             "costs": self._costs_plain(),
-            "variants": {name: {"strategy": strategy.plain()} for name, strategy in self.variants},
+            **_tried_plain(self),
             "yardstick": self.yardstick,
             "evidence": "none" if self.evidence is None else EvidenceWords.of(self.evidence).model_dump(),
             "seed": self.seed,
@@ -88,6 +100,20 @@ class Study:
         if isinstance(self.costs, CostModel):
             return self.costs.name
         return CostWords.of(self.costs).model_dump()
+
+
+def _tried_plain(study: Study) -> dict[str, Any]:
+    """The words of what is tried, how it is chosen, and what is kept aside."""
+    words: dict[str, Any] = {}
+    if study.grid is None:
+        words["variants"] = {name: {"strategy": strategy.plain()} for name, strategy in study.variants}
+    else:
+        words |= {"strategy": study.variants[0][1].plain(), **study.grid.plain()}
+    if study.walk_forward is not None:
+        words["walk_forward"] = study.walk_forward.plain()
+    if study.held_out is not None:
+        words["held_out"] = {"from": study.held_out}
+    return words
 
 
 def _surface_plain(surface: SurfaceModel) -> dict[str, Any]:
@@ -139,7 +165,9 @@ def read_study(tree: Tree, folder: Path, path: Path | None = None) -> tuple[Stud
     faults = sorted({*tree.all_faults(loose, "the study"), *surface_faults, *variant_faults})
     if faults or words is None or surface is None:
         return None, faults
-    return replace(_study(words, folder, path, surface, variants), extensions=extensions), []
+    study = replace(_study(words, folder, path, surface, variants), extensions=extensions)
+    faults = [] if study.grid is None else value_faults(tree, study.grid, variants[0][1])
+    return (None, faults) if faults else (study, [])
 
 
 def _study(
@@ -165,6 +193,9 @@ def _study(
         evidence=None if words.evidence is None else words.evidence.asked(),
         seed=words.seed,
         path=path,
+        grid=None if words.grid is None else grid_of(words.grid, words.sample),
+        walk_forward=words.walk_forward,
+        held_out=None if words.held_out is None else words.held_out.first,
     )
 
 

@@ -17,9 +17,10 @@ from hedgerow.rules.figures import Number, Percent, Share, Whole
 from hedgerow.rules.words import Choice, Flag, Loose, Scalar, Text, WordsError, refuse, shown
 from hedgerow.study.evidence_words import EvidenceOrNone, EvidenceWords
 from hedgerow.study.extending import extension_faults
+from hedgerow.study.gridwords import SampleWords, WalkForwardWords, grid_faults
 from hedgerow.walk.account import COST_RANGES, DEFAULT_COSTS, MARGINS, NO_COSTS, Account
 
-__all__ = ["AccountWords", "CostWords", "Day", "PricingWords", "StudyWords", "WindowWords"]
+__all__ = ["AccountWords", "CostWords", "Day", "HeldOutWords", "PricingWords", "StudyWords", "WindowWords"]
 
 _D = DEFAULT_COSTS
 _MOST = COST_RANGES
@@ -140,6 +141,12 @@ class PricingWords(Words):
     listings: Annotated[str, Choice(("modern", "historical"))] = "modern"
 
 
+class HeldOutWords(Words):
+    """The last part of the window, kept aside: from a day to the end."""
+
+    first: Annotated[str, Day()] = Field(alias="from")
+
+
 class StudyWords(Words):
     """A study file. `strategy` is a path or the strategy itself; a variant is a mapping of dotted paths."""
 
@@ -154,15 +161,19 @@ class StudyWords(Words):
     costs: Annotated[CostWords, _CostsOrNone()] = CostWords()
     strategy: Any = None
     variants: Any = None
+    grid: Any = None
+    sample: SampleWords | None = None
+    walk_forward: WalkForwardWords | None = None
+    held_out: HeldOutWords | None = None
     yardstick: Annotated[str, Choice(("buy and hold", "none"))] = "buy and hold"
     evidence: Annotated[EvidenceWords | None, EvidenceOrNone] = EvidenceWords()
     seed: Annotated[int, Whole(0, 2**31 - 1)] = 1
 
     @classmethod
     def judge(cls, raw: Mapping[Any, Any], made: Self | None) -> list[Loose]:
-        """Symbols that are no list of text, variants that are no mapping of mappings, odd extensions."""
+        """Symbols that are no list of text, variants that are no mapping of mappings, odd extensions or grids."""
         odd = extension_faults(raw.get("extensions"))
-        return [*_symbol_faults(raw.get("symbols", "all")), *_variant_faults(raw), *odd]
+        return [*_symbol_faults(raw.get("symbols", "all")), *_variant_faults(raw), *odd, *grid_faults(raw)]
 
     @property
     def chosen_costs(self) -> Costs | CostModel:
