@@ -171,7 +171,7 @@ class StudyWords(Words):
 
     @classmethod
     def judge(cls, raw: Mapping[Any, Any], made: Self | None) -> list[Loose]:
-        """Symbols that are no list of text, variants that are no mapping of mappings, odd extensions or grids."""
+        """Symbols that are no list of text, variants that are no mappings, odd extensions, odd grids."""
         odd = extension_faults(raw.get("extensions"))
         return [*_symbol_faults(raw.get("symbols", "all")), *_variant_faults(raw), *odd, *grid_faults(raw)]
 
