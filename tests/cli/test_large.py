@@ -61,7 +61,7 @@ def test_a_grid_is_shown_and_left(run: Runner) -> None:
     ):
         assert words in said.out, words
     assert max(map(len, said.out.splitlines())) <= 100
-    assert {path.name for path in Path("runs").iterdir()} == {"grid"}
+    assert {path.name for path in Path("runs").iterdir()} == {"grid", "tries.jsonl"}
     table = pd.read_csv("runs/grid/variants.csv")
     pd.testing.assert_frame_equal(table, pd.read_parquet("runs/grid/variants.parquet"))
     assert table["legs.put.strike.from_spot"].tolist() == [-0.06, -0.04, -0.02] * 2
@@ -80,6 +80,17 @@ def test_the_record_repeats_it_byte_for_byte(run: Runner) -> None:
     one, two = bytes_of("one"), bytes_of("two")
     assert len(one) > 15
     assert {name for name in one if one[name] != two[name]} <= {"run.yaml"}  # which writes 10 as 10.0
+
+
+def test_tries_are_counted_across_studies(run: Runner) -> None:
+    """Six of a grid, then a grid of four of which two are the same: eight different ones on these prices."""
+    run("run", "grid.yaml", "--quiet")
+    run.write(more__yaml=GRID.replace("[7, 14]", "[7, 21]").replace("from: -6%", "from: -4%"))
+    out = run("run", "more.yaml").out
+    assert "4 variants, the whole grid (2 x 2)" in out
+    assert "Of 8 tries (4 of them before, on these prices)" in " ".join(out.split())
+    assert "8 variants were tried" in out
+    assert "Of 8 tries" in " ".join(run("run", "more.yaml").out.split())
 
 
 def test_json_for_programs(run: Runner) -> None:

@@ -16,6 +16,7 @@ if TYPE_CHECKING:
     from hedgerow.study.declare import Study
     from hedgerow.study.large import LargeResult, Stage
     from hedgerow.study.pool import Pool
+    from hedgerow.study.shards import Shards
 
 __all__ = ["How", "run_large_study"]
 
@@ -38,15 +39,20 @@ def run_large_study(study: Study, how: How, usual: Iterator[Path]) -> None:
     """
     from hedgerow.report.files import check_place
     from hedgerow.report.large_files import refuse_foreign, write_large
-    from hedgerow.study.large import stage
+    from hedgerow.study.large import finish, stage
+    from hedgerow.study.places import told_in_place
 
     if how.out is not None:
         check_place(how.out, how.replace)
         refuse_foreign(how.out)
     ready = stage(study)
     place = how.out or _place(usual, ready.key)
-    result = _walked(ready, place, how)
+    shards = _walked(ready, place, how)
+    keys, before = _tries(ready)
+    with told_in_place(study.path):
+        result = finish(ready, shards, len(before | set(keys.values())))
     write_large(place, result, how.replace)
+    _remember(ready, keys)
     if how.as_json:
         _tell_json(result, place)
     elif how.quiet:
@@ -66,11 +72,27 @@ def _place(usual: Iterator[Path], key: str) -> Path:
     )
 
 
-def _walked(ready: Stage, place: Path, how: How) -> LargeResult:
-    """Run what is missing behind a progress bar, and sum it up."""
+def _tries(ready: Stage) -> tuple[dict[str, str], frozenset[str]]:
+    """The keys of the study's variants, and of all that were tried before on the same prices."""
+    from hedgerow.cli.run import RUNS
+    from hedgerow.study.tries import keys_of, tried_before
+
+    return keys_of(ready.study), tried_before(RUNS, ready.job.market)
+
+
+def _remember(ready: Stage, keys: dict[str, str]) -> None:
+    """Write the variants down among those tried on these prices, or say that it cannot be done."""
+    from hedgerow.cli.run import RUNS
+    from hedgerow.study.tries import RECORD, record_tries
+
+    if not record_tries(RUNS, ready.study, ready.job.market, keys):
+        typer.echo(f"The variants could not be added to {RUNS / RECORD}; later runs count too few.", err=True)
+
+
+def _walked(ready: Stage, place: Path, how: How) -> Shards:
+    """Run what is missing, behind a progress bar."""
     from hedgerow.cli.progress import progress
     from hedgerow.report.large_files import SHARDS, unfinished
-    from hedgerow.study.large import finish
     from hedgerow.study.places import told_in_place
     from hedgerow.study.pool import fill
     from hedgerow.study.shards import Shards
@@ -83,10 +105,10 @@ def _walked(ready: Stage, place: Path, how: How) -> LargeResult:
         )
     else:
         ready.trials.check(str(ready.study.path or "the study"))
-    with told_in_place(ready.study.path):
-        with _pool(how) as pool, progress("Variants", len(ready.trials)) as counter:
-            fill(ready.job, shards, pool, counter.advance)
-        return finish(ready, shards)
+    told = told_in_place(ready.study.path)
+    with told, _pool(how) as pool, progress("Variants", len(ready.trials)) as counter:
+        fill(ready.job, shards, pool, counter.advance)
+    return shards
 
 
 @contextmanager
@@ -115,7 +137,7 @@ def _cautions(result: LargeResult) -> tuple[str, ...]:
     from hedgerow.report.cautions import Basis, cautions
 
     whole = result.whole
-    return cautions(Basis(len(result.stage.trials), whole.assumptions, whole.ended))
+    return cautions(Basis(result.findings.worth.trials, whole.assumptions, whole.ended))
 
 
 def _tell_json(result: LargeResult, place: Path) -> None:

@@ -28,7 +28,6 @@ def look(folder: Folder, look_again: Again = False) -> None:
     ready, best = _finished(folder)
     job, study = ready.job, ready.study
     aside = look_aside(ready, best, Looks(folder.absolute().parent), look_again)
-    assert aside.result is not None
     name = job.trials.name(best)
     before = job.bench.run(job.trials.strategy(best), study.account, study.costs, job.window, name)
     looks = {"looks": aside.looks, "looks_of_all_studies": aside.looks_of_all}

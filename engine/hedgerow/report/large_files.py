@@ -21,14 +21,13 @@ from hedgerow.report.files import (
     unwritable,
     write_frame,
 )
-from hedgerow.study.large import Aside, Findings, LargeResult
+from hedgerow.study.large import Findings, LargeResult
 from hedgerow.study.shards import MANIFEST
 from hedgerow.study.walk_forward import Forward
 
 __all__ = [
     "LARGE_FILES",
     "SHARDS",
-    "aside_plain",
     "continues",
     "findings_plain",
     "refuse_foreign",
@@ -100,20 +99,11 @@ def findings_plain(result: LargeResult) -> dict[str, Any]:
         plain["superiority"] = {"tested": tested.as_dict(), "p": chance.as_dict()}
     if found.forward is not None:
         plain["walk_forward"] = _forward(result, found, found.forward)
-    if result.aside is not None:
-        plain["held_out"] = aside_plain(result.aside, result)
+    window = result.stage.aside
+    if window is not None:
+        dates = result.stage.job.market.dates
+        plain["held_out"] = {"from": str(dates[window.start]), "to": str(dates[window.stop - 1])}
     return plain
-
-
-def aside_plain(aside: Aside, result: LargeResult) -> dict[str, Any]:
-    """The part kept aside: its days and how often it was looked at."""
-    dates = result.stage.job.market.dates
-    return {
-        "from": str(dates[aside.window.start]),
-        "to": str(dates[aside.window.stop - 1]),
-        "looks": aside.looks,
-        "looks_of_all_studies": aside.looks_of_all,
-    }
 
 
 def _changes(result: LargeResult, number: int) -> dict[str, Any]:

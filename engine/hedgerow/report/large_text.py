@@ -59,7 +59,7 @@ def _parts(result: LargeResult, cautions: Sequence[str]) -> Iterator[RenderableT
     yield Text()
     if result.findings.forward is not None:
         yield from _forward(result, result.findings.forward)
-    if result.aside is not None:
+    if result.stage.aside is not None:
         yield Text("Kept aside", style=HEADING)
         yield _item(_aside(result))
         yield Text()
@@ -159,10 +159,10 @@ def _worth(result: LargeResult) -> Iterator[str]:
     if found.neighbourhood is not None:
         yield from _neighbours(found.neighbourhood)
     yield (
-        f"Of {worth.trials:,} tries without any merit the best would show a Sharpe ratio of about "
-        f"{number_text(worth.sharpe_of_luck)}; this one shows {number_text(worth.sharpe)}. The chance that "
-        f"its true ratio is above that of luck: {percent_text(worth.chance_above_luck)}; counting variants "
-        f"that move alike as {number_text(worth.trials_independent, 1)} tries: "
+        f"Of {worth.trials:,} tries{_before(result)} without any merit the best would show a Sharpe ratio of "
+        f"about {number_text(worth.sharpe_of_luck)}; this one shows {number_text(worth.sharpe)}. The chance "
+        f"that its true ratio is above that of luck: {percent_text(worth.chance_above_luck)}; counting "
+        f"variants that move alike as {number_text(worth.trials_independent, 1)} tries: "
         f"{percent_text(worth.chance_above_luck_independent)}."
     )
     if found.superiority is not None:
@@ -173,6 +173,12 @@ def _worth(result: LargeResult) -> Iterator[str]:
             f"Against buy and hold ({which} tested): luck alone brings so good a best one with a chance of "
             f"{percent_text(found.superiority.p_consistent)}; {better or 'none'} shown to grow faster."
         )
+
+
+def _before(result: LargeResult) -> str:
+    """How many of the tries were made before, on the same prices."""
+    before = result.findings.worth.trials - len(result.stage.trials)
+    return f" ({before:,} of them before, on these prices)" if before > 0 else ""
 
 
 def _neighbours(around: Neighbourhood) -> Iterator[str]:
@@ -253,15 +259,14 @@ def _fold(result: LargeResult, by: str, one: Judged) -> list[str]:
 
 
 def _aside(result: LargeResult) -> str:
-    assert result.aside is not None
-    dates, window = result.stage.job.market.dates, result.aside.window
+    dates, window = result.stage.job.market.dates, result.stage.aside
+    assert window is not None
     span = f"{dates[window.start]} to {dates[window.stop - 1]}, {window.stop - window.start:,} sessions"
     return f"{span}: not looked at in this run, nor in any figure above. `hedgerow look` looks, once."
 
 
 def aside_text(ready: Stage, before: Summary, aside: Aside, width: int = WIDTH) -> str:
     """What the best rule did before and on the part kept aside, beside the yardstick there, as plain text."""
-    assert aside.result is not None
     page = io.StringIO()
     console = Console(file=page, width=width, color_system=None, force_terminal=False)
     after = aside.result.summary

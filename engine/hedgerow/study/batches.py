@@ -46,6 +46,7 @@ class Job:
     costs: Costs
     window: Window
     trials: Trials
+    extensions: tuple[tuple[str, str], ...] = ()  # files of a user's own code, with the hash of their content
 
     @cached_property
     def bench(self) -> Bench:

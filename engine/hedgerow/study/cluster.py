@@ -15,7 +15,8 @@ from dataclasses import replace
 from threading import Lock
 from typing import Any
 
-from hedgerow.errors import RunError, StudyError
+from hedgerow.errors import ExtensionError, RunError, StudyError
+from hedgerow.extend import load_extension
 from hedgerow.study.batches import Job, ready, run_batch
 from hedgerow.study.pool import Progress
 from hedgerow.study.shards import Shards
@@ -74,7 +75,7 @@ class Cluster:
         clean = replace(job)  # without what was made ready here
         data = self.client.scatter(clean, broadcast=True, hash=False)
         left, running = list(reversed(batches)), dict[str, int]()
-        done = as_completed()
+        done = as_completed(loop=self.client.loop)
         losses = 0
         while left or running:
             while left and len(running) < AHEAD * max(self._threads(), 1):
@@ -114,8 +115,20 @@ def on_worker(job: Job, start: int, stop: int, wanted: Mapping[str, str]) -> byt
         raise RunError(f"a worker of the cluster has {', '.join(other)}: results would not be the same bytes")
     with _keeping:
         if job.key not in _kept:
+            _extend(job)
             _kept.clear()
             _kept[job.key] = job.copied()
         own = _kept[job.key]
     ready(own)
     return run_batch(own, range(start, stop))
+
+
+def _extend(job: Job) -> None:
+    """Use the study's own signals, estimators and costs inside a worker. Raises RunError for others."""
+    for source, known in job.extensions:
+        try:
+            here = load_extension(source, check=False).sha256
+        except ExtensionError as error:
+            raise RunError(f"a worker of the cluster cannot read {source}: {error}") from error
+        if here != known:
+            raise RunError(f"a worker of the cluster has another {source} than the study was read with")

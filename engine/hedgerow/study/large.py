@@ -61,7 +61,7 @@ class Stage:
 
 @dataclass(frozen=True, eq=False)
 class Aside:
-    """The part kept aside: its window, how often it was looked at, and the result when it was now.
+    """A look at the part kept aside: its window, and what the best variant did there.
 
     `looks` and `looks_of_all` count looks of this study, and of every study in the folder of runs.
     """
@@ -69,7 +69,7 @@ class Aside:
     window: Window
     looks: int
     looks_of_all: int
-    result: Result | None
+    result: Result
 
 
 @dataclass(frozen=True, eq=False)
@@ -90,12 +90,11 @@ class Findings:
 
 @dataclass(frozen=True, eq=False)
 class LargeResult:
-    """A large study that is done: its findings, the best variant with every ledger, the part kept aside."""
+    """A large study that is done: its findings, and the best variant with every ledger."""
 
     stage: Stage
     findings: Findings
     best: Result
-    aside: Aside | None
 
     @property
     def whole(self) -> StudyResult:
@@ -127,6 +126,7 @@ def stage(study: Study, market: Market | None = None) -> Stage:
         costs=StudyResult(study, bench, ()).costs,
         window=window,
         trials=trials,
+        extensions=tuple((one.source, one.sha256) for one in study.extensions),
     )
     sessions = window.stop - window.start
     contents = Contents(
@@ -162,30 +162,29 @@ def run_large(
         return finish(ready, shards)
 
 
-def finish(ready: Stage, shards: Shards, looks: Looks | None = None, again: bool = False) -> LargeResult:
-    """What the shards say together. With `looks` the part kept aside is looked at, and that written down.
+def finish(ready: Stage, shards: Shards, tried: int = 0) -> LargeResult:
+    """What the shards say together. The part kept aside is not looked at.
 
-    Raises StudyError when it has been looked at before and not `again`, or no variant ever moved.
+    `tried` counts different variants ever evaluated on these prices, those of the study among them. Raises
+    StudyError when no variant ever moved.
     """
-    findings = _findings(ready, shards)
+    findings = _findings(ready, shards, tried)
     study, job = ready.study, ready.job
     name = job.trials.name(findings.best)
     strategy = job.trials.strategy(findings.best)
     beside = study.yardstick != "none"
     best = job.bench.run(strategy, study.account, study.costs, job.window, name, beside=beside)
-    aside = None
-    if ready.aside is not None:
-        aside = look_aside(ready, findings.best, looks, again)
-    return LargeResult(ready, findings, best, aside)
+    return LargeResult(ready, findings, best)
 
 
-def look_aside(ready: Stage, best: int, looks: Looks | None, again: bool) -> Aside:
-    """The part kept aside, walked with the best variant when there is a record to write the look in."""
+def look_aside(ready: Stage, best: int, looks: Looks, again: bool) -> Aside:
+    """The part kept aside, walked with the best variant, the look written down first.
+
+    Raises StudyError when this study has looked there before and is not told to look `again`.
+    """
     assert ready.aside is not None
     study, job = ready.study, ready.job
     data, first = job.market.fingerprint, study.held_out or ""
-    if looks is None:
-        return Aside(ready.aside, 0, 0, None)
     name = job.trials.name(best)
     looks.may_look(ready.key, data, first, again)
     looks.add(Look(data, first, ready.key, study.name, name))
@@ -196,7 +195,7 @@ def look_aside(ready: Stage, best: int, looks: Looks | None, again: bool) -> Asi
     return Aside(ready.aside, sum(look.study == ready.key for look in known), len(known), result)
 
 
-def _findings(ready: Stage, shards: Shards) -> Findings:
+def _findings(ready: Stage, shards: Shards, tried: int) -> Findings:
     """One pass over the shards, a second one to walk forward."""
     job, study, window = ready.job, ready.study, ready.job.window
     rate = job.market.rate[window.start : window.stop]
@@ -225,7 +224,7 @@ def _findings(ready: Stage, shards: Shards) -> Findings:
     return Findings(
         figures=figures,
         best=best,
-        worth=tally.judge(job.trials.name(best), excess, len(job.trials)),
+        worth=tally.judge(job.trials.name(best), excess, max(tried, len(job.trials))),
         neighbourhood=around,
         superiority=_superiority(ready, np.concatenate(subset).T, tested),
         tested=tested.size,
@@ -250,7 +249,7 @@ def _equity_of(shards: Shards, number: int) -> Floats:
 def _superiority(ready: Stage, returns: Floats, tested: Ints) -> Superiority | None:
     """Whether any of the tested variants, log returns (T, N), beats the yardstick; None without one."""
     study, job = ready.study, ready.job
-    if study.yardstick == "none" or len(returns) < 2:
+    if study.yardstick == "none" or study.evidence is None or len(returns) < 2:
         return None
     held = buy_and_hold(job.market, job.bench.traded, job.window, job.account.cash)
     names = [str(number + 1) for number in tested]
@@ -281,7 +280,7 @@ def _check_axes(study: Study, bench: Bench, trials: Trials) -> None:
 def _key(study: Study, market: Market) -> str:
     """The fingerprint of everything that a study's results depend on; names and places do not count."""
     plain = study.plain() | {"data": market.fingerprint}
-    for word in ("name", "question", "market"):
+    for word in ("name", "question", "market", "evidence"):
         plain.pop(word, None)
     text = json.dumps(_settled(plain), sort_keys=True)
     return hashlib.sha256(text.encode("utf-8")).hexdigest()

@@ -17,6 +17,7 @@ from typing import Any
 from hedgerow.market import Market
 from hedgerow.rules.schema import Strategy
 from hedgerow.study.declare import Study
+from hedgerow.study.trials import trials_of
 
 __all__ = ["RECORD", "keys_of", "record_tries", "tried_before"]
 
@@ -25,12 +26,16 @@ RECORD = "tries.jsonl"
 
 _ABOUT_PEOPLE = ("name", "about", "question", "variants", "market", "evidence", "seed", "yardstick")
 """What a study says that changes no result of a variant; the market is known by its fingerprint."""
+_CHOOSING = ("strategy", "grid", "sample", "walk_forward")
+"""What a large study says of how its variants are made and chosen; each is counted by its own strategy."""
 
 
 def keys_of(study: Study) -> dict[str, str]:
     """Return the key of every variant of a study by name: 32 hexadecimal digits of a SHA-256."""
-    shared = {word: value for word, value in study.plain().items() if word not in _ABOUT_PEOPLE}
-    return {name: _key(shared, strategy) for name, strategy in study.variants}
+    aside = (*_ABOUT_PEOPLE, *_CHOOSING)
+    shared = {word: value for word, value in study.plain().items() if word not in aside}
+    trials = trials_of(study)
+    return {trials.name(number): _key(shared, trials.strategy(number)) for number in range(len(trials))}
 
 
 def _key(shared: Mapping[str, Any], strategy: Strategy) -> str:
@@ -63,15 +68,18 @@ def _row(line: str) -> dict[str, str]:
     return {str(k): str(v) for k, v in row.items()} if isinstance(row, dict) else {}
 
 
-def record_tries(folder: str | Path, study: Study, market: Market) -> bool:
+def record_tries(
+    folder: str | Path, study: Study, market: Market, keys: Mapping[str, str] | None = None
+) -> bool:
     """Add the variants of a study that are not in the folder's record; return whether it could be written.
 
-    The new lines go to the end in one piece, so that runs side by side do not mix theirs.
+    `keys` are those of `keys_of`, worked out when None. The new lines go to the end in one piece, so that
+    runs side by side do not mix theirs.
     """
     known = tried_before(folder, market)
     lines = [
         json.dumps({"data": market.fingerprint, "variant": key, "name": name, "study": study.name})
-        for name, key in keys_of(study).items()
+        for name, key in (keys_of(study) if keys is None else keys).items()
         if key not in known
     ]
     if not lines:
