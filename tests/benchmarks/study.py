@@ -5,7 +5,7 @@ overhead               its processor time over that of the bare walks of the sam
 overhead_of_findings   what summing up the shards adds, likewise
 threads_2_speedup      seconds of the same grid on one thread over two
 peak_megabytes         the most memory of a process that runs 250 variants, and of one that runs 1,000
-resume_seconds         from the start of a process until a study of 1,000, half of it done, walks its next variant
+resume_seconds         from the start of a process until a study, half of it done, walks on
 
 With --quick 200 variants. Parts of the same work are timed in turns. Processor time is what a busy machine
 leaves comparable; the speedup needs two idle cores.
@@ -137,7 +137,7 @@ def resumed(variants: int, folder: Path) -> float:
 def walk_one(variants: int, folder: str) -> None:
     """Go on with a study until one variant is done; print the time."""
 
-    class Over(Exception):
+    class OverError(Exception):
         """Enough was seen."""
 
     told = []
@@ -146,12 +146,12 @@ def walk_one(variants: int, folder: str) -> None:
         told.append(count)
         if len(told) == 2:  # what was there before, and one more
             print(time.time(), flush=True)
-            raise Over
+            raise OverError
 
     ready = make_stage(variants, Path(folder))
     try:
         fill(ready.job, Shards.begin(Path(folder, "half"), ready.contents), Threads(1), tell)
-    except Over:
+    except OverError:
         return
 
 
