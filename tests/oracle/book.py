@@ -61,6 +61,8 @@ class Position:
     ended: bool = False  # a leg has ended since the last close
     silent: int = 0
     last_close: float = math.nan
+    slot: int = 0  # its symbol's place, or one of several on a ladder
+    decided: int = 0  # session at whose close it was ordered
 
     def held(self) -> list[Leg]:
         """Legs that are held."""
@@ -75,6 +77,8 @@ class Order:
     lots: float
     terms: list[tuple[float, int]]  # strike and expiry of each leg; (0, 0) for one that comes later
     promised: float
+    slot: int = 0
+    decided: int = 0
 
 
 @dataclass

@@ -38,6 +38,7 @@ def walked(
         per_position=setting.per_position,
         most_positions=min(setting.most_positions, MOST),
         most_new_a_day=min(setting.most_new_a_day, MOST),
+        most_per_sector=min(setting.most_per_sector, MOST),
         interest=setting.interest,
     )
     costs = Costs(**{name: setting.cost(name) for name in Costs._fields})

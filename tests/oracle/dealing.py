@@ -68,11 +68,28 @@ class Dealer:
         for row, leg in enumerate(position.legs):
             if leg.ordered is None:
                 continue
+            if not self.finds_bid(position, row, leg.ordered, t, sight, moment):
+                leg.ordered = None
+                continue
             if leg.live:
                 self.leg(position, row, t, leg.reason, -leg.quantity, sight, moment)
             (leg.strike, leg.expiry), leg.ordered, leg.due, moved = leg.ordered, None, False, True
             self.leg(position, row, t, leg.reason, leg.rule.sign * leg.rule.ratio * units, sight, moment)
         return moved
+
+    def finds_bid(
+        self, position: Position, row: int, terms: tuple[float, int], t: int, sight: Sight, moment: Moment
+    ) -> bool:
+        """Whether a leg that is to be sold finds a bid; without one it is left, and the log says so."""
+        rule, (strike, expiry) = position.legs[row].rule, terms
+        quote = self.trader.pricer.quote(sight, rule.right, strike, expiry, moment)
+        if rule.sign > 0 or self.trader.leg_fill(-1.0, quote) > 0.0:
+            return True
+        event = self.book.write(
+            t, position.symbol, position.number, layout.KIND_DECLINED, layout.WHY_NO_BID, leg=row
+        )
+        event.update(quantity=1.0, strike=strike, expiry=expiry)
+        return False
 
     def chosen(self, rules: Rules, order: Order) -> list[Chosen | None]:
         """The legs of an order as they stand after a split."""
@@ -150,6 +167,12 @@ class Dealer:
         event = self.book.write(t, position.symbol, position.number, layout.KIND_DIVIDEND, 0)
         event.update(quantity=position.shares, price=amount, mid=amount)
         self.book.pay(position, event, position.shares * amount)
+
+    def borrow(self, position: Position, t: int, price: float) -> None:
+        """Shares sold short pay so much a share for being borrowed."""
+        event = self.book.write(t, position.symbol, position.number, layout.KIND_BORROW, 0)
+        event.update(quantity=position.shares, price=price, mid=price)
+        self.book.pay(position, event, position.shares * price)
 
     def end_at_last_price(self, position: Position, t: int) -> None:
         """A position whose market is gone: legs for their intrinsic value, shares at the last price."""

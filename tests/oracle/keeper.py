@@ -11,7 +11,7 @@ from hedgerow.kernels import layout
 from oracle import past
 from oracle.book import Book, Leg, Position
 from oracle.dealing import Dealer, in_the_money
-from oracle.entry import Chooser, Trader, range_of_payoff
+from oracle.entry import Chooser, Chosen, Trader, range_of_payoff
 from oracle.moment import OPEN_HOURS, Moment, Pricer, Puts, Sight
 from oracle.values import CALL
 from oracle.view import Held
@@ -57,7 +57,9 @@ class Keeper:
         self.trader = Trader(Pricer(setting.surface, puts or Puts()), setting)
         self.dealer = Dealer(self.book, self.trader)
         self.sights = known or [sights_of(history, setting.surface) for history in self.histories]
-        self.positions: dict[int, Position] = {}
+        self.sectors = list(market.sectors)
+        self.positions: dict[int, Position] = {}  # by rung: a symbol has as many as the ladder
+        self.losses: dict[int, int] = {}  # session at which a rung last ended with a loss
 
     def at_open(self, symbol: int, t: int, price: float) -> tuple[Sight, Moment]:
         """What the open of a session knows: yesterday's close, and a price."""
@@ -72,13 +74,14 @@ class Keeper:
         history = self.histories[symbol]
         return self.sights[symbol][t], Moment(history.ordinals[t], history.close[t], self.rates[t])
 
-    def morning(self, symbol: int, t: int) -> None:
+    def morning(self, slot: int, t: int) -> None:
         """What happens to a position before the open, and its orders at the open."""
-        history, position = self.histories[symbol], self.positions[symbol]
+        position = self.positions[slot]
+        symbol, history = position.symbol, self.histories[position.symbol]
         if not history.has_bar(t):
             return
         self.overnight(position, history, t)
-        if symbol not in self.positions:
+        if slot not in self.positions:
             return
         sight, moment = self.at_open(symbol, t, history.open_price(t))
         if position.closing:
@@ -91,9 +94,9 @@ class Keeper:
         yesterday = history.ordinals[t] - 1
         if any(leg.expiry <= yesterday for leg in position.held()):
             self.settle(position, t, position.last_close, yesterday)
-        if position.symbol in self.positions:
+        if position.slot in self.positions:
             self.early_exercise(position, history, t)
-        if position.symbol not in self.positions:
+        if position.slot not in self.positions:
             return
         before = position.last_close
         dividend, special, ratio = history.acts[t]
@@ -115,6 +118,10 @@ class Keeper:
                 self.dealer.deliver(position, row, t, layout.WHY_ASSIGNED_EARLY)
         if held != 0.0 and position.shares == 0.0:
             self.shares_gone(position, t, layout.WHY_ASSIGNED_EARLY)
+        elif position.shares != held and not self.rules.shares and not self.rules.keep and position.held():
+            for leg in position.legs:
+                leg.due, leg.ordered = False, None
+            position.closing = position.closing or layout.WHY_LEFT_OVER  # shares and legs are sold together
 
     def due_early(self, leg: Leg, history: past.History, t: int) -> bool:
         """Whether a leg written is exercised against us after yesterday's close."""
@@ -152,7 +159,7 @@ class Keeper:
 
     def units(self, position: Position) -> float:
         """Shares' worth of a contract per 100 shares."""
-        return abs(position.shares) if self.rules.shares else position.units
+        return abs(position.shares) if self.rules.shares or position.shares > 0.0 else position.units
 
     def restate(self, position: Position) -> None:
         """Work out best, worst and reserve again after legs have changed."""
@@ -161,9 +168,10 @@ class Keeper:
         position.best, position.worst = most - position.outlay, position.outlay - least
         position.reserve = max(0.0, -least)
 
-    def evening(self, symbol: int, t: int) -> None:
+    def evening(self, slot: int, t: int) -> None:
         """A position's resting stop, then its close."""
-        history, position = self.histories[symbol], self.positions[symbol]
+        position = self.positions[slot]
+        symbol, history = position.symbol, self.histories[position.symbol]
         if not history.has_bar(t):
             self.silence(position, t)
             return
@@ -174,7 +182,7 @@ class Keeper:
         today = history.ordinals[t]
         if position.ended or any(leg.expiry <= today for leg in position.held()):
             self.settle(position, t, history.close[t], today)
-        if symbol not in self.positions:
+        if slot not in self.positions:
             return
         sight, moment = self.at_close(symbol, t)
         held = self.held(position, history, sight, moment)
@@ -221,7 +229,11 @@ class Keeper:
         position.ended = False
         if before != 0.0 and position.shares == 0.0:
             self.shares_gone(position, t, layout.WHY_EXPIRY)
-        elif not position.held() and not any(leg.due or leg.ordered for leg in position.legs):
+        elif position.held() or any(leg.due or leg.ordered for leg in position.legs):
+            self.restate(position)
+        elif self.rules.keep and position.shares > 0.0:
+            self.restate(position)  # the shares that an assignment brought are kept
+        else:
             if position.shares:
                 self.dealer.shares(position, t, layout.WHY_EXPIRY, -position.shares, close)
             self.over(position, t, layout.WHY_EXPIRY)
@@ -253,10 +265,14 @@ class Keeper:
                 continue
             others = [other for other in position.held() if other is not leg]
             expiry = chooser.expiry(leg.rule, {other.rule.name: other.expiry for other in others})
-            strikes = {other.rule.name: other.strike for other in others}
+            strikes = {o.rule.name: Chosen(o.rule, o.strike, o.expiry) for o in others}
             strike = chooser.strike(leg.rule, expiry, strikes) if expiry else 0.0
             same = leg.live and (strike, expiry) == (leg.strike, leg.expiry)
-            if strike > 0.0 and not same and self.pays(leg, strike, expiry, sight, moment):
+            if leg.live and wrong_way(leg, strike, expiry):
+                continue
+            if strike <= 0.0 or same or not self.pays(leg, strike, expiry, sight, moment):
+                continue
+            if self.dealer.finds_bid(position, row, (strike, expiry), t, sight, moment):
                 leg.ordered, leg.reason = (strike, expiry), reason
                 self.signal(position, t, reason, leg=row, strike=strike, expiry=expiry)
         if self.rules.at_close and self.dealer.fill_legs(position, t, sight, moment, self.units(position)):
@@ -298,7 +314,18 @@ class Keeper:
         """Write that a position has ended, with its whole result."""
         event = self.book.write(t, position.symbol, position.number, layout.KIND_CLOSED, reason)
         event["price"] = position.flows / 100.0
-        del self.positions[position.symbol]
+        if position.flows < 0:
+            self.losses[position.slot] = t
+        else:
+            self.losses.pop(position.slot, None)
+        del self.positions[position.slot]
+
+
+def wrong_way(leg: Leg, strike: float, expiry: int) -> bool:
+    """Whether new terms lie another way than a leg's rule lets it be rolled."""
+    words = leg.rule.direction.split(" and ")
+    up, down, out = strike > leg.strike, strike < leg.strike, expiry > leg.expiry
+    return any(not holds for word, holds in (("up", up), ("down", down), ("out", out)) if word in words)
 
 
 def interest(money: float, moment: Moment, until: int) -> float:

@@ -11,7 +11,7 @@ from typing import Any
 from hedgerow.kernels import layout
 from oracle import past
 from oracle.book import Leg, Order, Position
-from oracle.entry import Chooser, Lot, declined, measure
+from oracle.entry import Chooser, Lot, declined, figure_of, measure, odds_of_best
 from oracle.keeper import Keeper, adjusts_contracts
 from oracle.moment import Moment, Puts, Sight
 from oracle.view import View
@@ -45,11 +45,12 @@ class Replay(Keeper):
         for t in range(self.first, self.last + 1):
             if t > self.first:
                 self.interest(t)
-                for symbol in sorted(self.positions):
-                    self.morning(symbol, t)
+                self.borrow(t)
+                for slot in sorted(self.positions):
+                    self.morning(slot, t)
                 self.fill_orders(t)
-            for symbol in sorted(self.positions):
-                self.evening(symbol, t)
+            for slot in sorted(self.positions):
+                self.evening(slot, t)
             self.enter(t)
             self.record(t)
         return self.book.events, self.days
@@ -68,6 +69,14 @@ class Replay(Keeper):
         for position in held:
             if position.reserve > 0.0 and factor != 0.0:
                 self.dealer.interest(t, position, position.reserve * factor)
+
+    def borrow(self, t: int) -> None:
+        """What shares sold short cost to borrow since yesterday's close."""
+        ordinals = self.histories[0].ordinals
+        share = self.setting.cost("borrow") * (ordinals[t] - ordinals[t - 1]) / 365.0
+        for _, position in sorted(self.positions.items()):
+            if position.shares < 0.0 and share > 0.0:
+                self.dealer.borrow(position, t, share * position.last_close)
 
     def fill_orders(self, t: int) -> None:
         """New positions decided at yesterday's close, in their order; an order lasts one session."""
@@ -101,10 +110,13 @@ class Replay(Keeper):
         if lots < 1.0 or not bid:
             self.decline(t, order.symbol, layout.WHY_NO_CASH if bid else layout.WHY_NO_BID)
             return
-        position = Position(self.count, order.symbol, lots, [Leg(rule) for rule in self.rules.legs])
+        position = Position(
+            self.count, order.symbol, lots, [Leg(rule) for rule in self.rules.legs], slot=order.slot
+        )
+        position.decided = order.decided
         position.units = 100.0 * lots
         self.count += 1
-        self.positions[order.symbol] = position
+        self.positions[order.slot] = position
         position.entered, position.stock_price, position.last_close = t, moment.spot, moment.spot
         self.book.write(t, order.symbol, position.number, layout.KIND_OPENED, layout.WHY_ENTRY, quantity=lots)
         whole = measure(self.trader, self.rules, sight, moment, legs, lots)
@@ -123,38 +135,76 @@ class Replay(Keeper):
     def set_terms(self, position: Position, whole: Lot, t: int) -> None:
         """Keep what the position's gains, stop and reserve are measured by."""
         position.reserve = whole.reserve
-        position.base, position.best, position.worst = whole.debit + whole.reserve, whole.best, whole.worst
+        sold = -100.0 * self.rules.shares * position.lots * position.stock_price
+        base = whole.debit + whole.reserve
+        position.base = max(base, sold) if self.rules.shares < 0 else base
+        position.best, position.worst = whole.best, whole.worst
         if self.rules.stop:
             position.stop_price = position.stock_price * (1.0 - self.rules.shares * self.rules.stop)
             position.stop_from = t + 1 if self.rules.at_close else t
 
-    def candidates(self, t: int) -> list[int]:
-        """Symbols that may be entered at this close, best rank first, ties in their order."""
-        busy = set(self.positions)
+    def candidates(self, t: int) -> list[tuple[int, int]]:
+        """Symbols that may be entered at this close with a place for each, best rank first, ties in order."""
         queue = []
         for symbol, history in enumerate(self.histories):
-            if symbol in busy or not history.has_bar(t) or not self.rules.enter(View(history), t):
+            if not history.has_bar(t) or not self.rules.enter(View(history), t):
                 continue
-            score = self.rules.rank(View(history), t) if self.rules.rank else 0.0
-            if past.known(score):
-                queue.append((-score, symbol))
-        return [symbol for _, symbol in sorted(queue)]
+            if not self.rules.pace.names(history.ordinals, t):
+                continue
+            slot = self.free_place(symbol, t)
+            score = math.nan if slot is None else self.score(symbol, t)
+            if slot is not None and past.known(score):
+                queue.append((-score, symbol, slot))
+        return [(symbol, slot) for _, symbol, slot in sorted(queue)]
+
+    def free_place(self, symbol: int, t: int) -> int | None:
+        """The first rung of a symbol that is free; None while it waits after a loss or an entry."""
+        pace = self.rules.pace
+        rungs = range(symbol * pace.ladder, (symbol + 1) * pace.ladder)
+        if any(t - self.losses.get(rung, -(1 << 30)) < pace.cooling for rung in rungs):
+            return None
+        held = [self.positions[rung] for rung in rungs if rung in self.positions]
+        if any(t - position.decided < pace.spacing for position in held):
+            return None
+        return next((rung for rung in rungs if rung not in self.positions), None)
+
+    def score(self, symbol: int, t: int) -> float:
+        """What a candidate is ranked by, high first; NaN leaves it out."""
+        if self.rules.rank:
+            return self.rules.rank(View(self.histories[symbol]), t)
+        if self.rules.figure is None:
+            return 0.0
+        sight, moment = self.at_close(symbol, t)
+        legs, reason = Chooser(self.rules, self.trader, sight, moment).all_legs() if sight.fresh else ([], 1)
+        if reason:
+            return math.nan
+        lot = measure(self.trader, self.rules, sight, moment, legs)
+        name, sign = self.rules.figure
+        return sign * figure_of(name, lot, odds_of_best(self.trader, self.rules, sight, moment, legs))
+
+    def sector_is_full(self, symbol: int) -> bool:
+        """Whether the sector of a symbol holds as many positions and orders as the account allows."""
+        sector = self.sectors[symbol]
+        taken = [one.symbol for one in (*self.positions.values(), *self.orders)]
+        held = sum(self.sectors[other] == sector for other in taken)
+        return bool(sector) and held >= self.setting.most_per_sector
 
     def enter(self, t: int) -> None:
         """Decide new positions at this close, as far as the limits go."""
         equity, new, queue = self.equity(), 0, self.candidates(t)
-        for place, symbol in enumerate(queue):
+        for place, (symbol, slot) in enumerate(queue):
             taken = len(self.positions) + len(self.orders)
             if taken >= self.setting.most_positions or new >= self.setting.most_new_a_day:
                 self.decline(t, -1, layout.WHY_FULL, float(len(queue) - place))
                 return
-            reason = self.consider(symbol, t, equity)
+            full = self.sector_is_full(symbol)
+            reason = layout.WHY_LIMIT if full else self.consider(symbol, slot, t, equity)
             if reason:
                 self.decline(t, symbol, reason)
             else:
                 new += 1
 
-    def consider(self, symbol: int, t: int, equity: float) -> int:
+    def consider(self, symbol: int, slot: int, t: int, equity: float) -> int:
         """Order one candidate at this close; the reason why not, or 0."""
         sight, moment = self.at_close(symbol, t)
         if not sight.fresh and self.rules.legs:
@@ -163,17 +213,18 @@ class Replay(Keeper):
         if reason:
             return reason
         lot = measure(self.trader, self.rules, sight, moment, legs)
-        reason = declined(self.rules, lot)
+        odds = odds_of_best(self.trader, self.rules, sight, moment, legs)
+        reason = declined(self.rules, lot, odds)
         if reason:
             return reason
-        budget = self.setting.per_position * equity
+        budget = self.setting.per_position * equity / self.rules.pace.ladder
         free = self.book.cash - sum(position.reserve for position in self.positions.values())
         free -= sum(order.promised for order in self.orders)
         lots = min(math.floor(budget / lot.capital + 1e-9), self.affordable(free, lot))
         if lots < 1.0:
             return layout.WHY_NO_LOT if budget < lot.capital else layout.WHY_NO_CASH
         terms = [(chosen.strike, chosen.expiry) if chosen else (0.0, 0) for chosen in legs]
-        order = Order(symbol, lots, terms, lots * lot.capital)
+        order = Order(symbol, lots, terms, lots * lot.capital, slot, t)
         if self.rules.at_close:
             self.fill(order, t, sight, moment)
         else:

@@ -5,11 +5,12 @@ Only the words the replay knows are read; any other is an error of the test, not
 
 from __future__ import annotations
 
+import datetime as dt
 from collections.abc import Callable
 from dataclasses import dataclass, field
 from typing import Any
 
-from oracle import past
+from oracle import listed, past
 
 Condition = Callable[[Any, int], bool]  # asked of (the replay's view of a position or symbol, session)
 WEEKDAYS = ("monday", "tuesday", "wednesday", "thursday", "friday")
@@ -39,7 +40,50 @@ class LegRule:
     again_at_expiry: bool
     roll_if: Condition | None
     roll_for_credit: bool
+    direction: str
     add_when: Condition | None
+
+
+@dataclass(frozen=True)
+class Pace:
+    """When and how often a symbol may be entered."""
+
+    on: dict[str, Any]
+    cooling: int  # sessions after a position has lost money
+    ladder: int  # positions of one symbol at once
+    spacing: int  # sessions between their entries
+
+    @classmethod
+    def read(cls, enter: dict[str, Any]) -> Pace:
+        """Read it from the words of entry."""
+        ladder = enter.get("ladder", {})
+        return cls(
+            on=enter.get("on", {}),
+            cooling=int(enter.get("cool_down", {}).get("sessions", 0)),
+            ladder=int(ladder.get("positions", 1)),
+            spacing=int(ladder.get("spacing", 0)),
+        )
+
+    def names(self, ordinals: list[int], t: int) -> bool:
+        """Whether positions may be opened at the close of this session."""
+        if not self.on:
+            return True
+        ((word, what),) = self.on.items()
+        today = ordinals[t]
+        if word == "weekday":
+            return WEEKDAYS[(today + 6) % 7] in what if (today + 6) % 7 < 5 else False
+        if word == "expiry_of":
+            return today in listed.series_of(what, today - 1)
+        before = ordinals[t - 1] if t > 0 else listed.moved_back(today - 1)
+        return period(what, today) != period(what, before)
+
+
+def period(word: str, ordinal: int) -> tuple[int, ...]:
+    """The week, month or quarter of a day."""
+    day = dt.date.fromordinal(ordinal)
+    if word == "week":
+        return tuple(day.isocalendar()[:2])
+    return (day.year, day.month if word == "month" else (day.month - 1) // 3)
 
 
 @dataclass(frozen=True)
@@ -51,9 +95,12 @@ class Rules:
     accept: dict[str, Any]
     enter: Condition
     rank: Callable[[Any, int], float] | None
+    figure: tuple[str, float] | None  # the figure of its own structure that ranks a candidate, and its sign
+    pace: Pace
     exits: tuple[Condition, ...]
     stop: float
     at_close: bool
+    keep: bool  # shares that an assignment brings
 
     @classmethod
     def read(cls, strategy: dict[str, Any]) -> Rules:
@@ -64,15 +111,20 @@ class Rules:
         shares = {"long": 1, "short": -1, "none": 0}[strategy.get("shares", "long")]
         enter = strategy.get("enter", {})
         stop = strategy.get("stop", {})
+        by = enter.get("rank", {}).get("by", {})
+        sign = -1.0 if enter.get("rank", {}).get("order", "high") == "low" else 1.0
         return cls(
             shares=shares,
             legs=legs,
             accept=strategy.get("accept", {}),
             enter=reader.condition(enter["when"]) if "when" in enter else lambda view, t: True,
-            rank=reader.rank(enter.get("rank")),
+            rank=reader.rank(enter.get("rank")) if "signal" in by else None,
+            figure=(by["figure"], sign) if "figure" in by else None,
+            pace=Pace.read(enter),
             exits=tuple(reader.condition(rule["if"]) for rule in strategy.get("exit", [])),
             stop=number(stop.get("below_entry", stop.get("above_entry", 0.0))),
             at_close=strategy.get("fill", "open") == "close",
+            keep=strategy.get("after_assignment", "sell") == "keep",
         )
 
 
@@ -105,6 +157,7 @@ class Reader:
             again_at_expiry=roll.get("at") == "expiry",
             roll_if=self.condition(roll["if"]) if "if" in roll else None,
             roll_for_credit=roll.get("only_for") == "credit",
+            direction=roll.get("direction", "any"),
             add_when=self.condition(words["add_when"]) if "add_when" in words else None,
         )
 
@@ -163,6 +216,8 @@ class Reader:
     def of_position(self, words: dict[str, Any]) -> Condition:
         """A word about the position held; the view answers `figure(word, of or leg, session)`."""
         ((word, bound),) = words.items()
+        if word == "holds_shares":
+            return lambda view, t: view.position.shares > 0.0
         of = bound.get("of", "debit")
         if "leg" in bound:
             of = self.names.index(bound["leg"])
@@ -182,6 +237,7 @@ class Setting:
     per_position: float = 1.0
     most_positions: int = 1 << 30
     most_new_a_day: int = 1 << 30
+    most_per_sector: int = 1 << 30
     interest: bool = True
     costs: dict[str, float] = field(default_factory=dict)
     surface: dict[str, Any] = field(default_factory=dict)

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import datetime as dt
 from collections.abc import Mapping, Sequence
+from dataclasses import replace
 from typing import Any
 
 import numpy as np
@@ -83,6 +84,7 @@ def one_stock(closes: Sequence[float], first: str = "2024-01-08", **columns: Any
 FIRST_DAYS = ("2003-12-15", "2006-08-01", "2008-05-05", "2012-09-04", "2019-11-04")
 SYMBOLS = ("ASH", "ELM", "FIR", "OAK")
 RATIOS = (2.0, 3.0, 1.5, 0.5)
+SECTORS = ("", "wood", "wood", "stone")
 
 
 def walk_of_prices(dice: np.random.Generator, sessions: int, symbols: int) -> tuple[np.ndarray, np.ndarray]:
@@ -154,7 +156,8 @@ def wild_market(seed: int, sessions: int = 110, symbols: int = 2) -> Market:
     with_holes(dice, closes)
     rate = 0.0 if dice.random() < 0.4 else np.round(dice.uniform(0.0, 0.06, sessions), 4)
     kinds = {name: "index" for name in SYMBOLS[:symbols] if dice.random() < 0.2}
-    return make_market(
+    sectors = tuple(str(word) for word in dice.choice(SECTORS, symbols))
+    market = make_market(
         SYMBOLS[:symbols],
         ordinals,
         closes,
@@ -167,6 +170,7 @@ def wild_market(seed: int, sessions: int = 110, symbols: int = 2) -> Market:
         low=low,
         **acts,
     )
+    return replace(market, sectors=sectors)
 
 
 def wild_markets(sessions: int = 110, most_symbols: int = 3) -> st.SearchStrategy[Market]:

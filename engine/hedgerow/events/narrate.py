@@ -129,6 +129,9 @@ def _borrow(log: EventLog, event: Any) -> str:
 
 def _declined(log: EventLog, event: Any) -> str:
     reason = reason_word(int(event["reason"]), log.meta.exits)
+    if event["position"] >= 0:
+        leg = leg_word(int(event["leg"]), log.meta.leg_names)
+        return f"The leg `{leg}` of {_symbol(log, event)} was left as it is: {reason}"
     times = "" if event["quantity"] <= 1 else f" {_count(float(event['quantity']))} times"
     return f"An entry in {_symbol(log, event)} was declined{times}: {reason}"
 

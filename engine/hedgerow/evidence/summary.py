@@ -97,7 +97,8 @@ def curve_of(values: Floats, dates: Dates, rate: Floats | None = None) -> Curve:
 
 def declined_entries(log: EventLog) -> dict[str, int]:
     """Return how many entries were not made, by reason, the most frequent first."""
-    declined = log.events[log.events["kind"] == at.KIND_DECLINED]
+    events = log.events
+    declined = events[(events["kind"] == at.KIND_DECLINED) & (events["position"] < 0)]  # not of rolls
     counts = np.bincount(declined["reason"], weights=np.maximum(declined["quantity"], 1.0))
     codes = np.flatnonzero(counts)
     words = {kinds.reason_word(int(code), log.meta.exits): int(counts[code]) for code in codes}

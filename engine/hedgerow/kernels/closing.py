@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import Any
 
-from hedgerow.kernels.holding import close_clock, leave, move_legs, settle_expired
+from hedgerow.kernels.holding import close_clock, decline_leg, leave, move_legs, settle_expired
 from hedgerow.kernels.jit import step
 from hedgerow.kernels.layout import (
     KIND_SIGNALLED,
@@ -116,6 +116,26 @@ def _may_move(desk: Desk, position: Any, number: int, bar: Any, clock: Clock) ->
 
 
 @step
+def _finds_bid(desk: Desk, position: Any, scene: Scene, number: int, clock: Clock) -> bool:
+    """Whether somebody pays for the leg wanted, if it is to be sold; the log says when nobody does."""
+    leg, spec, bar = position.legs[number], desk.plan.specs[number], scene.bar
+    if spec.side > 0.0:
+        return True
+    strike, expiry = leg.strike, leg.expiry
+    leg.right, leg.strike, leg.expiry = spec.right, leg.wanted_strike, leg.wanted_expiry
+    price_leg(leg, bar.close, bar, clock, desk.smile)
+    bid = leg_price(leg, -1.0, clock, desk.costs) > 0.0
+    leg.strike, leg.expiry = strike, expiry
+    if leg.quantity != 0.0:
+        price_leg(leg, bar.close, bar, clock, desk.smile)
+    else:
+        leg.mid = 0.0
+    if not bid:
+        decline_leg(desk, position, scene.session, number, bar.close)
+    return bid
+
+
+@step
 def _note_order(desk: Desk, position: Any, scene: Scene, number: int, reason: int) -> None:
     """Write that a leg is to be rolled or added."""
     leg = position.legs[number]
@@ -138,10 +158,11 @@ def order_legs(desk: Desk, position: Any, scene: Scene, clock: Clock, word: int)
             continue
         if not _new_terms(desk, position, scene, k, clock):
             continue
+        may = leg.status != LIVE or _may_move(desk, position, k, scene.bar, clock)
+        if not may or not _finds_bid(desk, position, scene, k, clock):
+            leg.wanted_strike = 0.0
+            continue
         if leg.status == LIVE:
-            if not _may_move(desk, position, k, scene.bar, clock):
-                leg.wanted_strike = 0.0
-                continue
             leg.status = MOVING
         else:
             leg.status = WANTED if again else ADDING

@@ -20,6 +20,7 @@ from hedgerow.kernels.layout import (
     SPLITS,
     WHY_ASSIGNED_EARLY,
     WHY_GONE,
+    WHY_LEFT_OVER,
     WHY_NONE,
     WHY_STOP,
     WHY_STOP_GAP,
@@ -113,8 +114,11 @@ def _assigned_overnight(desk: Desk, position: Any, scene: Scene, action: Any) ->
         after_delivery(desk, position, scene.session, WHY_ASSIGNED_EARLY)
         return
     take_stock(position, desk.plan.legs)
-    if position.soonest == 0:  # the close sells the shares that no leg keeps
-        position.soonest = scene.today.ordinal
+    if desk.plan.shares == 0.0 and desk.plan.keep_shares == 0 and position.soonest != 0:
+        position.orders = 0
+        if position.closing == 0:  # shares nobody wanted are not carried for the sake of another leg
+            position.closing = WHY_LEFT_OVER
+    position.soonest = scene.today.ordinal  # the close sells shares that no leg keeps, and restates the rest
 
 
 @step

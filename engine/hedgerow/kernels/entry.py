@@ -36,6 +36,7 @@ from hedgerow.kernels.structure import (
     lot_cost,
     price_leg,
     spread_share,
+    stake_of,
 )
 from hedgerow.kernels.trades import share_price, trade_leg, trade_shares, write
 
@@ -81,7 +82,7 @@ def figure_of(desk: Desk, position: Any, scene: Scene, clock: Clock) -> float:
     horizon, moment = first_expiry(position.legs, plan.legs), (spot, scene.bar, clock, desk.smile)
     shares = plan.shares * LOT_SHARES
     figures = measure(position.legs, plan.legs, shares, debit, horizon, moment, desk.scratch)
-    best, worst, stake = figures[0], figures[1], debit + figures[5]
+    best, worst, stake = figures[0], figures[1], stake_of(debit, figures[5], shares, spot)
     value = figures[3]
     if plan.rank_figure == RANK_BEST_OVER_WORST:
         value = best / worst if worst > 0.0 else math.inf
@@ -110,7 +111,8 @@ def consider(desk: Desk, position: Any, scene: Scene, clock: Clock) -> int:
         figures = measure(position.legs, plan.legs, shares, debit, horizon, moment, desk.scratch)
     owed = figures[5]
     wide = spread_share(desk, position, clock) if plan.spread_most < math.inf else 0.0
-    why = judge(plan, debit + owed, credit, LOT_SHARES * spot, figures, wide)
+    stake = stake_of(debit, owed, plan.shares * LOT_SHARES, spot)
+    why = judge(plan, stake, credit, LOT_SHARES * spot, figures, wide)
     if why != WHY_NONE:
         return why
     capital = _capital(desk, position, debit, owed, fees, spot)
@@ -200,7 +202,7 @@ def _remember(desk: Desk, position: Any, terms: Any, session: int) -> None:
     position.stock_price = terms.stock_price
     position.stop_price = terms.stock_price * (1.0 - plan.shares * plan.stop) if plan.stop > 0.0 else 0.0
     position.stop_from = session + plan.fill_close
-    position.stake = terms.net_debit + terms.reserve
+    position.stake = stake_of(terms.net_debit, terms.reserve, terms.shares, terms.stock_price)
     position.best_gain = terms.best_gain
     position.worst_loss = terms.worst_loss
     position.reserve = terms.reserve if plan.margin == MARGIN_CASH else 0.0

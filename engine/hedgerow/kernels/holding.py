@@ -6,13 +6,33 @@ from typing import Any
 
 from hedgerow.kernels.entry import take_stock
 from hedgerow.kernels.jit import step
-from hedgerow.kernels.layout import LOT_SHARES, MARGIN_CASH, WHY_ADDED, WHY_EXPIRY, WHY_LEFT_OVER, WHY_ROLL
+from hedgerow.kernels.layout import (
+    KIND_DECLINED,
+    LOT_SHARES,
+    MARGIN_CASH,
+    WHY_ADDED,
+    WHY_EXPIRY,
+    WHY_LEFT_OVER,
+    WHY_NO_BID,
+    WHY_ROLL,
+)
+from hedgerow.kernels.listing import fill_price
 from hedgerow.kernels.payoff import first_expiry, measure
-from hedgerow.kernels.state import ADDING, MOVING, NONE, WANTED, Clock, Desk, Scene
+from hedgerow.kernels.quote import quote
+from hedgerow.kernels.state import ADDING, LIVE, MOVING, NONE, WANTED, Clock, Desk, Scene
 from hedgerow.kernels.structure import price_leg
-from hedgerow.kernels.trades import close_position, settle_leg, trade_leg, trade_shares
+from hedgerow.kernels.trades import close_position, settle_leg, trade_leg, trade_shares, write
 
-__all__ = ["after_delivery", "close_clock", "leave", "move_legs", "open_clock", "restate", "settle_expired"]
+__all__ = [
+    "after_delivery",
+    "close_clock",
+    "decline_leg",
+    "leave",
+    "move_legs",
+    "open_clock",
+    "restate",
+    "settle_expired",
+]
 
 OPEN_TO_CLOSE_DAYS = 6.5 / 24.0
 
@@ -114,11 +134,45 @@ def units(position: Any, plan: Any) -> float:
 
 
 @step
+def decline_leg(desk: Desk, position: Any, session: int, number: int, spot: float) -> None:
+    """Write that a leg was not rolled or added, since nobody would pay for it; what is held is left."""
+    leg = position.legs[number]
+    row = write(desk, session, position.symbol, position.position, KIND_DECLINED, WHY_NO_BID)
+    row.leg = number
+    row.quantity = 1.0
+    row.strike = leg.wanted_strike
+    row.expiry = leg.wanted_expiry
+    row.spot = spot
+
+
+@step
+def _lost_its_bid(
+    desk: Desk, position: Any, session: int, number: int, spot: float, bar: Any, clock: Clock
+) -> bool:
+    """Whether a leg that is to be sold finds no bid at this moment; its order is then taken back."""
+    leg, spec = position.legs[number], desk.plan.specs[number]
+    if spec.side > 0.0:
+        return False
+    mid, _, away = quote(spec.right, leg.wanted_strike, leg.wanted_expiry, spot, bar, clock, desk.smile)
+    if fill_price(-1.0, mid, away, clock.low_tick, clock.high_tick, desk.costs) > 0.0:
+        return False
+    decline_leg(desk, position, session, number, spot)
+    leg.wanted_strike = 0.0
+    if leg.status == MOVING:
+        leg.status = LIVE
+    elif leg.status == ADDING:
+        leg.status = NONE
+    return True
+
+
+@step
 def move_legs(desk: Desk, position: Any, session: int, spot: float, bar: Any, clock: Clock) -> None:
     """Fill the leg orders of a position: buy back what is rolled, then write or buy what is wanted."""
     for k in range(desk.plan.legs):
         leg, spec = position.legs[k], desk.plan.specs[k]
         if leg.wanted_strike <= 0.0 or leg.status not in (WANTED, ADDING, MOVING):
+            continue
+        if _lost_its_bid(desk, position, session, k, spot, bar, clock):
             continue
         reason = WHY_ADDED if leg.status == ADDING else WHY_ROLL
         if leg.quantity != 0.0:

@@ -45,11 +45,28 @@ def _same_terms(one: Any, other: Any) -> bool:
 
 
 @step
-def _held_shares(position: Any, count: int, spot: float) -> float:
-    """Maintenance of shares held, per share: less where a put protects them, none on a call they cover."""
+def _share_of(position: Any, leg: int, size: float) -> float:
+    """The part of `size` shares that a leg's contracts stand for; none without a leg."""
+    return 0.0 if leg < 0 else min(1.0, abs(position.legs[leg].quantity) / size)
+
+
+@step
+def _held(position: Any, count: int, size: float, spot: float) -> float:
+    """Maintenance of `size` shares held, money: each part by the put and the call that stand for it."""
     put, call = _find(position, count, PUT, 1.0), _find(position, count, CALL, -1.0)
     if put >= 0 and _find(position, count, PUT, -1.0) >= 0:
         put = -1  # that put stands behind the one written
+    protected, covered = _share_of(position, put, size), _share_of(position, call, size)
+    both = min(protected, covered)
+    money = both * _held_shares(position, put, call, spot)
+    money += (protected - both) * _held_shares(position, put, -1, spot)
+    money += (covered - both) * _held_shares(position, -1, call, spot)
+    return size * (money + (1.0 - max(protected, covered)) * _held_shares(position, -1, -1, spot))
+
+
+@step
+def _held_shares(position: Any, put: int, call: int, spot: float) -> float:
+    """Maintenance of a share held: less where leg `put` protects it, none on leg `call` that it covers."""
     plain = LONG_MAINTENANCE * spot
     if call >= 0 and put < 0:
         plain = LONG_MAINTENANCE * min(spot, position.legs[call].strike)
@@ -66,15 +83,25 @@ def _held_shares(position: Any, count: int, spot: float) -> float:
 
 
 @step
-def _short_shares(position: Any, count: int, spot: float) -> float:
-    """Maintenance of shares sold short, per share, beyond the proceeds: less where a call protects them."""
-    call, put = _find(position, count, CALL, 1.0), _find(position, count, PUT, -1.0)
+def _short_shares(position: Any, call: int, put: int, spot: float) -> float:
+    """Maintenance of a share sold short, beyond the proceeds: less where leg `call` protects it."""
     if call < 0:
         return SHORT_MAINTENANCE * spot
     held = position.legs[call]
     if put >= 0 and _same_terms(position.legs[put], held):
         return PROTECTED_SHARE * held.strike
     return min(PROTECTED_SHARE * held.strike + _out_of_the_money(held, spot), SHORT_MAINTENANCE * spot)
+
+
+@step
+def _short(position: Any, count: int, size: float, spot: float) -> float:
+    """Maintenance of `size` shares sold short, money: each part by the call that stands for it."""
+    call, put = _find(position, count, CALL, 1.0), _find(position, count, PUT, -1.0)
+    protected = _share_of(position, call, size)
+    locked = min(protected, _share_of(position, put, size))
+    money = locked * _short_shares(position, call, put, spot)
+    money += (protected - locked) * _short_shares(position, call, -1, spot)
+    return size * (money + (1.0 - protected) * _short_shares(position, -1, -1, spot))
 
 
 @step
@@ -100,10 +127,10 @@ def requirement(position: Any, count: int, shares: float, spot: float) -> tuple[
     """Initial and maintenance requirement, money, of `shares` and the legs of a position at this price."""
     size, initial, maintenance = abs(shares), 0.0, 0.0
     if shares > 0.0:
-        maintenance = size * _held_shares(position, count, spot)
+        maintenance = _held(position, count, size, spot)
         initial = max(size * LONG_INITIAL * spot, maintenance)
     elif shares < 0.0:
-        maintenance = size * _short_shares(position, count, spot)
+        maintenance = _short(position, count, size, spot)
         initial = max(size * SHORT_INITIAL * spot, maintenance)
     more = 0.0
     for k in range(count):

@@ -22,6 +22,7 @@ from hedgerow.kernels.normal import quantile
 from hedgerow.kernels.quote import at_the_money_for, forward_of, quote, tenor_of
 from hedgerow.kernels.smile import bent
 from hedgerow.kernels.state import Clock
+from hedgerow.kernels.trades import share_price
 
 __all__ = ["choose_strike", "premium", "wanted_strike"]
 
@@ -131,7 +132,7 @@ def scan_for_worst(
         if not is_listed(strike, spot):
             continue
         price = premium(spec.side, (spec.right, strike, expiry), spot, bar, clock, smile, costs)
-        debit = spot - income + price
+        debit = share_price(1.0, spot, costs) - income + price
         if debit - strike <= spec.strike_value * debit:
             return strike
     return 0.0

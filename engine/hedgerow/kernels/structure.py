@@ -36,9 +36,11 @@ __all__ = [
     "lot_cost",
     "price_leg",
     "spread_share",
+    "stake_of",
 ]
 
 _INFINITE = math.inf
+_DUST = 1e-9
 
 
 @step
@@ -154,6 +156,7 @@ def judge(plan: Any, base: float, credit: float, notional: float, figures: Any, 
     those of `payoff.measure`; `wide` is the spread over the premium.
     """
     best, worst, odds = figures[0], figures[1], figures[3]
+    base = max(base, _DUST)  # nothing or less is paid for a gain that is locked in
     if plan.net_credit > 0.0 and credit <= 0.0:
         return WHY_NET_CREDIT
     if -credit > plan.net_debit_most * notional:
@@ -168,6 +171,16 @@ def judge(plan: Any, base: float, credit: float, notional: float, figures: Any, 
     if plan.ratio_least > -_INFINITE and not best >= plan.ratio_least * worst:
         return WHY_BEST_OVER_WORST
     return WHY_SPREAD if wide > plan.spread_most else WHY_NONE
+
+
+@step
+def stake_of(debit: float, owed: float, shares: float, price: float) -> float:
+    """Money on which gains and losses are measured: what was paid and what could be owed.
+
+    Of shares sold short it is at least their price: what their sale brought in is no capital of one's own,
+    and less it the debit is near nothing.
+    """
+    return max(debit + owed, -shares * price) if shares < 0.0 else debit + owed
 
 
 @step

@@ -196,4 +196,4 @@ def close_position(desk: Desk, position: Any, session: int, reason: int) -> None
     position.reserve = 0.0
     position.shares = 0.0
     position.left = session
-    position.lost = 1 if position.flows < 0.0 else 0
+    position.lost = 1 if row.price < 0.0 else 0  # in whole cents: dust of sums is no loss

@@ -94,9 +94,12 @@ def capital_tied_up(log: EventLog) -> Floats:
     """Return the money (P,) a position ties up: what a return is a fraction of.
 
     The net debit and what is set aside for what could be owed: for shares that are paid for the net debit,
-    for a cash-secured put the strike less the premium. NaN when it is not positive.
+    for a cash-secured put the strike less the premium. For shares sold short at least their price, since what
+    their sale brought in is no capital of one's own. NaN when it is not positive.
     """
-    tied = log.terms["net_debit"] + log.terms["reserve"]
+    terms = log.terms
+    sold = np.maximum(-terms["shares"], 0.0) * terms["stock_price"]
+    tied = np.maximum(terms["net_debit"] + terms["reserve"], np.where(sold > 0.0, sold, -np.inf))
     return np.asarray(np.where(tied > 0, tied, np.nan))
 
 
@@ -114,10 +117,22 @@ def outcomes(postings: Postings) -> NDArray[np.object_]:
     words = np.where(best, kinds.BEST_GAIN, np.where(floor, kinds.FLOOR, kinds.BETWEEN)).astype(object)
     words[reason >= at.WHY_EXIT_RULE] = kinds.CUT
     words[(reason == at.WHY_STOP) | (reason == at.WHY_STOP_GAP)] = kinds.STOP
-    words[reason == at.WHY_ASSIGNED_EARLY] = kinds.ASSIGNED
+    words[(reason == at.WHY_ASSIGNED_EARLY) | _ended_by_early_assignment(postings, reason)] = kinds.ASSIGNED
     words[reason == at.WHY_GONE] = kinds.GONE
     words[reason == at.WHY_OPEN_AT_END] = kinds.OPEN
     return words
+
+
+def _ended_by_early_assignment(postings: Postings, reason: Ints) -> NDArray[np.bool_]:
+    """Which positions (P,) an early assignment took apart: what it left was closed for that alone."""
+    events = postings.log.events
+    early = (events["kind"] == at.KIND_ASSIGNED) & (events["reason"] == at.WHY_ASSIGNED_EARLY)
+    early &= postings.row >= 0
+    session = np.full(reason.size, -1, dtype=np.int64)
+    session[postings.row[early]] = events["session"][early]
+    closed = np.where(postings.closed >= 0, events["session"][postings.closed], -2)
+    left = (reason == at.WHY_LEFT_OVER) & (session >= 0)
+    return np.asarray(left | ((reason == at.WHY_EXPIRY) & (session == closed)))
 
 
 def ran_to_first_expiry(postings: Postings) -> tuple[NDArray[np.bool_], NDArray[np.bool_]]:

@@ -130,3 +130,25 @@ def test_a_leg_goes_with_its_partner() -> None:
     one = position(call(98, -100, 5), put(95, 100, 90), shares=100.0, status=OPEN, entered=3)
     (row,) = written(ordered(rule, one))
     assert (row.leg, row.expiry) == (0, TODAY + 90)
+
+
+def test_a_roll_that_finds_no_bid_is_declined() -> None:
+    """A call far out that nobody pays for: the leg is left as it is, and the log says so."""
+    far = ROLLED | {"strike_value": 1.2}
+    one = short_call(99, SOON, mid=1.75)
+    (row,) = written(ordered(plan(spec(**far), moves=1), one, charged=DEAR))
+    assert (row.kind, row.reason, row.leg) == (at.KIND_DECLINED, at.WHY_NO_BID, 0)
+    assert (one.legs[0].status, one.legs[0].strike, one.legs[0].quantity) == (LIVE, 99.0, -100.0)
+    assert (one.legs[0].wanted_strike, one.orders) == (0.0, 0)
+
+
+@pytest.mark.parametrize(("status", "left"), [(NONE, NONE), (WANTED, WANTED), (LIVE, LIVE)])
+def test_a_bid_that_is_gone_by_the_open(status: int, left: int) -> None:
+    """Ordered at 100, the stock opens at 45: nobody pays for the 102 call, and nothing is done."""
+    rule = plan(spec(**ROLLED, add_length=1, roll_at_expiry=1, side=-1.0), moves=1)
+    one = short_call(99, SOON, mid=1.75) if status == LIVE else position({"status": status}, shares=100.0)
+    books = ordered(rule, one, charged=DEAR)
+    move_legs(books, one, 8, 45.0, bar(), clock())
+    assert [row.kind for row in written(books)] == [at.KIND_SIGNALLED, at.KIND_DECLINED]
+    assert (one.legs[0].status, one.legs[0].wanted_strike) == (left, 0.0)
+    assert one.legs[0].quantity == (-100.0 if status == LIVE else 0.0)

@@ -62,6 +62,16 @@ TABLE: tuple[tuple[str, float, float, Legs, float, float], ...] = (
     ("bought leg that ends later", 0, 60, (put(55, -100, 30, mid=0.7), put(50, 100, 60, mid=0.9)), 520, 520),
     # one of two is a spread worth 5 less .70, the other stands alone with 7; .20 was paid
     ("two written against one", 0, 60, (put(55, -200, mid=0.7), put(50, 100, mid=0.2)), 1150, 1150),
+    # half under a put: 10 % of 55 and 5, the other half 25 % of 60; 50 of the put at .70 are paid
+    ("protective put for half", 100, 60, (put(55, 50, mid=0.7),), 3035, 1310),
+    # half a collar, half a covered call, 25 % of 60
+    ("collar with half a put", 100, 60, (call(65, -100, mid=0.8), put(55, 50, mid=0.7)), 3035, 1310),
+    # half at the strike of the call, 25 % of 50, half at 25 % of 60
+    ("covered call on half", 100, 60, (call(50, -50, mid=10.6),), 3000, 1375),
+    # half of it 10 % of 65 and 5, the other half 30 % of 60
+    ("short shares half under a call", -100, 60, (call(65, 50, mid=0.8),), 3040, 1515),
+    # half of it locked, 10 % of 55, half with the call alone, 5.50 and nothing out of the money
+    ("half a reversal", -100, 60, (call(55, 100, mid=6.0), put(55, -50, mid=1.0)), 3600, 1150),
     # one call is covered, the other stands alone with 7
     ("two calls on one lot of shares", 100, 60, (call(65, -200, mid=0.8),), 3700, 2200),
     # the put at 55 stands behind the one at 45: .70 less .10 were paid; shares 25 % of 60

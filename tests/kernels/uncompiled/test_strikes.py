@@ -172,7 +172,7 @@ def test_a_put_that_keeps_the_worst_loss_within(within: float, income: float) ->
     strike = chosen(0.0, income, charged=DEAR, **rule)
 
     def worst(at_strike: float) -> float:
-        debit = SPOT - income + price(1.0, PUT, at_strike)
+        debit = SPOT * (1.0 + DEAR.slippage) - income + price(1.0, PUT, at_strike)
         return (debit - at_strike) / debit
 
     if strike == 0.0:

@@ -19,6 +19,7 @@ from hedgerow.kernels.structure import (
     lot_cost,
     price_leg,
     spread_share,
+    stake_of,
 )
 from step_records import (
     DEAR,
@@ -224,3 +225,28 @@ def test_odds_that_are_not_known_meet_no_bound() -> None:
 def test_what_a_lot_ties_up(debit: float, owed: float, fees: float, shares: float, expected: float) -> None:
     """Money of one lot at a stock price of 100."""
     assert capital_of(debit, owed, fees, shares, SPOT) == pytest.approx(expected)
+
+
+@pytest.mark.parametrize(
+    ("debit", "owed", "shares", "stake"),
+    [
+        (9_800.0, 0.0, 100.0, 9_800.0),  # a collar: what was paid
+        (-80.0, 9_500.0, 0.0, 9_420.0),  # a put secured by cash: strike less premium
+        (-10_050.0, 10_000.0, -100.0, 10_000.0),  # a reversal: the price of the shares, not a debit of -50
+        (-9_700.0, 20_500.0, -100.0, 10_800.0),  # short shares under a call: all that could be owed
+    ],
+)
+def test_what_gains_are_measured_on(debit: float, owed: float, shares: float, stake: float) -> None:
+    """Money of one lot of a stock at 100: paid and owed; of shares sold short at least their price."""
+    assert stake_of(debit, owed, shares, SPOT) == stake
+
+
+@pytest.mark.parametrize("base", [0.0, -25.0])
+def test_a_gain_that_is_locked_in_is_not_declined(base: float) -> None:
+    """Nothing or less is tied up: without bounds all is taken, and a worst that is a gain is no loss."""
+    locked = (25.0, -25.0, math.nan, 1.0, 1.0, 0.0)
+    assert judge(plan(), base, 25.0, 10_000.0, locked, 0.0) == at.WHY_NONE
+    assert judge(plan(worst_most=0.05, best_least=0.01), base, 25.0, 10_000.0, locked, 0.0) == at.WHY_NONE
+    assert (
+        judge(plan(worst_most=0.05), base, 25.0, 10_000.0, (25.0, 5.0, *locked[2:]), 0.0) == at.WHY_WORST_LOSS
+    )
