@@ -27,7 +27,11 @@ strategy: rule.yaml
 variants:
   short: {}
   long: {legs.call.expiry.days: 21}
+evidence: none
 """
+WEIGHED = STUDY.replace("evidence: none", "evidence: {draws: 100}")
+"""The same study with its evidence, from few draws: most tests are about other things and do without."""
+
 SESSIONS = 120
 
 

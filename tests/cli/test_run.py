@@ -15,7 +15,7 @@ import pytest
 import yaml
 
 import hedgerow as hr
-from cli_runs import SESSIONS, Runner, Said
+from cli_runs import SESSIONS, WEIGHED, Runner, Said
 from hedgerow import __version__
 from hedgerow.report.files import RUN_FILES, STRESS_FILES
 
@@ -36,11 +36,12 @@ def test_a_study_is_shown_and_its_ledgers_left(hedgerow: Runner) -> None:
         assert words in said.out
     assert f"2015-01-05 to 2015-06-19, {SESSIONS} sessions" in said.out
     assert said.out.rstrip().endswith("Every trade and every cent: runs/short-or-long")
-    assert {path.name for path in Path("runs/short-or-long").iterdir()} == {*RUN_FILES, *STRESS_FILES}
+    assert {path.name for path in Path("runs/short-or-long").iterdir()} == set(RUN_FILES)
 
 
 def test_it_fits_the_screen_and_is_plain_when_piped(hedgerow: Runner) -> None:
-    """At most a hundred columns, no control characters."""
+    """At most a hundred columns, no control characters; evidence and verdict included."""
+    hedgerow.write(study__yaml=WEIGHED)
     out = hedgerow("run", "study.yaml").out
     assert max(map(len, out.splitlines())) <= WIDTH
     assert "\x1b" not in out
@@ -78,6 +79,72 @@ def test_json_for_programs(hedgerow: Runner) -> None:
     assert told["variants"] == left["variants"]
     assert list(told["variants"]) == ["short", "long"]
     assert any("Hypothetical" in caution for caution in told["cautions"])
+
+
+def test_a_run_ends_with_a_verdict_that_is_in_the_summary(hedgerow: Runner) -> None:
+    """Below the cautions on the screen; the same in summary.json and --json; the stress in two files."""
+    hedgerow.write(study__yaml=WEIGHED)
+    said = hedgerow("run", "study.yaml", "--out", "mine")
+    assert {path.name for path in Path("mine").iterdir()} == {*RUN_FILES, *STRESS_FILES}
+    left = json.loads(Path("mine/summary.json").read_text(encoding="utf-8"))["evidence"]
+    words = " ".join(said.out.split())
+    verdict = " ".join(left["verdict"]["paragraph"].split())
+    assert words.index("Before you rely on this") < words.index(verdict)
+    assert words.endswith(f"{verdict} Every trade and every cent: mine")
+    told = json.loads(hedgerow("run", "study.yaml", "--out", "other", "--json").out)
+    assert told["evidence"] == left
+    frame = pd.read_parquet("mine/stress.parquet")
+    pd.testing.assert_frame_equal(frame, pd.read_csv("mine/stress.csv"), check_dtype=False)
+    assert set(frame["first"]) == {"short", "long"}
+    assert {0.8, 1.4} <= set(frame["ratio"])
+
+
+def test_evidence_none_is_quick_and_leaves_none(hedgerow: Runner) -> None:
+    """No verdict on the screen, no part of the summary, no files of a stress."""
+    said = hedgerow("run", "study.yaml", "--out", "mine")
+    assert said.code == 0
+    assert "Verdict" not in said.out
+    assert "evidence" not in json.loads(Path("mine/summary.json").read_text(encoding="utf-8"))
+    assert {path.name for path in Path("mine").iterdir()} == set(RUN_FILES)
+
+
+def test_tries_are_counted_across_studies_of_a_folder(hedgerow: Runner) -> None:
+    """The same variants again are not new; another is; the caution counts all, wherever ledgers go."""
+    hedgerow.write(study__yaml=WEIGHED)
+    first = hedgerow("run", "study.yaml", "--out", "one")
+    assert "2 variants were tried" in first.out
+    assert "2 variants in this study;" in " ".join(first.out.split())
+    assert "2 variants were tried" in hedgerow("run", "study.yaml", "--out", "two").out
+    more = WEIGHED.replace("  short: {}", "  shorter: {legs.call.expiry.days: 14}")
+    hedgerow.write(more__yaml=more)
+    third = hedgerow("run", "more.yaml", "--out", "three")
+    assert "3 variants were tried" in third.out
+    assert "2 variants in this study, 3 on these prices in all" in " ".join(third.out.split())
+    assert len(Path("runs/tries.jsonl").read_text(encoding="utf-8").splitlines()) == 3
+
+
+def test_tries_that_cannot_be_recorded_are_told_and_the_run_stands(hedgerow: Runner) -> None:
+    """Where `runs` is a file: one line on the error stream, exit 0, the ledgers are there."""
+    Path("runs").write_text("a file", encoding="utf-8")
+    said = hedgerow("run", "study.yaml", "--out", "mine", "--quiet")
+    assert (said.code, said.out, len(said.told)) == (0, "mine\n", 1)
+    assert "later runs count too few" in said.err
+    assert Path("mine/run.yaml").is_file()
+
+
+def test_a_sample_is_named_in_place_of_a_folder(hedgerow: Runner, monkeypatch: pytest.MonkeyPatch) -> None:
+    """By --market and in a study whose record repeats it; without the package it is said what to install."""
+    text = "name: Index\nmarket: sample:sp500\nwindow: {from: 2018-01-02}\nstrategy: {name: Shares}\n"
+    hedgerow.write(index__yaml=text + "account: {cash: 1000000}\nevidence: none\n")
+    assert hedgerow("run", "index.yaml", "--out", "mine", "--quiet").code == 0
+    record = yaml.safe_load(Path("mine/run.yaml").read_text(encoding="utf-8"))
+    assert record["study"]["market"] == "sample:sp500"
+    assert hedgerow("run", "mine/run.yaml", "--out", "again", "--quiet").code == 0
+    assert Path("mine/events.parquet").read_bytes() == Path("again/events.parquet").read_bytes()
+    monkeypatch.setattr("importlib.util.find_spec", lambda name: None)
+    said = hedgerow("run", "rule.yaml", "--market", "sample:five-stocks")
+    assert (said.code, said.out, len(said.told)) == (2, "", 1)
+    assert "pip install 'hedgerow[samples]'" in said.err
 
 
 def test_quiet_prints_only_the_folder(hedgerow: Runner) -> None:

@@ -11,7 +11,7 @@ import pandas as pd
 import pytest
 
 from hedgerow.errors import DataError
-from hedgerow.market import samples
+from hedgerow.market import load_market, samples
 from price_tables import codes
 
 
@@ -50,6 +50,30 @@ def test_first_share_prices_move_like_the_adjusted_close() -> None:
         own = market.adj_close[bars, column]
         moved = np.abs(own[1:] / own[:-1] / (vendor[1:] / vendor[:-1]) - 1.0)
         assert moved[paid[1:] == 0.0].max() < 1e-6
+
+
+def test_samples_by_name() -> None:
+    """`sample:` and a name give the same market as the function, with the bill rate."""
+    for name, made in (("five-stocks", samples.stocks(bills=True)), ("sp500", samples.index())):
+        market = load_market(f"sample:{name}")
+        assert market.fingerprint == made.fingerprint
+        assert market.rate.max() > 0.05  # bills in 2000, public record: about 6 %
+
+
+@pytest.mark.parametrize(
+    ("place", "words", "told"),
+    [
+        ("sample:sp501", {}, "did you mean `sample:sp500`?"),
+        ("sample:", {}, "`sample:five-stocks`, `sample:sp500`"),
+        ("sample:sp500", {"adjustment": "none"}, "leave them out"),
+    ],
+)
+def test_a_sample_that_cannot_be(place: str, words: dict[str, str], told: str) -> None:
+    """One sentence that says what is allowed, or what to leave out."""
+    with pytest.raises(DataError) as caught:
+        load_market(place, **words)
+    assert len(caught.value.faults) == 1
+    assert told in str(caught.value)
 
 
 def test_the_index() -> None:

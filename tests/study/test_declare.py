@@ -15,6 +15,7 @@ from hedgerow.errors import StudyError
 from hedgerow.kernels.layout import Costs
 from hedgerow.rules.load import load_strategy
 from hedgerow.study.declare import Study, load_study, study_of_strategy
+from hedgerow.study.evidence_words import Asked
 from hedgerow.study.trials import trials_of
 from hedgerow.study.words import CostWords, Day
 from hedgerow.volatility.model import PRESETS, SurfaceModel
@@ -39,6 +40,7 @@ def folder_with(tmp_path: Path, **strategies_by_name: Any) -> Path:
 
 def study_file(tmp_path: Path, text: str) -> Path:
     """A study file in a folder below the market and the rules."""
+    tmp_path.mkdir(exist_ok=True)
     path = folder_with(tmp_path) / "studies" / "study.yaml"
     path.parent.mkdir()
     path.write_text(text, encoding="utf-8")
@@ -135,8 +137,48 @@ def test_shipped_studies(path: Path) -> None:
     assert study.question
     trials = trials_of(study)
     assert len({trials.strategy(number) for number in range(len(trials))}) == len(trials) > 1
-    assert (study.market / "prices.csv").exists()
+    assert str(study.market).startswith("sample:") or (study.market / "prices.csv").exists()
     assert replace(load_study(study.plain()), path=path) == study
+
+
+def test_a_sample_of_real_prices_by_name(tmp_path: Path) -> None:
+    """Wherever the study stands; an unknown one is told with its place and the nearest right name."""
+    text = "name: a\nmarket: sample:{}\nstrategy: {{name: Shares}}\n"
+    study = load_study(study_file(tmp_path, text.format("sp500")))
+    assert str(study.market) == "sample:sp500"
+    with pytest.raises(StudyError) as caught:
+        load_study(study_file(tmp_path / "other", text.format("five-stock")))
+    (fault,) = caught.value.faults
+    assert (fault.line, fault.code) == (2, "unknown-sample")
+    assert "did you mean `sample:five-stocks`?" in str(fault)
+
+
+def test_the_words_of_evidence(tmp_path: Path) -> None:
+    """Read as figures, kept increasing; `none` for all of it and for the stress; both come back."""
+    text = "name: a\nmarket: .\nstrategy: {name: Shares}\nevidence: "
+    words = "{level: 95%, draws: 500, stress: {ratio: [1.4, 0.8, 0.8]}, timing: false, target: -5%}\n"
+    study = load_study(study_file(tmp_path, text + words))
+    assert study.evidence is not None
+    assert study.evidence == replace(
+        Asked(), level=0.95, draws=500, ratios=(0.8, 1.4), timing=False, target=-0.05
+    )
+    assert load_study(study_file(tmp_path / "none", text + "none\n")).evidence is None
+    bare = load_study(study_file(tmp_path / "bare", text + "{stress: none}\n"))
+    assert bare.evidence is not None
+    assert bare.evidence.ratios == bare.evidence.skews == bare.evidence.half_spreads == ()
+    assert load_study(bare.plain()).evidence == bare.evidence
+
+
+def test_faults_of_evidence_come_together(tmp_path: Path) -> None:
+    """A bare number for a percent, too few draws, a ratio that is none, and a word that is none."""
+    text = (
+        "name: a\nmarket: .\nstrategy: {name: Shares}\nevidence:\n  level: 0.9\n  draws: 5\n"
+        "  stress: {ratio: [1, x], half_spread: 3%}\n  timings: true\n"
+    )
+    with pytest.raises(StudyError) as caught:
+        load_study(study_file(tmp_path, text))
+    told = {(fault.line, fault.code) for fault in caught.value.faults}
+    assert told == {(5, "percent"), (6, "range"), (7, "number"), (7, "shape"), (8, "unknown-word")}
 
 
 @settings(max_examples=25)

@@ -134,7 +134,7 @@ def _study(file: Path, market: Path | None, extensions: list[str]) -> Study:
     if market is None:
         found = "this is a strategy file, which does not say on which prices to run"
         raise StudyError.one(str(file), "no-market", found, "a market is needed", "add --market FOLDER")
-    if not market.exists():
+    if not market.exists() and not str(market).startswith("sample:"):
         found = "there is no such file or folder of prices"
         raise StudyError.one(
             f"--market {market}", "file-missing", found, "a folder, CSV or Parquet is needed"

@@ -104,7 +104,7 @@ def flip_of(versus: Versus, values: Floats, gaps: Floats, drawn: Floats) -> Flip
     """
     value, count = _nearest(values, gaps, versus.assumed)
     anchor = versus.assumed if math.isnan(value) else value
-    places = np.array([_place(values, row, anchor) for row in drawn])
+    places = _places(values, drawn, anchor)
     known = places[~np.isnan(places)]
     low = high = math.nan
     if known.size > len(places) / 2.0:
@@ -148,12 +148,20 @@ def _nearest(values: Floats, gaps: Floats, anchor: float) -> tuple[float, int]:
     return float(found[np.argmin(np.abs(found - anchor))]), int(found.size)
 
 
-def _place(values: Floats, gaps: Floats, anchor: float) -> float:
-    """Return the crossing of one record; infinite on the side to which the gap shrinks, NaN when still."""
-    value, _ = _nearest(values, gaps, anchor)
-    if not math.isnan(value) or _still(gaps):
-        return value
-    return math.inf if abs(gaps[-1]) < abs(gaps[0]) else -math.inf
+def _places(values: Floats, drawn: Floats, anchor: float) -> Floats:
+    """Return each record's crossing nearest to an anchor, drawn (B, R).
+
+    Infinite on the side to which the gap shrinks where there is none, NaN where the record is still.
+    """
+    here, after = drawn[:, :-1], drawn[:, 1:]
+    change = (np.sign(here) * np.sign(after) < 0) | ((here == 0.0) != (after == 0.0))
+    share = np.divide(here, here - after, out=np.zeros(here.shape), where=change)
+    found = values[:-1] + share * np.diff(values)
+    nearest = np.argmin(np.where(change, np.abs(found - anchor), np.inf), axis=1)
+    places = np.take_along_axis(found, nearest[:, np.newaxis], axis=1)[:, 0]
+    beyond = np.where(np.abs(drawn[:, -1]) < np.abs(drawn[:, 0]), np.inf, -np.inf)
+    places = np.where(change.any(axis=1), places, beyond)
+    return np.where(np.ptp(drawn, axis=1) <= STILL, np.nan, places)
 
 
 def _ahead(versus: Versus, values: Floats, gaps: Floats, value: float) -> str:

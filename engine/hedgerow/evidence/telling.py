@@ -12,6 +12,7 @@ __all__ = ["Step", "Teller", "listed_names"]
 
 Step = str | int
 
+ROUNDING = 1e-9
 FIGURE = {"value", "unit", "meaning"}
 """What a figure in plain evidence consists of."""
 
@@ -51,7 +52,8 @@ class Teller:
     def _flip(self, *path: Step) -> str:
         if self._plain_at(*path)["unit"] == "ratio":
             return self.number(*path)
-        return self.percent(*path)
+        whole = abs(self.at(*path) * 100.0 - round(self.at(*path) * 100.0)) < ROUNDING
+        return self.percent(*path, places=0 if whole else 1)
 
     def _plain_at(self, *path: Step) -> Any:
         found: Any = self._plain

@@ -82,11 +82,8 @@ def _pair(tell: Teller, path: tuple[Step, ...]) -> Iterator[str]:
         )
     else:
         yield f"Cannot tell from {_years(tell)} whether {first} or {second} is better: {_unsure(tell, path)}."
-    others = [(name, tell.at(*path, key, "verdict")) for key, name in OTHER_MEASURES]
-    if tell.at(*path, "trades"):
-        others.append(("result a position", tell.at(*path, "trades", "verdict")))
     if not _same(tell, growth):
-        yield f"{_by_measure(first, others)}."
+        yield _by_measure(tell, path)
 
 
 def _unsure(tell: Teller, path: tuple[Step, ...]) -> str:
@@ -102,16 +99,17 @@ def _unsure(tell: Teller, path: tuple[Step, ...]) -> str:
     )
 
 
-def _by_measure(first: str, others: list[tuple[str, str]]) -> str:
+def _by_measure(tell: Teller, path: tuple[Step, ...]) -> str:
     """By which other measures the first is better, worse, or cannot be told."""
+    others = [(name, tell.at(*path, key, "verdict")) for key, name in OTHER_MEASURES]
+    if tell.at(*path, "trades"):
+        others.append(("result a position", tell.at(*path, "trades", "verdict")))
     groups = [(word, [name for name, told in others if told == word]) for word in (BETTER, WORSE)]
     parts = [f"{word} by {listed_names(names)}" for word, names in groups if names]
     unsure = [name for name, told in others if told == CANNOT_TELL]
-    told = f"{first} is {' and '.join(parts)}" if parts else ""
-    if not unsure:
-        return told
-    rest = f"{listed_names(unsure)} cannot tell them apart"
-    return f"{told}; {rest}" if told else rest[0].upper() + rest[1:]
+    told = f"{tell.at(*path, 'first')} is {' and '.join(parts)}" if parts else ""
+    rest = f"{listed_names(unsure)} cannot tell them apart" if unsure else ""
+    return f"{'; '.join(part for part in (told, rest) if part)}."
 
 
 def _yardstick(tell: Teller, path: tuple[Step, ...], first: bool) -> Iterator[str]:
@@ -130,6 +128,8 @@ def _yardstick(tell: Teller, path: tuple[Step, ...], first: bool) -> Iterator[st
         yield f"Against {other} it cannot be told: {name} did the same, or the record is too short."
     else:
         yield f"Against {other} it cannot be told whether {name} is better: {gap}{_needed(tell, growth)}."
+    if tell.known(*growth, "low") and not _same(tell, growth):
+        yield _by_measure(tell, path)
 
 
 def _premium(tell: Teller, path: tuple[Step, ...]) -> Iterator[str]:
@@ -145,8 +145,8 @@ def _premium(tell: Teller, path: tuple[Step, ...]) -> Iterator[str]:
         return
     yield (
         f"That rests on the premium: at {tell.flip(*flip)} of implied over realized volatility "
-        f"({_flip_interval(tell, flip)}) {names} would be equal, above it {tell.at(*flip, 'ahead_above')} is "
-        f"ahead, and {tell.flip(*flip, end='assumed')} is assumed{_at_other_skews(tell, path)}."
+        f"({_flip_interval(tell, flip)}{_at_other_skews(tell, path)}) {names} would be equal, above it "
+        f"{tell.at(*flip, 'ahead_above')} is ahead; {tell.flip(*flip, end='assumed')} is assumed."
     )
 
 
@@ -159,7 +159,7 @@ def _at_other_skews(tell: Teller, path: tuple[Step, ...]) -> str:
         for n, row in enumerate(rows)
         if row["skew"]["value"] != base and row["value"]["value"] is not None
     ]
-    return f" ({', '.join(told)})" if told else ""
+    return f"; {' and '.join(told)}" if told else ""
 
 
 def _spread(tell: Teller, path: tuple[Step, ...]) -> Iterator[str]:
@@ -210,8 +210,13 @@ def _tries(tell: Teller) -> Iterator[str]:
     told = f"Tries: {tell.number(*count, 'in_study', places=0)} {_variants(here)} in this study"
     if everywhere > here:
         told += f", {tell.number(*count, 'in_all', places=0)} on these prices in all"
-    if tell.at("tries", "best_of_many") and everywhere > 1:
-        best = ("tries", "best_of_many")
+    best = ("tries", "best_of_many")
+    if tell.at(*best) and here == 1:
+        told += (
+            f"; its Sharpe ratio is {tell.number(*best, 'sharpe')}, and the chance that the true one is "
+            f"above nothing is {tell.percent(*best, 'chance_above_nothing', places=0)}, tries not counted"
+        )
+    elif tell.at(*best):
         chance = tell.percent(*best, "chance_above_luck", places=0)
         told += (
             f"; the best Sharpe ratio is {tell.number(*best, 'sharpe')} ({tell.at(*best, 'best')}), luck "
@@ -235,8 +240,9 @@ def _many(tell: Teller) -> Iterator[str]:
         else:
             yield f"Nothing here grew faster than {other}."
     members = tell.at("tries", "cannot_be_told_from_best", "members")
-    if tell.at("tries", "count", "in_study") > 2 and len(members) > 1:
-        yield f"{_named(members)} cannot be told from the best."
+    if tell.at("tries", "count", "in_study") > 2:
+        alone = f"With every pair counted {_named(members)} alone stands out as the best."
+        yield alone if len(members) == 1 else f"{_named(members)} cannot be told from the best."
 
 
 def _bottom_line(tell: Teller, pair: tuple[Step, ...], beside: tuple[Step, ...]) -> Iterator[str]:
@@ -254,6 +260,8 @@ def _bottom_line(tell: Teller, pair: tuple[Step, ...], beside: tuple[Step, ...])
         line = f"So this record does not say which of {first} and {second} to trade"
     else:
         line = f"So, if one of the two is traded, this record speaks for {first}"
+        if second in tell.at("tries", "cannot_be_told_from_best", "members"):
+            line += ", though no longer once every pair is counted"
     ends = {
         BETTER: f", and for {first} over {other}",
         WORSE: f"; it speaks for {other} over either" if _either(tell, pair) else f"; {other} did better",

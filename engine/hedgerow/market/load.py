@@ -28,15 +28,29 @@ PRICES = ("open", "high", "low", "close")
 
 
 def load_market(place: str | Path | pd.DataFrame, *, symbol: str = "", **words: Any) -> Market:
-    """Return the market of a CSV or Parquet file, a folder, or a frame, checked.
+    """Return the market of a CSV or Parquet file, a folder, a frame, or a `sample:` by name, checked.
 
     `symbol` names the symbol of a table that has no such column. `dividends`, `splits`, `reports` and `rates`
     may be frames; every other keyword is a word of dataset.yaml (`adjustment="splits"`) and goes before the
-    file's. Raises DataError with every fault of the input.
+    file's; a sample has words of its own. Raises DataError with every fault of the input.
     """
+    if isinstance(place, str | Path) and str(place).startswith("sample:"):
+        return _sample(str(place), symbol, words)
     frames = {name: words.pop(name) for name in EXTRAS if isinstance(words.get(name), pd.DataFrame)}
     tables = gather(place, frames, words)
     return _built(_read(for_symbol(tables, symbol) if symbol else tables))
+
+
+def _sample(place: str, symbol: str, words: dict[str, Any]) -> Market:
+    """Return a sample of real prices; raises DataError for an unknown one and for words beside it."""
+    from hedgerow.market.samples import named_sample  # it is made with load_market itself
+
+    if symbol or words:
+        found = "a sample of real prices has words of its own, and others were given"
+        raise DataError.one(place, "words", found, "", "leave them out")
+    market = named_sample(place)
+    assert market is not None
+    return market
 
 
 @dataclass

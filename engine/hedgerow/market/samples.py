@@ -14,15 +14,20 @@ from __future__ import annotations
 
 import gzip
 import importlib.util
+from collections.abc import Callable
 from pathlib import Path
+from typing import Any
 
 import numpy as np
 import pandas as pd
 
-from hedgerow.errors import DataError
+from hedgerow.errors import DataError, Fault, nearest_word
 from hedgerow.market.load import load_market
 from hedgerow.market.sources import parse_csv
 from hedgerow.market.table import Market
+
+PREFIX = "sample:"
+"""What a place of prices begins with that is one of SAMPLES."""
 
 STOCKS = ("bokeh_sampledata", "_data/stocks.csv.gz")
 INDEX = ("arch", "data/sp500/sp500.csv.gz")
@@ -65,12 +70,13 @@ def stocks_frame() -> pd.DataFrame:
     return _frame(*STOCKS)
 
 
-def stocks() -> Market:
-    """Return the five stocks with splits and dividends recovered from the adjusted close.
+def stocks(bills: bool = False) -> Market:
+    """Return the five stocks with splits and dividends recovered from the adjusted close; `bills` adds rates.
 
-    Raises DataError when the package is not installed.
+    Raises DataError when a package is not installed.
     """
-    return load_market(stocks_frame(), adjustment="none", recover={}, source=STOCKS_SOURCE)
+    rates: dict[str, Any] = {"rates": bill_rates()} if bills else {}
+    return load_market(stocks_frame(), adjustment="none", recover={}, source=STOCKS_SOURCE, **rates)
 
 
 def index_frame() -> pd.DataFrame:
@@ -101,3 +107,29 @@ def bill_rates() -> pd.DataFrame:
     month = pd.to_datetime(raw["Date"].str.strip() + "01", format="%Y%m%d")
     monthly = raw["RF"].astype("float64").to_numpy() / 100.0
     return pd.DataFrame({"date": month, "rate": 12.0 * np.log1p(monthly)})
+
+
+SAMPLES: dict[str, Callable[[], Market]] = {"five-stocks": lambda: stocks(bills=True), "sp500": index}
+"""The samples by the name that stands after `sample:`, each with the bill rate."""
+
+
+def sample_fault(place: str | Path) -> Fault | None:
+    """Return what is wrong with a place that begins with `sample:`; None for samples and other places."""
+    name = str(place).removeprefix(PREFIX)
+    if not str(place).startswith(PREFIX) or name in SAMPLES:
+        return None
+    known = [f"{PREFIX}{word}" for word in SAMPLES]
+    allowed = "allowed: " + ", ".join(f"`{word}`" for word in known)
+    found = f"is `{place}`, which is no sample"
+    return Fault("market", 0, 0, "unknown-sample", found, allowed, nearest_word(str(place), known))
+
+
+def named_sample(place: str | Path) -> Market | None:
+    """Return the market of a place that names a sample, None for any other place.
+
+    Raises DataError for a name that is none of SAMPLES, and when a package is not installed.
+    """
+    fault = sample_fault(place)
+    if fault is not None:
+        raise DataError([fault])
+    return SAMPLES[str(place).removeprefix(PREFIX)]() if str(place).startswith(PREFIX) else None

@@ -16,6 +16,7 @@ from hedgerow.evidence.findings import Evidence
 from hedgerow.extend.costs import CostModel
 from hedgerow.kernels.layout import Costs
 from hedgerow.market import Market, load_market
+from hedgerow.market.samples import PREFIX
 from hedgerow.rules.schema import Strategy
 from hedgerow.study.declare import Study
 from hedgerow.study.evidence_of import evidence_of
@@ -77,7 +78,7 @@ class StudyResult:
 
     def _study_plain(self) -> dict[str, Any]:
         """The words of the study, its paths in full."""
-        plain = self.study.plain() | {"market": str(Path(self.study.market).resolve())}
+        plain = self.study.plain() | {"market": _whole_place(self.study.market)}
         for item in plain.get("extensions", []):
             item["file"] = str(Path(item["file"]).resolve()) if item["file"].endswith(".py") else item["file"]
         return plain
@@ -99,6 +100,11 @@ class StudyResult:
             "extensions": {one.source: list(one.names) for one in self.study.extensions},
             "versions": versions(),
         }
+
+
+def _whole_place(market: Path) -> str:
+    """The place of the prices in full; a sample has its name."""
+    return str(market) if str(market).startswith(PREFIX) else str(market.resolve())
 
 
 def versions() -> dict[str, str]:

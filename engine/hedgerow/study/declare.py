@@ -14,6 +14,7 @@ from hedgerow.errors import Fault, StudyError
 from hedgerow.extend.costs import CostModel
 from hedgerow.extend.load import Extension
 from hedgerow.kernels.layout import Costs
+from hedgerow.market.samples import PREFIX, sample_fault
 from hedgerow.market.sessions import Regime
 from hedgerow.rules.base import loosened
 from hedgerow.rules.document import Tree, tree_of_file, tree_of_mapping
@@ -179,7 +180,7 @@ def _study(
 ) -> Study:
     return Study(
         name=words.name,
-        market=Path(os.path.normpath(folder / words.market)),
+        market=market_place(words.market, folder),
         variants=tuple(variants),
         question=words.question or "",
         symbols=words.chosen,
@@ -199,8 +200,18 @@ def _study(
     )
 
 
+def market_place(text: str, folder: Path) -> Path:
+    """The place of a market's prices as a study names it: a sample, or a path relative to the study."""
+    return Path(text) if text.startswith(PREFIX) else Path(os.path.normpath(folder / text))
+
+
 def _market_faults(plain: Mapping[str, Any], folder: Path) -> list[Loose]:
     market = plain.get("market")
+    if isinstance(market, str) and market.startswith(PREFIX):
+        fault = sample_fault(market)
+        if fault is None:
+            return []
+        return [Loose(("market",), fault.code, fault.found, fault.allowed, fault.remedy)]
     if not isinstance(market, str) or not market or (folder / market).exists():
         return []
     remedy = f"looked for {folder / market}"
