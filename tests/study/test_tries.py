@@ -76,6 +76,15 @@ def test_each_variant_is_recorded_once(tmp_path: Path) -> None:
     assert tried_before(tmp_path, other) == frozenset()
 
 
+def test_every_variant_of_a_grid_counts(tmp_path: Path) -> None:
+    """Two values of one parameter: two keys, one of which is that of the strategy run by itself."""
+    whole = study(grid={"legs.call.expiry.days": [7, 14]})
+    assert len(set(keys_of(whole).values())) == 2
+    assert key() in keys_of(whole).values()
+    record_tries(tmp_path, whole, MARKET)
+    assert key() in tried_before(tmp_path, MARKET)
+
+
 def test_broken_lines_are_passed_over(tmp_path: Path) -> None:
     """A line cut short, a list, bytes that are no text: the rest still counts, and lines can be added."""
     record_tries(tmp_path, study(), MARKET)

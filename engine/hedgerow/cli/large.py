@@ -37,6 +37,7 @@ def run_large_study(study: Study, how: How, usual: Iterator[Path]) -> None:
 
     `usual` are the places to take, in order, when none is given.
     """
+    from hedgerow.cli.remember import RUNS, remember
     from hedgerow.report.files import check_place
     from hedgerow.report.large_files import refuse_foreign, write_large
     from hedgerow.study.large import finish, stage
@@ -52,7 +53,7 @@ def run_large_study(study: Study, how: How, usual: Iterator[Path]) -> None:
     with told_in_place(study.path):
         result = finish(ready, shards, len(before | set(keys.values())))
     write_large(place, result, how.replace)
-    _remember(ready, keys)
+    remember(RUNS, study, ready.job.market, keys)
     if how.as_json:
         _tell_json(result, place)
     elif how.quiet:
@@ -74,19 +75,10 @@ def _place(usual: Iterator[Path], key: str) -> Path:
 
 def _tries(ready: Stage) -> tuple[dict[str, str], frozenset[str]]:
     """The keys of the study's variants, and of all that were tried before on the same prices."""
-    from hedgerow.cli.run import RUNS
+    from hedgerow.cli.remember import RUNS
     from hedgerow.study.tries import keys_of, tried_before
 
     return keys_of(ready.study), tried_before(RUNS, ready.job.market)
-
-
-def _remember(ready: Stage, keys: dict[str, str]) -> None:
-    """Write the variants down among those tried on these prices, or say that it cannot be done."""
-    from hedgerow.cli.run import RUNS
-    from hedgerow.study.tries import RECORD, record_tries
-
-    if not record_tries(RUNS, ready.study, ready.job.market, keys):
-        typer.echo(f"The variants could not be added to {RUNS / RECORD}; later runs count too few.", err=True)
 
 
 def _walked(ready: Stage, place: Path, how: How) -> Shards:

@@ -11,14 +11,13 @@ from typing import TYPE_CHECKING, Annotated, Any
 
 import typer
 
+from hedgerow.cli.remember import RUNS, remember
+
 if TYPE_CHECKING:
     from hedgerow.study.compare import StudyResult
     from hedgerow.study.declare import Study
 
 __all__ = ["run"]
-
-RUNS = Path("runs")
-"""Where runs go when no folder is named, and where the tries on the same prices are counted."""
 
 File = Annotated[
     Path,
@@ -88,7 +87,7 @@ def run(
     ledgers = [one.ledger for one in result.results]
     summaries = [one.summary for one in result.results]
     write_run(place, ledgers, summaries, result.record(), replace=replace, evidence=result.evidence)
-    _remember(result)
+    remember(RUNS, result.study, result.market)
     _hint(summaries)
     if as_json:
         told: dict[str, Any] = {"variants": {one.variant: one.as_dict() for one in summaries}}
@@ -179,14 +178,6 @@ def _walked(study: Study, workers: int) -> StudyResult:
     before = tried_before(RUNS, bench.market)
     with progress("Replaying", whole) as counter:
         return run_study(study, market=bench.market, workers=workers, progress=counter.advance, tried=before)
-
-
-def _remember(result: StudyResult) -> None:
-    """Write the variants down among those tried on these prices, or say that it cannot be done."""
-    from hedgerow.study.tries import RECORD, record_tries
-
-    if not record_tries(RUNS, result.study, result.market):
-        typer.echo(f"The variants could not be added to {RUNS / RECORD}; later runs count too few.", err=True)
 
 
 def _cautions(result: StudyResult) -> tuple[str, ...]:

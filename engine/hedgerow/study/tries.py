@@ -24,22 +24,21 @@ __all__ = ["RECORD", "keys_of", "record_tries", "tried_before"]
 RECORD = "tries.jsonl"
 """Name of the record; it lies in the folder of the runs."""
 
-_ABOUT_PEOPLE = ("name", "about", "question", "variants", "market", "evidence", "seed", "yardstick")
-"""What a study says that changes no result of a variant; the market is known by its fingerprint."""
-_CHOOSING = ("strategy", "grid", "sample", "walk_forward")
-"""What a large study says of how its variants are made and chosen; each is counted by its own strategy."""
+_CHANGES_RESULTS = ("symbols", "window", "account", "pricing", "extensions", "costs", "held_out")
+"""What a study says, its rules aside, that can change a result; the market is known by its fingerprint."""
+_FOR_PEOPLE = ("name", "about")
+"""What a strategy says that changes nothing."""
 
 
 def keys_of(study: Study) -> dict[str, str]:
-    """Return the key of every variant of a study by name: 32 hexadecimal digits of a SHA-256."""
-    aside = (*_ABOUT_PEOPLE, *_CHOOSING)
-    shared = {word: value for word, value in study.plain().items() if word not in aside}
-    trials = trials_of(study)
+    """Return the key of every variant of a study, or of its grid, by name: 32 digits of a SHA-256."""
+    plain, trials = study.plain(), trials_of(study)
+    shared = {word: plain[word] for word in _CHANGES_RESULTS if word in plain}
     return {trials.name(number): _key(shared, trials.strategy(number)) for number in range(len(trials))}
 
 
 def _key(shared: Mapping[str, Any], strategy: Strategy) -> str:
-    rule = {word: value for word, value in strategy.plain().items() if word not in _ABOUT_PEOPLE}
+    rule = {word: value for word, value in strategy.plain().items() if word not in _FOR_PEOPLE}
     text = json.dumps([shared, rule], sort_keys=True, separators=(",", ":"), default=str)
     return hashlib.sha256(text.encode("utf-8")).hexdigest()[:32]
 
