@@ -44,6 +44,8 @@ __all__ = ["Program", "Values", "compile_strategy"]
 
 Values = Callable[[SignalValue], NDArray[np.bool_] | Floats]
 Truth = NDArray[np.bool_]
+Chosen = dict[tuple[int, int, bool], Ints]
+"""Expiries at every session of one market, by cycle, days wanted and whether it is at least as many."""
 
 MOST_SIGNALS = 62
 CYCLES = {
@@ -362,20 +364,29 @@ def _ranks(strategy: Strategy, values: Values) -> Floats:
 
 
 def compile_strategy(
-    strategy: Strategy, values: Values, ordinals: Ints, symbols: int, regime: Regime
+    strategy: Strategy,
+    values: Values,
+    ordinals: Ints,
+    symbols: int,
+    regime: Regime,
+    chosen: Chosen | None = None,
 ) -> Program:
     """Turn a strategy into the arrays of the walk.
 
     `values` gives a signal's array of shape (T, `symbols`), `ordinals` (T,) are the sessions, `regime` that
-    of listings. Raises RulesError when legs wait for each other or too many signals are used.
+    of listings; `chosen` keeps the expiries of each rule met so far. Raises RulesError when legs wait for
+    each other or too many signals are used.
     """
     bits = _Bits(values)
     plan = _plan(strategy, bits)
     expiries = np.zeros((len(strategy.legs), ordinals.size), np.int64)
     for number, leg in enumerate(strategy.legs):
         rule = root_of(leg, strategy).expiry
-        cycle, at_least = CYCLES[rule.listed], rule.choose == "at_least"
-        expiries[number] = choose_expiries(cycle, rule.days or 1, at_least, ordinals, regime)
+        known = {} if chosen is None else chosen
+        wanted = CYCLES[rule.listed], rule.days or 1, rule.choose == "at_least"
+        if wanted not in known:
+            known[wanted] = choose_expiries(*wanted, ordinals, regime)
+        expiries[number] = known[wanted]
     shape = (ordinals.size, symbols)
     return Program(
         strategy=strategy,

@@ -15,29 +15,22 @@ import numpy as np
 from numpy.typing import NDArray
 
 from hedgerow.errors import ReconcileError
-from hedgerow.events.kinds import KIND_WORDS
 from hedgerow.events.log import EventLog
 from hedgerow.evidence import odds, ratios
 from hedgerow.evidence.described import says
 from hedgerow.evidence.drawdown import drawdowns
 from hedgerow.kernels import layout as at
 from hedgerow.ledger.marks import rows_of
-from hedgerow.units import CENTS, to_cents
+from hedgerow.units import CENTS
 
 __all__ = ["FIGURES", "STILL", "Brief", "brief_of", "curve_from"]
 
 Floats = NDArray[np.float64]
-Ints = NDArray[np.int64]
 
 HALF_CENT = 0.005
 STILL = 1e-6
 """Standard deviation of session returns below which an account counts as still: cash that earns interest, and
 whose only risk is the rounding to cents. Its Sharpe ratio is huge and says nothing: it is never the best."""
-KINDS = len(KIND_WORDS)
-IS_TRADE = np.isin(
-    np.arange(KINDS),
-    (at.KIND_SHARES, at.KIND_LEG, at.KIND_EXPIRED, at.KIND_EXERCISED, at.KIND_ASSIGNED),
-)
 
 
 @dataclass(frozen=True, slots=True)
@@ -83,9 +76,12 @@ def brief_of(log: EventLog, rate: Floats) -> Brief:
 
     ReconcileError: the cash of some close is not the sum of the postings before it, or equity not its parts.
     """
-    days, kind = log.days, np.array(log.events["kind"], np.int64)
-    cents = np.rint(log.events["cash"] * CENTS)  # cash is in whole cents, which doubles sum exactly
-    _check_money(log, cents)
+    from hedgerow.kernels.totals import SUMS, add_up  # loads compiled code, so only when it is to run
+
+    days = log.days
+    posted, sums, closed = np.zeros(days.size), np.zeros(SUMS), np.zeros((log.terms.size, 3))
+    over = add_up(log.events.view(np.recarray), days.view(np.recarray), posted, sums, closed)
+    _check_money(log, posted)
     interest = rate[days["session"]]
     curve = curve_from(days["equity"], log.meta.opening_cash)
     returns = ratios.returns_of(curve)
@@ -103,18 +99,16 @@ def brief_of(log: EventLog, rate: Floats) -> Brief:
         deepest_drawdown=float(drawdowns(curve).max()),
         time_invested=float(np.mean(days["positions"] > 0)),
         capital_at_work=_at_work(log),
-        **_trades(log, kind),
-        **_money(log, kind, cents),
+        **_trades(log, closed[:over]),
+        **_money(sums),
     )
 
 
-def _check_money(log: EventLog, cents: Floats) -> None:
+def _check_money(log: EventLog, posted: Floats) -> None:
     """Raise ReconcileError at the first close whose cash is not its postings, or equity not its parts."""
     days = log.days
-    posted = np.concatenate(([0.0], np.cumsum(cents)))
-    until = np.searchsorted(np.ascontiguousarray(log.events["session"]), days["session"], side="right")
     whole = days["cash"] + days["stock"] + days["options"]
-    wrong = ~(np.abs(days["cash"] - posted[until] / CENTS) < HALF_CENT)
+    wrong = ~(np.abs(days["cash"] - posted / CENTS) < HALF_CENT)
     wrong |= ~(np.abs(days["equity"] - whole) <= HALF_CENT + 1e-9 * np.abs(whole))
     if wrong.any():
         session = int(days["session"][int(np.argmax(wrong))])
@@ -129,12 +123,11 @@ def _at_work(log: EventLog) -> float:
     return _mean((held / equity)[equity > 0] if (equity <= 0).any() else held / equity)
 
 
-def _trades(log: EventLog, kind: Ints) -> dict[str, float]:
-    """Figures of positions: a closed event carries the whole result of its position."""
+def _trades(log: EventLog, closed: Floats) -> dict[str, float]:
+    """Figures of positions: `closed` (P, 3) has number, result in cents and last session of those over."""
     terms = log.terms
-    closed = log.events[np.flatnonzero(kind == at.KIND_CLOSED)]
-    row = rows_of(terms["position"], closed["position"])
-    result = to_cents(closed["price"]) / CENTS
+    row = rows_of(terms["position"], closed[:, 0].astype(np.int32))
+    result = closed[:, 1] / CENTS
     tied = (terms["net_debit"] + terms["reserve"])[row]
     fraction = np.divide(result, tied, out=np.full(result.size, math.nan), where=tied > 0)
     win, loss = result > 0, result < 0
@@ -142,27 +135,23 @@ def _trades(log: EventLog, kind: Ints) -> dict[str, float]:
     sizes = (0.0 if math.isnan(size) else size for size in (average_win, average_loss))
     return {
         "positions": float(terms.size),
-        "positions_open": float(terms.size - closed.size),
-        "win_rate": float(win.sum()) / closed.size if closed.size else math.nan,
+        "positions_open": float(terms.size - len(closed)),
+        "win_rate": float(win.sum()) / len(closed) if len(closed) else math.nan,
         "break_even_win_rate": odds.break_even_win_rate(*sizes),
         "average_win": average_win,
         "average_loss": average_loss,
         "expectancy": _mean(fraction),
         "profit_factor": odds.profit_factor(float(result[win].sum()), -float(result[loss].sum())),
-        "average_sessions": _mean((closed["session"] - terms["session"][row]).astype(np.float64)),
+        "average_sessions": _mean(closed[:, 2] - terms["session"][row]),
     }
 
 
-def _money(log: EventLog, kind: Ints, cents: Floats) -> dict[str, float]:
-    """Dividends, interest and costs of the whole run, each from the events that post it."""
-    by_kind = np.bincount(kind, weights=cents, minlength=KINDS)
-    trade = np.flatnonzero(IS_TRADE[kind])
-    size, mid = log.events["quantity"][trade], log.events["mid"][trade]
-    lost = int(to_cents(-size * mid).sum()) - by_kind[IS_TRADE].sum()
+def _money(sums: Floats) -> dict[str, float]:
+    """Dividends, interest and costs of the whole run, from the sums of `kernels.totals`."""
     return {
-        "dividends": float(by_kind[at.KIND_DIVIDEND]) / CENTS,
-        "interest": float(by_kind[at.KIND_INTEREST] + by_kind[at.KIND_BORROW]) / CENTS,
-        "costs": float(lost) / CENTS,
+        "dividends": float(sums[at.KIND_DIVIDEND]) / CENTS,
+        "interest": float(sums[at.KIND_INTEREST] + sums[at.KIND_BORROW]) / CENTS,
+        "costs": float(sums[-1]) / CENTS,
     }
 
 

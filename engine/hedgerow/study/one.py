@@ -26,7 +26,7 @@ from hedgerow.market.table import Market
 from hedgerow.rules.base import loosened
 from hedgerow.rules.document import tree_of_mapping
 from hedgerow.rules.load import load_strategy
-from hedgerow.rules.program import Program, compile_strategy
+from hedgerow.rules.program import Chosen, Program, compile_strategy
 from hedgerow.rules.schema import SignalValue, Strategy
 from hedgerow.signals.panel import Panel
 from hedgerow.study.words import AccountWords, CostWords
@@ -110,6 +110,11 @@ class Bench:
         return make_tape(self.market, build(self.surface, self.market), self.listings)
 
     @cached_property
+    def _chosen(self) -> Chosen:
+        """Expiries by rule, as they are met."""
+        return {}
+
+    @cached_property
     def panel(self) -> Panel:
         """The market as signals see it."""
         return Panel(self.market)
@@ -146,7 +151,9 @@ class Bench:
     def program(self, strategy: Strategy) -> Program:
         """A strategy as arrays for this market, entering only what may be traded."""
         market = self.market
-        program = compile_strategy(strategy, self.values, market.ordinals, len(market.symbols), self.listings)
+        program = compile_strategy(
+            strategy, self.values, market.ordinals, len(market.symbols), self.listings, self._chosen
+        )
         return program.entering(self.traded)
 
     def run(
