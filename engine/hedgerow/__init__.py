@@ -36,6 +36,7 @@ _HOMES = {
     "load_strategy": "hedgerow.rules.load",
     "load_study": "hedgerow.study.declare",
     "run": "hedgerow.study.one",
+    "run_large": "hedgerow.study.large",
     "run_study": "hedgerow.study.compare",
 }
 

@@ -126,6 +126,12 @@ def test_what_an_editor_can_see(words: dict[str, Any]) -> None:
         {"name": "a", "market": "m", "strategy": {"name": "x", "shares": "lng"}},
         {"name": "a", "market": "m", "pricing": {"volatility": {"skwe": 0}}},
         {"name": "a", "market": "m", "pricing": {"volatility": "plain"}},
+        {"name": "a", "market": "m", "grid": {"legs.call.expiry.days": 7}},
+        {"name": "a", "market": "m", "grid": {"legs.call.expiry.days": {"from": 7, "to": 14}}},
+        {"name": "a", "market": "m", "grid": {"stop.below_entry": ["2%", "2%"]}},
+        {"name": "a", "market": "m", "sample": {"random": 5, "latin_hypercube": 5}},
+        {"name": "a", "market": "m", "walk_forward": {"choose": "4 years", "judge": "a year"}},
+        {"name": "a", "market": "m", "held_out": {"to": "2020-01-01"}},
     ],
 )
 def test_what_an_editor_can_see_of_a_study(words: dict[str, Any]) -> None:

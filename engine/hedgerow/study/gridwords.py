@@ -16,14 +16,22 @@ from hedgerow.rules.figures import Whole
 from hedgerow.rules.words import Choice, Flag, Loose, Scalar, WordsError, refuse, shown
 from hedgerow.study.grid import Axis, Grid
 
-__all__ = ["MOST_VARIANTS", "SampleWords", "Span", "WalkForwardWords", "grid_faults", "grid_of"]
+__all__ = [
+    "MOST_VARIANTS",
+    "SampleWords",
+    "Span",
+    "WalkForwardWords",
+    "grid_faults",
+    "grid_of",
+    "grid_schema",
+]
 
 MOST_VARIANTS = 200_000
 MOST_VALUES = 10_000
 MEASURES = ("sharpe", "sortino", "growth")
 SESSIONS = {"session": 1, "week": 5, "month": 21, "quarter": 63, "year": 252}
 RANGE_WORDS = ("from", "to", "step")
-_DECIMAL = re.compile(r"([+-]?(?:\d+(?:\.\d*)?|\.\d+)) ?(%?)")
+_DECIMAL = re.compile(r"^([+-]?(?:[0-9]+(?:\.[0-9]*)?|\.[0-9]+)) ?(%?)$")
 _SPAN = re.compile(r"(\d{1,5}) (session|week|month|quarter|year)s?")
 
 
@@ -76,6 +84,19 @@ class WalkForwardWords(Words):
     anchored: Annotated[bool, Flag()] = False
     by: Annotated[str, Choice(MEASURES)] = "sharpe"
     gap_sessions: Annotated[int, Span(least=0)] | None = Field(default=None, alias="gap")
+
+
+def grid_schema() -> dict[str, Any]:
+    """The JSON Schema of the word `grid`: dotted paths, each with a list of values or a range."""
+    number = {"anyOf": [{"type": "number"}, {"type": "string", "pattern": _DECIMAL.pattern}]}
+    span = {
+        "type": "object",
+        "properties": dict.fromkeys(RANGE_WORDS, number),
+        "required": list(RANGE_WORDS),
+        "additionalProperties": False,
+    }
+    values = {"anyOf": [{"type": "array", "minItems": 1, "uniqueItems": True}, span]}
+    return {"type": "object", "additionalProperties": values, "minProperties": 1}
 
 
 def grid_of(raw: Mapping[str, Any], sample: SampleWords | None) -> Grid:

@@ -7,6 +7,7 @@ from typing import Any
 from hedgerow.rules.publish import with_signals
 from hedgerow.rules.schema import Strategy
 from hedgerow.study.extending import extension_schema
+from hedgerow.study.gridwords import grid_schema
 from hedgerow.study.words import StudyWords
 from hedgerow.volatility.model import PRESETS, RANGES, Range
 from hedgerow.volatility.registry import ESTIMATORS
@@ -29,6 +30,7 @@ def study_schema() -> dict[str, Any]:
     symbols = {"type": "array", "items": {"type": "string"}, "minItems": 1, "uniqueItems": True}
     properties["symbols"] = {"anyOf": [{"const": "all"}, symbols]}
     properties["extensions"] = extension_schema()
+    properties["grid"] = grid_schema()
     definitions["PricingWords"]["properties"]["volatility"] = _volatility()
     return with_signals(schema, "Study file")
 
