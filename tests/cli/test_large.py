@@ -79,7 +79,9 @@ def test_the_record_repeats_it_byte_for_byte(run: Runner) -> None:
     assert run("run", "one/run.yaml", "--out", "two", "--quiet", "--workers", "1").code == 0
     one, two = bytes_of("one"), bytes_of("two")
     assert len(one) > 15
-    assert {name for name in one if one[name] != two[name]} <= {"run.yaml"}  # which writes 10 as 10.0
+    assert {name for name in one if one[name] != two[name]} <= {
+        "run.yaml"
+    }  # the prices' path as it was given
 
 
 def test_tries_are_counted_across_studies(run: Runner) -> None:

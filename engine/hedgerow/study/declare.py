@@ -125,8 +125,15 @@ def _surface_plain(surface: SurfaceModel) -> dict[str, Any]:
         words[name] = percent_text(value) if limits.percent else value
     if surface.history == 0:
         del words["history"]
-    blend = [{term.estimator: term.parameter, "weight": term.weight} for term in surface.terms]
+    blend = [
+        {term.estimator: _whole(term.parameter), "weight": _whole(term.weight)} for term in surface.terms
+    ]
     return words | {"blend": blend, "observed": surface.observed}
+
+
+def _whole(number: float) -> float:
+    """A number that reads back as it was written: 10, not 10.0."""
+    return int(number) if float(number).is_integer() else number
 
 
 def load_study(source: str | Path | Mapping[str, Any], base: str | Path | None = None) -> Study:
