@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 import math
+from dataclasses import replace
 
 import numpy as np
 import pytest
@@ -15,7 +16,12 @@ from hedgerow.evidence.forward import Outlook, Work, forward_view, one_year_path
 from hedgerow.evidence.seeds import Resampling
 from hedgerow.ledger import Ledger
 from hedgerow.ledger.positions import capital_tied_up
+from hedgerow.rules.load import load_strategy
+from hedgerow.study.one import Bench
+from hedgerow.walk.account import DEFAULT_COSTS, Account
+from hedgerow.walk.run import Window
 from random_logs import random_log_builder
+from walks import RULES, SURFACE, lively_market
 
 QUICK = Resampling(seed=2, replications=400)
 
@@ -24,6 +30,20 @@ def noise(days: int = 1500, mean: float = 0.001, deviation: float = 0.01, held: 
     """Work of independent normal days, `held` positions at a time."""
     results = np.random.default_rng(1).normal(mean, deviation, days) * held
     return Work("noise", results, np.full(days, held))
+
+
+def most_held(ledger: Ledger) -> list[int]:
+    """The most positions open at one time a session, counted event by event."""
+    events, book = ledger.log.events, ledger.postings
+    opening, closing = set(book.opened.tolist()), set(book.closed.tolist())
+    now, most = 0, []
+    for session in ledger.log.days["session"]:
+        top = now
+        for row in np.flatnonzero(events["session"] == session).tolist():
+            now += (row in opening) - (row in closing)
+            top = max(top, now)
+        most.append(top)
+    return most
 
 
 @settings(max_examples=15)
@@ -36,11 +56,7 @@ def test_days_of_work_add_up_to_the_trades(seed: int) -> None:
     ledger = Ledger(random_log_builder(seed, sessions=30).log())
     work = Work.of(ledger)
     assert work.results.sum() == pytest.approx(ledger.trades["return_on_debit"].sum(), abs=1e-4)
-    held = [
-        int(((ledger.trades["opened"] <= day) & ~(ledger.trades["closed"] < day)).sum())
-        for day in ledger.equity["date"]
-    ]
-    assert work.held.tolist() == held
+    assert work.held.tolist() == most_held(ledger)
 
 
 def test_a_day_of_work_by_marks() -> None:
@@ -153,3 +169,25 @@ def test_same_answer_every_time() -> None:
     plain = views[0].as_dict()
     assert json.loads(json.dumps(plain, allow_nan=False)) == plain
     assert [view.share for view in views] == list(Outlook().shares)
+
+
+@pytest.mark.parametrize("fill", ["open", "close"])
+def test_the_middle_year_is_near_what_was_achieved(fill: str) -> None:
+    """Compares years drawn from a weekly collar's own days with its growth; one position follows the other.
+
+    All money is at work and in lots that hardly round, so the account of the walk and that of the drawn years
+    hold the same. Both positions of a changeover counted as two would halve such days.
+    """
+    market = replace(lively_market(seed=3, sessions=520), rate=np.zeros(520))
+    rule = {"name": "weekly", **RULES["collar"], "accept": {"net_debit": {"at_most": "90%"}}, "fill": fill}
+    account = Account(cash=1e9, per_position=1.0 / 4.0, interest=False)
+    bench = Bench(market, SURFACE)
+    result = bench.run(load_strategy(rule), account, DEFAULT_COSTS, Window(0, 520))
+    work = Work.of(result.ledger)
+    equity = result.equity["equity"].to_numpy()
+    first = int(np.flatnonzero(work.held)[0])
+    achieved = 252.0 * math.log(equity[-1] / equity[first - 1]) / (equity.size - first)
+    days = Work(work.name, work.results[first:], work.held[first:])
+    view = forward_view(days, Outlook((0.25,)), Resampling(seed=2, replications=1500))[0]
+    assert math.log1p(view.median) == pytest.approx(achieved, abs=0.02)
+    assert work.held.max() == 4

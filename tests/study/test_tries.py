@@ -44,6 +44,13 @@ def test_what_changes_no_result_makes_no_new_variant(words: dict[str, Any]) -> N
     assert key(**words) == key()
 
 
+def test_a_number_is_the_same_with_and_without_a_point() -> None:
+    """A run written out says 10.0 where a person wrote 10; repeating it is no new try."""
+    whole, point = ({"volatility": {"blend": [{"close": sessions}]}} for sessions in (10, 10.0))
+    assert key(pricing=whole) == key(pricing=point)
+    assert key(pricing=whole) != key(pricing={"volatility": {"blend": [{"close": 11}]}})
+
+
 @pytest.mark.parametrize(
     "words",
     [

@@ -33,7 +33,8 @@ class Work:
     """What positions did day by day, each counted as one whole.
 
     results (T,): sum over the positions held of the day's result on what each tied up, fractions. held (T,):
-    positions held at some time of the session.
+    the most positions held at one time from the close before to the session's own. Where one position ends and
+    the next begins at the same price, that is one and not two: what is tied up in them is the same money.
     """
 
     name: str
@@ -64,12 +65,21 @@ class Work:
         cash = np.bincount(cash_day, log.events["cash"][mine] * share[rows], sessions.size)
         worth = np.bincount(mark_day, value, sessions.size)
         results = np.asarray(cash + np.diff(worth, prepend=0.0), dtype=np.float64)
-        first = np.searchsorted(sessions, log.events["session"][postings.opened])
-        over = postings.closed >= 0
-        last = np.searchsorted(sessions, log.events["session"][postings.closed[over]])
-        came = np.bincount(first, minlength=sessions.size + 1)
-        went = np.bincount(last + 1, minlength=sessions.size + 1)
-        return cls(log.meta.variant, results, np.cumsum(came - went)[: sessions.size])
+        return cls(log.meta.variant, results, _most_at_once(ledger))
+
+
+def _most_at_once(ledger: Ledger) -> Ints:
+    """Return the most positions held at one time from the last close to this, a session (T,), in log order."""
+    events, sessions = ledger.log.events, ledger.log.days["session"]
+    opened, closed = ledger.postings.opened, ledger.postings.closed
+    change = np.zeros(events.size + 1, np.int64)
+    np.add.at(change, opened + 1, 1)
+    np.add.at(change, closed[closed >= 0] + 1, -1)
+    level = np.cumsum(change)  # before each event, and after the last
+    starts = np.searchsorted(events["session"], sessions)
+    most = np.maximum.reduceat(level, np.minimum(starts, level.size - 1))
+    after = level[np.append(starts[1:], events.size)]  # at the session's own close
+    return np.asarray(np.maximum(most, after), dtype=np.int64)
 
 
 @dataclass(frozen=True, slots=True)

@@ -39,8 +39,18 @@ def keys_of(study: Study) -> dict[str, str]:
 
 def _key(shared: Mapping[str, Any], strategy: Strategy) -> str:
     rule = {word: value for word, value in strategy.plain().items() if word not in _FOR_PEOPLE}
-    text = json.dumps([shared, rule], sort_keys=True, separators=(",", ":"), default=str)
+    words = _without_kinds([shared, rule])
+    text = json.dumps(words, sort_keys=True, separators=(",", ":"), default=str)
     return hashlib.sha256(text.encode("utf-8")).hexdigest()[:32]
+
+
+def _without_kinds(value: Any) -> Any:
+    """Return words in which 10 and 10.0 are the same number, as they are to whoever wrote them."""
+    if isinstance(value, Mapping):
+        return {str(word): _without_kinds(under) for word, under in value.items()}
+    if isinstance(value, list | tuple):
+        return [_without_kinds(item) for item in value]
+    return float(value) if isinstance(value, int) and not isinstance(value, bool) else value
 
 
 def tried_before(folder: str | Path, market: Market) -> frozenset[str]:
