@@ -33,8 +33,8 @@ class Work:
     """What positions did day by day, each counted as one whole.
 
     results (T,): sum over the positions held of the day's result on what each tied up, fractions. held (T,):
-    the most positions held at one time from the close before to the session's own. Where one position ends and
-    the next begins at the same price, that is one and not two: what is tied up in them is the same money.
+    the most positions held at one time from the close before to the session's own. Where one position ends
+    and the next begins at the same price, that is one and not two: the same money is tied up in them.
     """
 
     name: str
@@ -69,7 +69,7 @@ class Work:
 
 
 def _most_at_once(ledger: Ledger) -> Ints:
-    """Return the most positions held at one time from the last close to this, a session (T,), in log order."""
+    """Return the most positions held at one time from the last close to this, in log order, a session (T,)."""
     events, sessions = ledger.log.events, ledger.log.days["session"]
     opened, closed = ledger.postings.opened, ledger.postings.closed
     change = np.zeros(events.size + 1, np.int64)
