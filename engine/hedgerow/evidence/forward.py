@@ -69,7 +69,7 @@ class Work:
 
 
 def _most_at_once(ledger: Ledger) -> Ints:
-    """Return the most positions held at one time from the last close to this, in log order, a session (T,)."""
+    """Return the most positions held at one time from the last close to this, by the log, a session (T,)."""
     events, sessions = ledger.log.events, ledger.log.days["session"]
     opened, closed = ledger.postings.opened, ledger.postings.closed
     change = np.zeros(events.size + 1, np.int64)
