@@ -19,12 +19,14 @@ _HOMES = {
     "Account": "hedgerow.walk.account",
     "Costs": "hedgerow.kernels.layout",
     "DataError": "hedgerow.errors",
+    "DeskError": "hedgerow.errors",
     "ExtensionError": "hedgerow.errors",
     "HedgerowError": "hedgerow.errors",
     "InputError": "hedgerow.errors",
     "Market": "hedgerow.market",
     "Result": "hedgerow.study.one",
     "RulesError": "hedgerow.errors",
+    "Sheet": "hedgerow.desk.sheet",
     "Strategy": "hedgerow.rules.schema",
     "Study": "hedgerow.study.declare",
     "StudyError": "hedgerow.errors",
@@ -38,6 +40,7 @@ _HOMES = {
     "run": "hedgerow.study.one",
     "run_large": "hedgerow.study.large",
     "run_study": "hedgerow.study.compare",
+    "today": "hedgerow.desk.today",
 }
 
 __all__ = ["__version__", *_HOMES]

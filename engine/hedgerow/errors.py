@@ -6,6 +6,7 @@
         RulesError           a strategy file
         StudyError           a study file, its account, pricing or costs
         ExtensionError       a file of signals, estimators or costs of the user's own
+        DeskError            a user's own positions, trades or quotes
         PlaceError           a folder or file that cannot be read or written
       RunError               the run itself failed (exit code 1)
         ReconcileError       money or quantities of a log do not add up
@@ -23,6 +24,7 @@ from typing import Self
 
 __all__ = [
     "DataError",
+    "DeskError",
     "ExtensionError",
     "Fault",
     "HedgerowError",
@@ -106,6 +108,10 @@ class StudyError(InputError):
 
 class ExtensionError(InputError):
     """A user's own signal, estimator or model of costs is wrong."""
+
+
+class DeskError(InputError):
+    """A user's own positions, trades or quotes are wrong."""
 
 
 class PlaceError(InputError):

@@ -12,8 +12,8 @@ import pytest
 
 ROOT = Path(__file__).parents[2]
 RUN = "import sys, importlinter.cli as c; sys.exit(c.lint_imports(no_cache=True, no_logo=True))"
-ROOMS = ("cli", "report", "study", "evidence", "ledger", "walk", "rules", "options", "volatility", "signals")
-ROOMS += ("market", "events", "kernels", "errors")
+ROOMS = ("cli", "desk", "report", "study", "evidence", "ledger", "walk", "rules", "options")
+ROOMS += ("volatility", "signals", "market", "events", "kernels", "errors")
 
 
 def lint(root: Path, package_root: Path) -> subprocess.CompletedProcess[str]:
@@ -56,6 +56,8 @@ def house(tmp_path: Path) -> Path:
     [
         ("walk/__init__.py", "import hedgerow.rules", True),
         ("kernels/jit.py", "def f():\n    import numba", True),
+        ("desk/__init__.py", "import hedgerow.report", True),
+        ("report/__init__.py", "import hedgerow.desk", False),
         ("market/__init__.py", "import hedgerow.walk", False),
         ("signals/__init__.py", "import hedgerow.volatility", False),
         ("ledger/__init__.py", "import hedgerow.market", False),

@@ -13,6 +13,7 @@ from hedgerow import __version__
 from hedgerow.cli import data, extensions, rules
 from hedgerow.cli.look import look
 from hedgerow.cli.run import run
+from hedgerow.cli.today import today
 from hedgerow.errors import HedgerowError
 
 __all__ = ["STOPPED", "app", "main"]
@@ -27,6 +28,7 @@ app = typer.Typer(
 )
 app.command()(run)
 app.command()(look)
+app.command()(today)
 app.add_typer(data.app, name="data")
 app.add_typer(rules.app, name="rules")
 app.add_typer(extensions.app, name="extensions")

@@ -17,7 +17,7 @@ if TYPE_CHECKING:
     from hedgerow.study.compare import StudyResult
     from hedgerow.study.declare import Study
 
-__all__ = ["run"]
+__all__ = ["run", "study_of"]
 
 File = Annotated[
     Path,
@@ -74,7 +74,7 @@ def run(
     """Replay a study and compare its variants; leave a folder of ledgers."""
     from hedgerow.report.files import check_place, write_run
 
-    study = _study(file, market, extension or [])
+    study = study_of(file, market, extension or [])
     if study.is_large:
         from hedgerow.cli.large import How, run_large_study
 
@@ -101,7 +101,7 @@ def run(
         _show(result, place)
 
 
-def _study(file: Path, market: Path | None, extensions: list[str]) -> Study:
+def study_of(file: Path, market: Path | None, extensions: list[str]) -> Study:
     """The study of a file; a strategy file needs the market beside it. Raises InputError."""
     from hedgerow.cli.rules import is_study
     from hedgerow.errors import StudyError

@@ -1,0 +1,128 @@
+"""A sheet in a terminal, never wider than 100 columns; piped it is plain text."""
+
+from __future__ import annotations
+
+import io
+from collections.abc import Iterator, Sequence
+
+from rich.console import Console, RenderableType
+from rich.padding import Padding
+from rich.table import Table
+from rich.text import Text
+
+from hedgerow.desk import phrases as say
+from hedgerow.desk.sheet import OPEN, Look, Plan, Sheet
+from hedgerow.units import number_text
+
+__all__ = ["print_sheet", "text_of"]
+
+WIDTH = 100
+HEADING, QUIET = "bold", "dim"
+MOST_LOOKS = 40
+"""Symbols of one kind that are listed; the others are in the files."""
+
+
+def print_sheet(sheet: Sheet, console: Console | None = None) -> None:
+    """Print a sheet to a console, the standard output when none is given; plain text when piped."""
+    out = console or Console()
+    if not out.is_terminal:
+        out.file.write(text_of(sheet))
+        return
+    for part in _parts(sheet):
+        out.print(part, width=min(out.width, WIDTH))
+
+
+def text_of(sheet: Sheet, width: int = WIDTH) -> str:
+    """Return a sheet as plain text of at most so many columns."""
+    page = io.StringIO()
+    console = Console(file=page, width=width, color_system=None, force_terminal=False)
+    for part in _parts(sheet):
+        console.print(part)
+    return "\n".join(line.rstrip() for line in page.getvalue().splitlines()) + "\n"
+
+
+def _parts(sheet: Sheet) -> Iterator[RenderableType]:
+    name = sheet.name + (f", {sheet.variant}" if sheet.variant else "")
+    yield Text(f"{name}: the close of {say.long_day(sheet.as_of)}", style=HEADING)
+    for line in say.head_lines(sheet):
+        yield Text(line, style=QUIET)
+    yield Text()
+    yield from _held(sheet)
+    yield Text(say.opening_title(sheet), style=HEADING)
+    if sheet.of(OPEN):
+        yield _inner(Text(say.QUOTES_DECIDE, style=QUIET))
+    yield Text()
+    for look in sheet.of(OPEN):
+        yield from _opening(look, sheet.currency)
+    for title, looks in say.sections(sheet):
+        yield Text(title, style=HEADING)
+        yield _inner(_list(looks[:MOST_LOOKS]))
+        if len(looks) > MOST_LOOKS:
+            yield _inner(Text(f"and {len(looks) - MOST_LOOKS:,} more; --out FOLDER writes all", style=QUIET))
+        yield Text()
+    yield Text("Before you rely on this", style=HEADING)
+    for caution in sheet.cautions:
+        yield _inner(Text(caution, style=QUIET))
+
+
+def _held(sheet: Sheet) -> Iterator[RenderableType]:
+    return iter(())
+
+
+def _opening(look: Look, currency: str) -> Iterator[RenderableType]:
+    assert look.plan is not None
+    plan = look.plan
+    title = Text.assemble((look.symbol, HEADING), (f" at {number_text(look.close)}", QUIET))
+    title.append(f"   {say.plan_title(plan, currency)}")
+    yield title
+    if plan.legs:
+        yield _inner(_legs(plan))
+    yield _inner(_facts(look, plan))
+    yield Text()
+
+
+def _legs(plan: Plan) -> Table:
+    table = _table(
+        ("Order", 20), ("Expiry", 24), ("Assumed", 9), ("Model over the stress", 24), ("In the money", 12)
+    )
+    for column in table.columns[2:]:
+        column.justify = "right"
+    for leg in plan.legs:
+        table.add_row(*say.leg_cells(leg))
+    return table
+
+
+def _facts(look: Look, plan: Plan) -> Table:
+    table = Table(box=None, show_header=False, pad_edge=False, padding=(0, 2, 0, 0))
+    table.add_column(width=22, no_wrap=True, style=QUIET)
+    table.add_column(overflow="fold")
+    for name, text in say.facts(plan):
+        table.add_row(name, text)
+    table.add_row("Limit", say.limit_text(plan))
+    if look.tests:
+        table.add_row("Conditions", "\n".join(test.told() for test in look.tests))
+    if look.record is not None:
+        table.add_row("Before, in this stock", say.record_text(look.record))
+    inside = say.inside_text(plan)
+    if inside:
+        table.add_row("Inside its life", inside)
+    return table
+
+
+def _list(looks: Sequence[Look]) -> Table:
+    table = _table(("", 10), ("Close", 9), ("Why", 73), header=False)
+    table.columns[1].justify = "right"
+    for name, close, why in say.grouped(looks):
+        table.add_row(name, close, "\n".join(why))
+    return table
+
+
+def _table(*columns: tuple[str, int], header: bool = True) -> Table:
+    table = Table(box=None, pad_edge=False, padding=(0, 2, 0, 0), header_style=QUIET, show_header=header)
+    for name, width in columns:
+        table.add_column(name, width=width, overflow="fold")
+    return table
+
+
+def _inner(part: RenderableType) -> Padding:
+    return Padding(part, (0, 0, 0, 2))
