@@ -47,14 +47,12 @@ def today(
     *,
     as_of: str | None = None,
     variant: str | None = None,
-    positions: str | Path | Mapping[str, Any] | None = None,
 ) -> Sheet:
     """Return what a rule says at the close of `as_of`, an ISO date; None is the last session of the data.
 
     `source` is a study, its file or its words; with a `market` it is a strategy's file or words, or a study
-    that is then looked at on that market. Of a study with
-    several variants `variant` names one. `positions` are those held, a file or its words; None is an account
-    of the study's cash with nothing held. Raises DataError, StudyError, RulesError or DeskError.
+    that is then looked at on that market. Of a study with several variants `variant` names one. The account is
+    the study's, with nothing held. Raises DataError, StudyError or RulesError.
     """
     prices = market if isinstance(market, Market) else None
     if isinstance(source, Study):
@@ -63,7 +61,7 @@ def today(
         study = load_study(source)
     else:
         study = study_of_strategy(source, "." if prices is not None else str(market))
-    return sheet_of(study, prices, as_of=as_of, variant=variant, positions=positions)
+    return sheet_of(study, prices, as_of=as_of, variant=variant)
 
 
 def sheet_of(
@@ -72,7 +70,6 @@ def sheet_of(
     *,
     as_of: str | None = None,
     variant: str | None = None,
-    positions: str | Path | Mapping[str, Any] | None = None,
 ) -> Sheet:
     """Return the sheet of a study's variant; see `today`."""
     name, strategy = chosen(study, variant)
@@ -80,7 +77,7 @@ def sheet_of(
     bench = Bench(cut, study.surface, study.listings, study.symbols)
     costs = study.costs.costs(cut) if isinstance(study.costs, CostModel) else study.costs
     close = Close(bench, bench.program(strategy), study.account, costs)
-    return _Desk(study, name, strategy, close, positions).sheet()
+    return _Desk(study, name, strategy, close).sheet()
 
 
 def chosen(study: Study, variant: str | None) -> tuple[str, Strategy]:
@@ -134,7 +131,6 @@ class _Desk:
     variant: str
     strategy: Strategy
     close: Close
-    positions: str | Path | Mapping[str, Any] | None
 
     @property
     def market(self) -> Market:
@@ -186,12 +182,9 @@ class _Desk:
 
     def sheet(self) -> Sheet:
         """The sheet."""
-        from hedgerow.desk.held import holdings
-
-        account = holdings(self.positions, self.close, self.strategy, self.sight)
-        state = account.state if account is not None else State(self.study.account.cash, fresh(0), {})
+        state = State(self.study.account.cash, fresh(0), {})
         evening = self.close.evening(state)
-        equity = state.cash if account is None else account.equity
+        equity = state.cash
         market, ratios = self.market, self.ratios
         return Sheet(
             name=self.strategy.name,
@@ -206,8 +199,6 @@ class _Desk:
             ratios=(ratios[0], ratios[-1]),
             record=self.record(),
             looks=tuple(self._looks(evening, state, equity)),
-            held=() if account is None else account.lines(evening),
-            positions_known=account is not None,
             notes=tuple(self._notes(evening)),
             cautions=cautions(Basis(len(self.study.variants), self._assumed())),
         )
