@@ -51,8 +51,8 @@ def today(
     """Return what a rule says at the close of `as_of`, an ISO date; None is the last session of the data.
 
     `source` is a study, its file or its words; with a `market` it is a strategy's file or words, or a study
-    that is then looked at on that market. Of a study with several variants `variant` names one. The account is
-    the study's, with nothing held. Raises DataError, StudyError or RulesError.
+    that is then looked at on that market. Of a study with several variants `variant` names one. The account
+    is the study's, with nothing held. Raises DataError, StudyError or RulesError.
     """
     prices = market if isinstance(market, Market) else None
     if isinstance(source, Study):
