@@ -74,6 +74,7 @@ def _pairs(evidence: Evidence) -> Iterator[RenderableType]:
     rest = len(every) - MOST_PAIRS
     if rest > 0:
         yield _item(f"and {rest} more comparisons in summary.json")
+    yield _note("flip ratio: implied over realized volatility at which the two would have grown alike")
     yield Text()
 
 
@@ -95,6 +96,7 @@ def _timing(evidence: Evidence) -> Iterator[RenderableType]:
         cells = [percent_text(growth, 1, signed=True) for growth in growths]
         table.add_row(f"  {one.variant}", str(one.cycle_sessions), *cells)
     yield table
+    yield _note("over the days that all starts share, so not quite the growth above")
     yield Text()
 
 
@@ -122,6 +124,8 @@ def _ahead(evidence: Evidence) -> Iterator[RenderableType]:
             ),
         )
     yield table
+    share = percent_text(own.share, 1)
+    yield _note(f"blocks of the record's days, {share} of equity a position, no interest on idle cash")
     yield Text()
 
 
@@ -141,6 +145,7 @@ def _win_rates(evidence: Evidence) -> Iterator[RenderableType]:
             "none would do" if rate.needed != rate.needed else percent_text(rate.needed),
         )
     yield table
+    yield _note(f"for {target}: needed to gain so much a year, with wins and losses of the size they had")
     yield Text()
 
 
@@ -161,6 +166,10 @@ def _odds_line(one: Prospect) -> str:
     interval = f"{percent_text(odds.low)} to {percent_text(odds.high)}"
     score = f"Brier score {number_text(odds.brier, 3)}, skill {percent_text(odds.skill, 1, signed=True)}"
     return f"{told} ({interval}) of {odds.forecasts:,}; {score}"
+
+
+def _note(text: str) -> Padding:
+    return Padding(Text(text, style="dim italic"), (0, 0, 0, 2))
 
 
 def _item(text: str) -> Padding:
