@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 import datetime as dt
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
+from pathlib import Path
 
 import numpy as np
 
@@ -18,9 +19,10 @@ from hedgerow.walk.account import DEFAULT_COSTS, Account
 from hedgerow.walk.inputs import Tape, make_tape
 from hedgerow.walk.run import Terms, Window, walk_program
 
-__all__ = ["COLLAR", "PUT_DISTANCE", "Inputs", "Stage", "make_market", "make_stage", "run_walk"]
+__all__ = ["COLLAR", "PUT_DISTANCE", "Inputs", "Stage", "make_market", "make_stage", "run_walk", "with_rule"]
 
 PUT_DISTANCE = -0.04
+STRATEGIES = Path(__file__).parents[2] / "strategies"
 COLLAR = {
     "name": "Weekly collar",
     "legs": {
@@ -143,6 +145,13 @@ def make_stage(sessions: int, symbols: int, seed: int = 1, *, rate: float = 0.03
         smile=surface.smile,
     )
     return Stage(market, tape, program, inputs)
+
+
+def with_rule(stage: Stage, file: str) -> Stage:
+    """The same market and account for a shipped strategy; only the walk can run it."""
+    strategy = load_strategy(STRATEGIES / file)
+    ordinals, symbols = stage.market.ordinals, stage.inputs.shape[1]
+    return replace(stage, program=compile_strategy(strategy, _no_signal, ordinals, symbols, "modern"))
 
 
 def run_walk(stage: Stage) -> tuple[Floats, int]:

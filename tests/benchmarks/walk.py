@@ -3,6 +3,7 @@
 ns_per_symbol_session   the walk on a weekly collar, time over sessions x symbols
 over_c                  its time over that of a single-purpose C loop for the same collar, gcc -O3, here
 plain_python_over       the time of a straightforward loop in plain Python over the walk's, on a small market
+structures              the walk on other structures: the same time, and over that of the weekly collar
 threads_2_speedup       two walks one after the other, over the two at once on two threads
 
 Each time is the best of a few; what is compared is run in turns, so that a busy moment of the machine falls
@@ -18,14 +19,20 @@ import sys
 import time
 from collections.abc import Callable
 from concurrent.futures import ThreadPoolExecutor
+from typing import Any
 
 import numpy as np
-from bench_market import Stage, make_stage, run_walk
+from bench_market import Stage, make_stage, run_walk, with_rule
 from c_collar import prepare_c
 from plain_loop import prepare_plain
 
 from hedgerow.kernels.layout import Floats
 
+STRUCTURES = {
+    "different_month_collar": "collar-different-month.yaml",
+    "married_put_with_income": "married-put-with-income.yaml",
+    "put_spread_collar": "put-spread-collar.yaml",
+}
 TOLERANCE = 1e-6  # relative, of equity at every close: rounding can move a cent, and a cent can move a lot
 
 
@@ -69,7 +76,23 @@ def same_result(stage: Stage) -> float:
     return difference
 
 
-def measure(sessions: int, symbols: int, rate: float, times: int) -> dict[str, float]:
+def time_structures(stage: Stage, times: int) -> dict[str, dict[str, float]]:
+    """Nanoseconds a symbol and session of further structures, and over the weekly collar, in turns."""
+    others = [with_rule(stage, file) for file in STRUCTURES.values()]
+    for other in others:
+        run_walk(other)  # warms every cache
+    collar, *taken = best(times, *(lambda one=one: run_walk(one) for one in (stage, *others)))
+    cells = stage.inputs.shape[0] * stage.inputs.shape[1]
+    return {
+        name: {
+            "ns_per_symbol_session": round(seconds / cells * 1e9, 1),
+            "over_weekly_collar": round(seconds / collar, 2),
+        }
+        for name, seconds in zip(STRUCTURES, taken, strict=True)
+    }
+
+
+def measure(sessions: int, symbols: int, rate: float, times: int) -> dict[str, Any]:
     """All figures of one market."""
     start = time.perf_counter()
     stage = make_stage(sessions, symbols, rate=rate)
@@ -92,6 +115,7 @@ def measure(sessions: int, symbols: int, rate: float, times: int) -> dict[str, f
         "over_c": round(walk / plain_c, 3),
         "plain_python_over": round(plain_python / small_walk, 1),
         "threads_2_speedup": round(one_after_other / together, 2),
+        "structures": time_structures(stage, times),
         "c_ns_per_symbol_session": round(plain_c / cells * 1e9, 1),
         "prepare_seconds": round(prepared, 2),
         "walk_seconds": round(walk, 3),
@@ -116,7 +140,7 @@ def main() -> None:
     if given.json:
         print(json.dumps(figures))
     else:
-        print("\n".join(f"{name:28} {value:>12}" for name, value in figures.items()))
+        print("\n".join(f"{name:28} {value!s:>12}" for name, value in figures.items()))
 
 
 if __name__ == "__main__":

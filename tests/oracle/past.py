@@ -241,14 +241,14 @@ def expected_dividends(history: History) -> list[Payer]:
     return out
 
 
-def close_over_mean(history: History, sessions: int) -> list[bool]:
+def close_over_mean(history: History, sessions: int) -> list[bool | None]:
     """Whether the close stands above the mean of the last `sessions` closes, its own among them."""
-    return [rel is not None and rel > 0.0 for rel in over_mean(history, sessions)]
+    return [None if rel is None else rel > 0.0 for rel in over_mean(history, sessions)]
 
 
-def close_under_mean(history: History, sessions: int) -> list[bool]:
+def close_under_mean(history: History, sessions: int) -> list[bool | None]:
     """Whether the close stands below the mean of the last `sessions` closes, its own among them."""
-    return [rel is not None and rel < 0.0 for rel in over_mean(history, sessions)]
+    return [None if rel is None else rel < 0.0 for rel in over_mean(history, sessions)]
 
 
 def bars_so_far(history: History) -> list[list[float]]:

@@ -6,13 +6,15 @@ Only the words the replay knows are read; any other is an error of the test, not
 from __future__ import annotations
 
 import datetime as dt
+import math
 from collections.abc import Callable
 from dataclasses import dataclass, field
 from typing import Any
 
 from oracle import listed, past
 
-Condition = Callable[[Any, int], bool]  # asked of (the replay's view of a position or symbol, session)
+# Asked of (the replay's view of a position or symbol, session); None is not known.
+Condition = Callable[[Any, int], bool | None]
 WEEKDAYS = ("monday", "tuesday", "wednesday", "thursday", "friday")
 
 
@@ -24,6 +26,23 @@ def number(word: Any) -> float:
         top, bottom = word.split("/")
         return float(top) / float(bottom)
     return float(word)
+
+
+def turned(truth: bool | None) -> bool | None:
+    """The opposite; of what is not known it is not known either."""
+    return None if truth is None else not truth
+
+
+def every(truths: list[bool | None]) -> bool | None:
+    """Whether all hold: no as soon as one does not, not known when one is not known."""
+    if any(truth is False for truth in truths):
+        return False
+    return None if any(truth is None for truth in truths) else True
+
+
+def judged(value: float, low: float, high: float) -> bool | None:
+    """Whether a number lies within bounds."""
+    return low <= value <= high if past.known(value) else None
 
 
 @dataclass(frozen=True)
@@ -185,13 +204,13 @@ class Reader:
         """A condition as a function."""
         if "all" in words:
             parts = [self.condition(part) for part in words["all"]]
-            return lambda view, t: all(part(view, t) for part in parts)
+            return lambda view, t: every([part(view, t) for part in parts])
         if "any" in words:
             parts = [self.condition(part) for part in words["any"]]
-            return lambda view, t: any(part(view, t) for part in parts)
+            return lambda view, t: turned(every([turned(part(view, t)) for part in parts]))
         if "not" in words:
             inner = self.condition(words["not"])
-            return lambda view, t: not inner(view, t)
+            return lambda view, t: turned(inner(view, t))
         if "signal" in words:
             return self.signal(words)
         return self.of_position(words)
@@ -204,14 +223,14 @@ class Reader:
         value = self.signal_values(words)
         if "between" in words:
             low, high = (number(bound) for bound in words["between"])
-            return lambda view, t: low <= value(view, t) <= high
+            return lambda view, t: judged(value(view, t), low, high)
         if "at_least" in words:
             least = number(words["at_least"])
-            return lambda view, t: value(view, t) >= least
+            return lambda view, t: judged(value(view, t), least, math.inf)
         if "at_most" in words:
             most = number(words["at_most"])
-            return lambda view, t: value(view, t) <= most
-        return lambda view, t: bool(value(view, t))
+            return lambda view, t: judged(value(view, t), -math.inf, most)
+        return value
 
     def of_position(self, words: dict[str, Any]) -> Condition:
         """A word about the position held; the view answers `figure(word, of or leg, session)`."""

@@ -163,6 +163,7 @@ def exits(draw: st.DrawFn, legs: list[str]) -> list[Rule]:
         st.builds(lambda p: {"stock_up": {"at_least": p}}, share),
         st.builds(lambda p: {"stock_down": {"at_least": p}}, share),
         st.builds(lambda n: {"signal": "close_under_mean", "sessions": n}, st.integers(5, 20)),
+        st.builds(lambda n: {"not": {"signal": "close_over_mean", "sessions": n}}, st.integers(5, 40)),
     ]
     if legs:
         words.append(st.builds(lambda n: {"days_left": {"at_most": n}}, st.integers(1, 5)))
@@ -176,6 +177,7 @@ ENTRIES: tuple[Rule, ...] = (
     {},
     {"when": {"signal": "close_over_mean", "sessions": 10}},
     {"when": {"not": {"signal": "momentum", "sessions": 5, "at_least": "3%"}}},
+    {"when": {"not": {"signal": "close_over_mean", "sessions": 20}}},
     {"rank": {"by": {"signal": "momentum", "sessions": 10}, "order": "high"}},
     {"rank": {"by": {"signal": "momentum", "sessions": 3}, "order": "low"}},
 )

@@ -269,3 +269,56 @@ PUT = {"put": leg("sell", "put", 10, "weekly", strike={"from_spot": "0%"})}
 def test_an_entry_is_judged_only_where_something_asks_for_it(judged: int, words: dict[str, Any]) -> None:
     """A bound on worst, best or odds, or something that may be owed, needs the figures at the decision."""
     assert made(**words).plan[0]["judged"] == judged
+
+
+def test_what_is_unknown_holds_neither_way() -> None:
+    """Before ten closes are there neither `over the mean` nor its `not` holds; after, one of them."""
+    both = [{"when": OVER}, {"when": {"not": OVER}}]
+    over, under = (
+        compile_strategy(load_strategy(collar(enter=enter)), values, ORDINALS, 3, "modern", known=known)
+        for enter in both
+    )
+    counts = over.may_enter.astype(int) + under.may_enter
+    assert (counts[:9] == 0).all()
+    assert (counts[9:] == 1).all()
+    rsi = load_strategy(collar(enter={"when": {"not": {"signal": "rsi", "sessions": 5, "at_most": 100}}}))
+    assert not compile_strategy(rsi, values, ORDINALS, 3, "modern").may_enter.any()
+
+
+def test_a_negation_goes_down_to_the_words() -> None:
+    """Not (gain or over the mean) is no gain and under it, and under it only where the mean is known."""
+    rule = exit_rule({"not": {"any": [{"gain": {"at_least": "2%"}}, OVER]}})
+    program = compile_strategy(load_strategy(collar(exit=[rule])), values, ORDINALS, 3, "modern", known=known)
+    assert ops_of(program, 0) == [
+        (0.02, at.OP_GAIN_OF_DEBIT, -1),
+        (0.0, at.OP_NOT, -1),
+        (0.0, at.OP_SIGNAL, 0),
+        (0.0, at.OP_AND, -1),
+    ]
+    expected = ~said("close_over_mean", sessions=10)
+    expected[:9] = False
+    np.testing.assert_array_equal(bit(program, 0), expected)
+
+
+REPORT = {"signal": "sessions_to_report", "at_most": 0}  # no at every close: none is known
+
+
+@pytest.mark.parametrize(
+    ("when", "holds"),
+    [
+        ({"not": {"all": [REPORT, OVER]}}, 1),
+        ({"any": [{"not": REPORT}, OVER]}, 1),
+        ({"all": [{"not": REPORT}, OVER]}, 0),
+        ({"not": {"any": [REPORT, OVER]}}, 0),
+    ],
+)
+def test_one_unknown_part(when: Any, holds: int) -> None:
+    """All of a no and an unknown is no, any of a yes and an unknown is yes (Kleene 1938)."""
+    words = load_strategy(collar(enter={"when": when}))
+    program = compile_strategy(words, values, ORDINALS, 3, "modern", known=known)
+    assert (program.may_enter[:9] == holds).all()
+
+
+def known(wanted: SignalValue) -> np.ndarray:
+    """Where a signal is known."""
+    return PANEL.known(wanted.signal, wanted.arguments, wanted.of)

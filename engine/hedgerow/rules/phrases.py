@@ -68,8 +68,10 @@ def expiry_phrase(expiry: Expiry) -> str:
     if expiry.with_leg is not None:
         return f"expiring with `{expiry.with_leg}`"
     if expiry.choose == "at_least":
-        return f"expiring on the first listed {expiry.listed} date at least {expiry.days} days away"
-    return f"expiring on the listed {expiry.listed} date nearest to {expiry.days} days away"
+        return (
+            f"expiring on the first listed {expiry.listed} date at least {counted(expiry.days, 'day')} away"
+        )
+    return f"expiring on the listed {expiry.listed} date nearest to {counted(expiry.days, 'day')} away"
 
 
 def strike_phrase(leg: Leg) -> str:
@@ -87,10 +89,10 @@ def _rule(strike: Strike, right: str) -> str:
     beyond = "above" if right == "call" else "below"
     phrases = {
         "from_spot": lambda v: f"struck {_away(v, percent_text(abs(v)))}",
-        "steps": lambda v: f"struck {abs(v)} listed steps {_side(v)} the stock's price",
+        "steps": lambda v: f"struck {counted(abs(v), 'listed step')} {_side(v)} the stock's price",
         "delta": lambda v: f"at the strike whose delta is {v:g}",
         "odds": lambda v: f"at the strike that the stock ends {beyond} with a chance of {percent_text(v)}",
-        "deviations": lambda v: f"struck {_away(v, f'{abs(v):g} standard deviations')}",
+        "deviations": lambda v: f"struck {_away(v, _deviations(abs(v)))}",
         "spend": lambda v: (
             f"at the strike whose premium is at most {percent_text(v.share)} of what `{v.of}` brings"
         ),
@@ -100,6 +102,10 @@ def _rule(strike: Strike, right: str) -> str:
         ),
     }
     return phrases[strike.rule](getattr(strike, strike.rule))
+
+
+def _deviations(count: float) -> str:
+    return "1 standard deviation" if count == 1.0 else f"{count:g} standard deviations"
 
 
 def _side(value: float) -> str:
@@ -166,6 +172,8 @@ def _position_clause(test: Condition) -> str:
         which = "the nearest expiry" if leg is None else f"the expiry of `{leg}`"
         if test.days_left.at_most == 1:
             return f"one day or none is left to {which}"
+        if test.days_left.at_most == 0:
+            return f"no day is left to {which}"
         return f"{test.days_left.at_most} days or fewer are left to {which}"
     if isinstance(test, HeldTest):
         return f"it has been held for {counted(test.held.at_least, 'session')} or more"

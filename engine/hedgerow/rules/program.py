@@ -10,7 +10,6 @@ from collections.abc import Callable
 from dataclasses import dataclass, field, replace
 
 import numpy as np
-from numpy.typing import NDArray
 
 from hedgerow.errors import RulesError
 from hedgerow.kernels import layout
@@ -39,11 +38,10 @@ from hedgerow.rules.schema import (
     StockUpTest,
     Strategy,
 )
+from hedgerow.rules.truth import Asked, Truth, Values, truths_of
 
 __all__ = ["Program", "Values", "compile_strategy"]
 
-Values = Callable[[SignalValue], NDArray[np.bool_] | Floats]
-Truth = NDArray[np.bool_]
 Chosen = dict[tuple[int, int, bool], Ints]
 """Expiries at every session of one market, by cycle, days wanted and whether it is at least as many."""
 
@@ -81,7 +79,6 @@ WAYS = {
     "up and out": layout.ROLL_UP_AND_OUT,
     "down and out": layout.ROLL_DOWN_AND_OUT,
 }
-WEEKDAYS = ("monday", "tuesday", "wednesday", "thursday", "friday", "saturday", "sunday")
 
 
 @dataclass(frozen=True, eq=False)
@@ -105,7 +102,7 @@ class Program:
 class _Bits:
     """The signals met so far, each with its bit, and the operations written so far."""
 
-    values: Values
+    asked: Asked
     truths: list[Truth] = field(default_factory=list)
     ops: list[tuple[float, int, int]] = field(default_factory=list)
 
@@ -132,34 +129,6 @@ class _Bits:
         for bit, truth in enumerate(self.truths):
             out |= truth.astype(np.int64) << bit
         return out
-
-
-def within(values: Floats, bounds: Bounds) -> Truth:
-    """Where values lie within bounds, both ends included; never where they are unknown."""
-    return np.asarray((values >= bounds.low) & (values <= bounds.high))
-
-
-def signal_truth(test: SignalTest, values: Values) -> Truth:
-    """Where a signal's condition holds, shape (T, N); unknown is no."""
-    found = values(test)
-    if test.days:
-        wanted = [WEEKDAYS.index(day) for day in test.days]
-        return np.asarray(np.isin(found, wanted))
-    if test.bounds is not None:
-        return within(np.asarray(found, np.float64), test.bounds)
-    return np.asarray(found, np.bool_)
-
-
-def truth_of(condition: Condition, values: Values) -> Truth:
-    """Where a condition about the market alone holds, shape (T, N)."""
-    if isinstance(condition, AllOf):
-        return np.asarray(np.logical_and.reduce([truth_of(part, values) for part in condition.conditions]))
-    if isinstance(condition, AnyOf):
-        return np.asarray(np.logical_or.reduce([truth_of(part, values) for part in condition.conditions]))
-    if isinstance(condition, NotOf):
-        return ~truth_of(condition.condition, values)
-    assert isinstance(condition, SignalTest)
-    return signal_truth(condition, values)
 
 
 def about_position(condition: Condition) -> bool:
@@ -190,21 +159,26 @@ def _position_op(condition: Condition, legs: dict[str, int]) -> tuple[float, int
     return condition.leg_lost.at_least, layout.OP_LEG_LOST, legs[condition.leg_lost.leg]
 
 
-def _write_ops(condition: Condition, legs: dict[str, int], bits: _Bits) -> None:
-    """Append a condition in postfix order."""
+def _write_ops(condition: Condition, legs: dict[str, int], bits: _Bits, turned: bool = False) -> None:
+    """Append a condition in postfix order, or its negation when `turned`.
+
+    A negation goes down to the single words, so that a signal that is not known is no either way.
+    """
     if not about_position(condition):
-        bits.ops.append((0.0, layout.OP_SIGNAL, bits.bit_of(truth_of(condition, bits.values))))
+        truth = truths_of(condition, bits.asked)[int(turned)]
+        bits.ops.append((0.0, layout.OP_SIGNAL, bits.bit_of(truth)))
     elif isinstance(condition, NotOf):
-        _write_ops(condition.condition, legs, bits)
-        bits.ops.append((0.0, layout.OP_NOT, -1))
+        _write_ops(condition.condition, legs, bits, not turned)
     elif isinstance(condition, AllOf | AnyOf):
-        joint = layout.OP_AND if isinstance(condition, AllOf) else layout.OP_OR
+        joint = layout.OP_AND if isinstance(condition, AllOf) is not turned else layout.OP_OR
         for number, part in enumerate(condition.conditions):
-            _write_ops(part, legs, bits)
+            _write_ops(part, legs, bits, turned)
             if number > 0:
                 bits.ops.append((0.0, joint, -1))
     else:
         bits.ops.append(_position_op(condition, legs))
+        if turned:
+            bits.ops.append((0.0, layout.OP_NOT, -1))
 
 
 def _ops_of(condition: Condition | None, legs: dict[str, int], bits: _Bits) -> tuple[int, int]:
@@ -343,12 +317,12 @@ def _pace(plan: Records, enter: Enter) -> None:
         plan["rank_low"] = int(enter.rank.order == "low")
 
 
-def _entries(strategy: Strategy, values: Values, ordinals: Ints, symbols: int) -> Bytes:
+def _entries(strategy: Strategy, asked: Asked, ordinals: Ints, symbols: int) -> Bytes:
     """Where a position may be opened: its condition holds, the session is named, and there is one to open."""
     enter = strategy.enter or Enter()
     may: Truth = np.full((ordinals.size, symbols), not strategy.holds_nothing)
     if enter.when is not None:
-        may &= truth_of(enter.when, values)
+        may &= truths_of(enter.when, asked)[0]
     if enter.on is not None:
         may &= occasions(enter.on, ordinals)[:, np.newaxis]
     return may.astype(np.uint8)
@@ -370,14 +344,17 @@ def compile_strategy(
     symbols: int,
     regime: Regime,
     chosen: Chosen | None = None,
+    known: Callable[[SignalValue], Truth] | None = None,
 ) -> Program:
     """Turn a strategy into the arrays of the walk.
 
     `values` gives a signal's array of shape (T, `symbols`), `ordinals` (T,) are the sessions, `regime` that
-    of listings; `chosen` keeps the expiries of each rule met so far. Raises RulesError when legs wait for
-    each other or too many signals are used.
+    of listings; `chosen` keeps the expiries of each rule met so far; `known` says where a yes-or-no signal is
+    known, everywhere when left out. Raises RulesError when legs wait for each other or too many signals are
+    used.
     """
-    bits = _Bits(values)
+    asked = Asked(values, known)
+    bits = _Bits(asked)
     plan = _plan(strategy, bits)
     expiries = np.zeros((len(strategy.legs), ordinals.size), np.int64)
     for number, leg in enumerate(strategy.legs):
@@ -393,7 +370,7 @@ def compile_strategy(
         plan=plan,
         expiries=expiries,
         ops=np.array(bits.ops or [(0.0, layout.OP_SIGNAL, 0)], OP),
-        may_enter=_entries(strategy, values, ordinals, symbols),
+        may_enter=_entries(strategy, asked, ordinals, symbols),
         words=bits.word(shape),
         rank=_ranks(strategy, values),
     )

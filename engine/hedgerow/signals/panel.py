@@ -101,6 +101,22 @@ class Panel:
             self._found[key] = found
         return self._found[key]
 
+    def known(
+        self, name: str, params: Mapping[str, float] | None = None, of: str | None = None
+    ) -> NDArray[np.bool_]:
+        """Return where a signal is known, (T, N): a number is no NaN, a yes or no has its lookback of bars.
+
+        Raises RulesError for an unknown signal, parameter or symbol.
+        """
+        found = self.evaluate(name, params, of)
+        if found.dtype != np.bool_:
+            return ~np.isnan(found)
+        chosen = named_signal(name)
+        has_bar = self.has_bar if of is None else self.of(of).has_bar
+        seen = np.cumsum(has_bar if chosen.by_bars else np.ones_like(has_bar), axis=0)
+        known = has_bar & (seen >= chosen.lookback_sessions(params))
+        return np.ascontiguousarray(np.broadcast_to(known, self.has_bar.shape))
+
 
 def evaluate(
     name: str, market: Market, params: Mapping[str, float] | None = None, of: str | None = None

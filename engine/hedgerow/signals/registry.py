@@ -13,6 +13,7 @@ unit of price and to splits, keeps symbols apart, and says nothing where it know
 
 from __future__ import annotations
 
+import re
 from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
@@ -86,8 +87,9 @@ class Signal:
         return "bool" if self.number is None else "number"
 
     def words(self, params: Parameters | None = None) -> str:
-        """The phrase with its parameters filled in."""
-        return self.phrase.format(**{name: f"{value:g}" for name, value in self.checked(params).items()})
+        """The phrase with its parameters filled in; of one session, not of 1 sessions."""
+        text = self.phrase.format(**{name: f"{value:g}" for name, value in self.checked(params).items()})
+        return re.sub(r"\b1 (session|day|bar)s\b", r"1 \1", text)
 
     def lookback_sessions(self, params: Parameters | None = None) -> int:
         """Sessions with a bar, today's among them, that must be there before the signal knows anything."""

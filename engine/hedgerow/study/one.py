@@ -148,11 +148,21 @@ class Bench:
         """A signal's array of shape (T, N)."""
         return self.panel.evaluate(wanted.signal, wanted.arguments, wanted.of)
 
+    def known(self, wanted: SignalValue) -> NDArray[np.bool_]:
+        """Where a signal is known, shape (T, N)."""
+        return self.panel.known(wanted.signal, wanted.arguments, wanted.of)
+
     def program(self, strategy: Strategy) -> Program:
         """A strategy as arrays for this market, entering only what may be traded."""
         market = self.market
         program = compile_strategy(
-            strategy, self.values, market.ordinals, len(market.symbols), self.listings, self._chosen
+            strategy,
+            self.values,
+            market.ordinals,
+            len(market.symbols),
+            self.listings,
+            self._chosen,
+            self.known,
         )
         return program.entering(self.traded)
 
