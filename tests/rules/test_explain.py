@@ -53,8 +53,7 @@ Married put with income
 A put half a year out; calls are sold only after a rise.
 
 Position. For each lot: buy 100 shares; buy one put (`put`), expiring on the listed monthly date nearest to
-180 days away, at the strike that keeps the worst loss within 7% of the net debit, moved to the nearest
-listed strike.
+180 days away, at the lowest listed strike that keeps the worst loss within 7% of the net debit.
 
 Best case. Not capped: above every strike the position gains with the stock, without limit. A call sold
 later caps it from then on.
@@ -159,13 +158,21 @@ def said(words: dict[str, Any], title: str) -> str:
         ({"steps": 0, "snap": "down"}, "at the first listed strike at or below the stock's price"),
         ({"steps": 0}, "at the listed strike nearest to the stock's price"),
         ({"steps": -2}, "struck 2 listed steps below the stock's price"),
+        ({"steps": -1}, "struck 1 listed step below the stock's price"),
+        ({"deviations": -1}, "struck 1 standard deviation below the stock's price"),
         ({"delta": 0.25}, "at the strike whose delta is 0.25"),
         ({"odds": "20%"}, "at the strike that the stock ends below with a chance of 20%"),
         ({"deviations": -1.5}, "struck 1.5 standard deviations below the stock's price"),
         ({"same_as": "call"}, "at the strike of `call`"),
-        ({"spend": {"share": "50%", "of": "call"}}, "at most 50% of what `call` brings"),
-        ({"zero_cost_with": "call"}, "that makes it and `call` cost nothing together"),
-        ({"worst_loss_within": "5%"}, "that keeps the worst loss within 5% of the net debit"),
+        (
+            {"spend": {"share": "50%", "of": "call"}},
+            "at the dearest listed strike that costs at most 50% of what `call` brings",
+        ),
+        ({"zero_cost_with": "call"}, "at the dearest listed strike that `call` pays for"),
+        (
+            {"worst_loss_within": "5%"},
+            "at the lowest listed strike that keeps the worst loss within 5% of the net debit",
+        ),
     ],
 )
 def test_strikes_in_words(strike: dict[str, Any], phrase: str) -> None:

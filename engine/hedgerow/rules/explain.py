@@ -186,7 +186,10 @@ def _at_expiry(strategy: Strategy) -> str:
             "then goes on while they are held, and ends when they are called away."
         )
     if strategy.shares == "none":
-        return text + " Shares that this leaves are sold at that close."
+        text += " Shares that this leaves are sold at that close."
+        if len(strategy.legs) > 1 and any(leg.sold for leg in strategy.legs):
+            text += " Those of an early assignment are sold at the next open, and the other legs with them."
+        return text
     if again:
         return text + " The position goes on while shares are held and a leg lives or is made again."
     return text + " Shares that no leg keeps any longer are sold at that close."

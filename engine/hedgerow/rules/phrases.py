@@ -82,7 +82,23 @@ def strike_phrase(leg: Leg) -> str:
     if strike.steps == 0:
         first = {"up": "first listed strike at or above", "down": "first listed strike at or below"}
         return f"at the {first.get(strike.snap, 'listed strike nearest to')} the stock's price"
+    if strike.rule in ("spend", "zero_cost_with", "worst_loss_within"):
+        return _searched(leg)
     return f"{_rule(strike, leg.right)}, {_SNAPS[strike.snap]}"
+
+
+def _searched(leg: Leg) -> str:
+    """A strike that is looked for among the listed ones, so that nothing is left to be moved."""
+    strike = leg.strike
+    if strike.spend is not None:
+        share, other = percent_text(strike.spend.share), strike.spend.of
+        return f"at the dearest listed strike that costs at most {share} of what `{other}` brings"
+    if strike.worst_loss_within is not None:
+        share = percent_text(strike.worst_loss_within)
+        return f"at the lowest listed strike that keeps the worst loss within {share} of the net debit"
+    if leg.sold:
+        return f"at the farthest listed strike that still pays for `{strike.zero_cost_with}`"
+    return f"at the dearest listed strike that `{strike.zero_cost_with}` pays for"
 
 
 def _rule(strike: Strike, right: str) -> str:
@@ -93,13 +109,6 @@ def _rule(strike: Strike, right: str) -> str:
         "delta": lambda v: f"at the strike whose delta is {v:g}",
         "odds": lambda v: f"at the strike that the stock ends {beyond} with a chance of {percent_text(v)}",
         "deviations": lambda v: f"struck {_away(v, _deviations(abs(v)))}",
-        "spend": lambda v: (
-            f"at the strike whose premium is at most {percent_text(v.share)} of what `{v.of}` brings"
-        ),
-        "zero_cost_with": lambda v: f"at the strike that makes it and `{v}` cost nothing together",
-        "worst_loss_within": lambda v: (
-            f"at the strike that keeps the worst loss within {percent_text(v)} of the net debit"
-        ),
     }
     return phrases[strike.rule](getattr(strike, strike.rule))
 
