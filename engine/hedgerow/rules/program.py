@@ -359,11 +359,11 @@ def compile_strategy(
     expiries = np.zeros((len(strategy.legs), ordinals.size), np.int64)
     for number, leg in enumerate(strategy.legs):
         rule = root_of(leg, strategy).expiry
-        known = {} if chosen is None else chosen
+        kept = {} if chosen is None else chosen
         wanted = CYCLES[rule.listed], rule.days or 1, rule.choose == "at_least"
-        if wanted not in known:
-            known[wanted] = choose_expiries(*wanted, ordinals, regime)
-        expiries[number] = known[wanted]
+        if wanted not in kept:
+            kept[wanted] = choose_expiries(*wanted, ordinals, regime)
+        expiries[number] = kept[wanted]
     shape = (ordinals.size, symbols)
     return Program(
         strategy=strategy,
