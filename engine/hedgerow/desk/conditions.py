@@ -13,8 +13,9 @@ from hedgerow.kernels.layout import Floats
 from hedgerow.rules.base import Bounds
 from hedgerow.rules.condition import DaysLeftTest, HeldTest, HoldsSharesTest
 from hedgerow.rules.phrases import condition_phrase
-from hedgerow.rules.program import WEEKDAYS, about_position, truth_of
+from hedgerow.rules.program import about_position
 from hedgerow.rules.schema import AllOf, AnyOf, Condition, NotOf, SignalTest
+from hedgerow.rules.truth import WEEKDAYS, Asked, truths_of
 from hedgerow.signals import named_signal
 from hedgerow.study.one import Bench
 from hedgerow.units import MISSING, number_text, percent_text
@@ -93,7 +94,10 @@ class Sight:
 
     def truth(self, condition: Condition, symbol: int) -> bool:
         """Whether a condition about the market alone holds of a column."""
-        return bool(truth_of(condition, self._last)[0, symbol])
+        return bool(truths_of(condition, Asked(self._last, self._known))[0][0, symbol])
+
+    def _known(self, wanted: Any) -> Any:
+        return self.bench.known(wanted)[-1:]
 
     def _last(self, wanted: Any) -> Any:
         return self.bench.values(wanted)[-1:]

@@ -67,11 +67,10 @@ def expiry_phrase(expiry: Expiry) -> str:
     """When a leg expires."""
     if expiry.with_leg is not None:
         return f"expiring with `{expiry.with_leg}`"
+    days = counted(expiry.days or 0, "day")
     if expiry.choose == "at_least":
-        return (
-            f"expiring on the first listed {expiry.listed} date at least {counted(expiry.days, 'day')} away"
-        )
-    return f"expiring on the listed {expiry.listed} date nearest to {counted(expiry.days, 'day')} away"
+        return f"expiring on the first listed {expiry.listed} date at least {days} away"
+    return f"expiring on the listed {expiry.listed} date nearest to {days} away"
 
 
 def strike_phrase(leg: Leg) -> str:
