@@ -123,10 +123,10 @@ def test_a_window_outside_the_data(hedgerow: Runner) -> None:
     hedgerow.write(study__yaml=STUDY + extra)
     told = refused(hedgerow, "study.yaml")
     assert told[0].startswith(
-        "study.yaml:11:14: `symbols.2` is `BB`, which is no symbol of the market; the market has A, B"
+        "study.yaml:12:14: `symbols.2` is `BB`, which is no symbol of the market; the market has A, B"
     )
-    assert told[1].startswith("study.yaml:10:16: `window.from` is 2014-12-31, which lies outside the data")
-    assert told[2].startswith("study.yaml:10:32: `window.to` is 2031-01-01, which lies outside the data")
+    assert told[1].startswith("study.yaml:11:16: `window.from` is 2014-12-31, which lies outside the data")
+    assert told[2].startswith("study.yaml:11:32: `window.to` is 2031-01-01, which lies outside the data")
     assert "the data hold 2015-01-05 to 2015-06-19" in told[1]
 
 
@@ -142,7 +142,7 @@ def test_windows_that_are_none(hedgerow: Runner, window: str, words: str) -> Non
     """A day that is not in the calendar, a weekend, an end before its beginning."""
     hedgerow.write(study__yaml=STUDY + f"window: {window}\n")
     (line,) = refused(hedgerow, "study.yaml")
-    assert line.startswith("study.yaml:10:")
+    assert line.startswith("study.yaml:11:")
     assert words in line
 
 
@@ -152,7 +152,7 @@ def test_no_symbol_is_left(hedgerow: Runner) -> None:
     frame[(frame["symbol"] == "A") | (frame["date"] < "2015-02-01")].to_csv("prices.csv", index=False)
     hedgerow.write(study__yaml=STUDY + "symbols: [B]\nwindow: {from: 2015-03-02}\n")
     (line,) = refused(hedgerow, "study.yaml")
-    assert line.startswith("study.yaml:10:10: `symbols` leaves no symbol with a price in the window")
+    assert line.startswith("study.yaml:11:10: `symbols` leaves no symbol with a price in the window")
     hedgerow.write(study__yaml=STUDY + "symbols: []\n")
     (line,) = refused(hedgerow, "study.yaml")
     assert "allowed: `all`, or a list of symbols" in line
@@ -202,7 +202,7 @@ def test_a_repeated_key(hedgerow: Runner) -> None:
     """The second one is pointed at, and the first named."""
     hedgerow.write(study__yaml=STUDY + "market: other.csv\n")
     (line,) = refused(hedgerow, "study.yaml")
-    assert line.startswith("study.yaml:10:1: the key `market` stands a second time; the first is on line 3")
+    assert line.startswith("study.yaml:11:1: the key `market` stands a second time; the first is on line 3")
 
 
 def test_text_that_looks_like_something_else(hedgerow: Runner) -> None:

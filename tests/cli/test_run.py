@@ -17,9 +17,13 @@ import yaml
 import hedgerow as hr
 from cli_runs import SESSIONS, WEIGHED, Runner, Said
 from hedgerow import __version__
+from hedgerow.report.background import BACKGROUND_FILES
+from hedgerow.report.build import PAGE
 from hedgerow.report.files import RUN_FILES, STRESS_FILES
 
 WIDTH = 100
+ALWAYS = (*RUN_FILES, *BACKGROUND_FILES, PAGE)
+"""What every run leaves."""
 
 
 def test_a_study_is_shown_and_its_ledgers_left(hedgerow: Runner) -> None:
@@ -35,8 +39,11 @@ def test_a_study_is_shown_and_its_ledgers_left(hedgerow: Runner) -> None:
     ):
         assert words in said.out
     assert f"2015-01-05 to 2015-06-19, {SESSIONS} sessions" in said.out
-    assert said.out.rstrip().endswith("Every trade and every cent: runs/short-or-long")
-    assert {path.name for path in Path("runs/short-or-long").iterdir()} == set(RUN_FILES)
+    assert said.out.endswith(
+        "Every trade and every cent: runs/short-or-long\nThe report: runs/short-or-long/report.html\n"
+    )
+    written = {path.name for path in Path("runs/short-or-long").iterdir()}
+    assert written == set(ALWAYS)
 
 
 def test_it_fits_the_screen_and_is_plain_when_piped(hedgerow: Runner) -> None:
@@ -85,12 +92,12 @@ def test_a_run_ends_with_a_verdict_that_is_in_the_summary(hedgerow: Runner) -> N
     """Below the cautions on the screen; the same in summary.json and --json; the stress in two files."""
     hedgerow.write(study__yaml=WEIGHED)
     said = hedgerow("run", "study.yaml", "--out", "mine")
-    assert {path.name for path in Path("mine").iterdir()} == {*RUN_FILES, *STRESS_FILES}
+    assert {path.name for path in Path("mine").iterdir()} == {*ALWAYS, *STRESS_FILES}
     left = json.loads(Path("mine/summary.json").read_text(encoding="utf-8"))["evidence"]
     words = " ".join(said.out.split())
     verdict = " ".join(left["verdict"]["paragraph"].split())
     assert words.index("Before you rely on this") < words.index(verdict)
-    assert words.endswith(f"{verdict} Every trade and every cent: mine")
+    assert words.endswith(f"{verdict} Every trade and every cent: mine The report: mine/report.html")
     told = json.loads(hedgerow("run", "study.yaml", "--out", "other", "--json").out)
     assert told["evidence"] == left
     frame = pd.read_parquet("mine/stress.parquet")
@@ -105,7 +112,7 @@ def test_evidence_none_is_quick_and_leaves_none(hedgerow: Runner) -> None:
     assert said.code == 0
     assert "Verdict" not in said.out
     assert "evidence" not in json.loads(Path("mine/summary.json").read_text(encoding="utf-8"))
-    assert {path.name for path in Path("mine").iterdir()} == set(RUN_FILES)
+    assert {path.name for path in Path("mine").iterdir()} == set(ALWAYS)
 
 
 def test_tries_are_counted_across_studies_of_a_folder(hedgerow: Runner) -> None:

@@ -12,6 +12,7 @@ import typer
 from hedgerow import __version__
 from hedgerow.cli import data, extensions, rules
 from hedgerow.cli.look import look
+from hedgerow.cli.report import report
 from hedgerow.cli.run import run
 from hedgerow.cli.today import today
 from hedgerow.errors import HedgerowError
@@ -27,6 +28,7 @@ app = typer.Typer(
     pretty_exceptions_enable=False,
 )
 app.command()(run)
+app.command()(report)
 app.command()(look)
 app.command()(today)
 app.add_typer(data.app, name="data")

@@ -34,8 +34,15 @@ Extensions = Annotated[
 ]
 Out = Annotated[Path | None, typer.Option("--out", help="Folder for the ledgers; runs/NAME when not given.")]
 Replace = Annotated[bool, typer.Option("--replace", help="Overwrite a finished run in that folder.")]
-Json = Annotated[bool, typer.Option("--json", help="Print one JSON object for programs.")]
-Quiet = Annotated[bool, typer.Option("--quiet", help="Write the folder and print only its name.")]
+Form = Annotated[
+    bool | None,
+    typer.Option(
+        "--json/--quiet",
+        help="Print one JSON object for programs, or only the folder's name.",
+        show_default=False,
+    ),
+]
+NoReport = Annotated[bool, typer.Option("--no-report", help="Write no report.html into the folder.")]
 MOST_WORKERS = 64
 
 
@@ -66,14 +73,17 @@ def run(
     market: MarketOption = None,
     out: Out = None,
     replace: Replace = False,
-    as_json: Json = False,
-    quiet: Quiet = False,
+    form: Form = None,
     workers: Workers = "2",
     extension: Extensions = None,
+    no_report: NoReport = False,
 ) -> None:
     """Replay a study and compare its variants; leave a folder of ledgers."""
+    from hedgerow.cli.report import reported
+    from hedgerow.report.background import background_of, cautions_of
     from hedgerow.report.files import check_place, write_run
 
+    as_json, quiet = form is True, form is False
     study = study_of(file, market, extension or [])
     if study.is_large:
         from hedgerow.cli.large import How, run_large_study
@@ -86,19 +96,29 @@ def run(
     result = _walked(study, workers)
     ledgers = [one.ledger for one in result.results]
     summaries = [one.summary for one in result.results]
-    write_run(place, ledgers, summaries, result.record(), replace=replace, evidence=result.evidence)
+    write_run(
+        place,
+        ledgers,
+        summaries,
+        result.record(),
+        replace=replace,
+        evidence=result.evidence,
+        extra=background_of(result),
+    )
+    page = None if no_report else reported(place)
     remember(RUNS, result.study, result.market)
     _hint(summaries)
     if as_json:
         told: dict[str, Any] = {"variants": {one.variant: one.as_dict() for one in summaries}}
         if result.evidence is not None:
             told["evidence"] = result.evidence.as_dict()
-        told |= {"cautions": list(_cautions(result))}
-        typer.echo(json.dumps({"folder": str(place)} | told, ensure_ascii=False, indent=2))
+        told |= {"cautions": list(cautions_of(result))}
+        made = {"folder": str(place), "report": None if page is None else str(page)}
+        typer.echo(json.dumps(made | told, ensure_ascii=False, indent=2))
     elif quiet:
         typer.echo(place)
     else:
-        _show(result, place)
+        _show(result, place, page)
 
 
 def study_of(file: Path, market: Path | None, extensions: list[str]) -> Study:
@@ -180,26 +200,20 @@ def _walked(study: Study, workers: int) -> StudyResult:
         return run_study(study, market=bench.market, workers=workers, progress=counter.advance, tried=before)
 
 
-def _cautions(result: StudyResult) -> tuple[str, ...]:
-    """The cautions of this result."""
-    from hedgerow.report.cautions import Basis, cautions
-
-    evidence = result.evidence
-    tried = len(result.results) if evidence is None else evidence.tries.count.in_all
-    return cautions(Basis(tried, result.assumptions, result.ended))
-
-
-def _show(result: StudyResult, place: Path) -> None:
+def _show(result: StudyResult, place: Path, page: Path | None) -> None:
     """Print the comparison, what the data check found, and where the ledgers lie."""
+    from hedgerow.report.background import cautions_of
     from hedgerow.report.text import Comparison, print_comparison
 
     study = result.study
     summaries = [one.summary for one in result.results]
-    print_comparison(Comparison(summaries, study.name, study.question, _cautions(result), result.evidence))
+    print_comparison(Comparison(summaries, study.name, study.question, cautions_of(result), result.evidence))
     warnings = sum(finding.severity == "warning" for finding in result.market.findings)
     if warnings:
         typer.echo(f"\nThe data check has {warnings} warnings: hedgerow data check {study.market}")
     typer.echo(f"\nEvery trade and every cent: {place}")
+    if page is not None:
+        typer.echo(f"The report: {page}")
 
 
 def _hint(summaries: list[Any]) -> None:

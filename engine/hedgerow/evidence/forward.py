@@ -22,7 +22,7 @@ from hedgerow.ledger.marks import LEG_FIELDS, complete, position_rows
 from hedgerow.ledger.positions import capital_tied_up
 from hedgerow.units import SESSIONS_A_YEAR
 
-__all__ = ["Forward", "Outlook", "Work", "forward_view", "one_year_paths"]
+__all__ = ["Forward", "Outlook", "Work", "forward_view", "one_year_fan", "one_year_paths"]
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
@@ -179,3 +179,16 @@ def _view(work: Work, days: Ints, share: float, asked: Outlook, block: int) -> F
 
 def _share(hits: NDArray[np.bool_] | Sequence[bool]) -> float:
     return float(np.mean(hits))
+
+
+def one_year_fan(work: Work, share: float, known: Resampling, levels: Sequence[float]) -> Floats:
+    """Return the account (levels, 252) as a multiple of its start: its quantiles at each session ahead.
+
+    The same resampled years as those of `forward_view`, so that its ends are the figures told there. Raises
+    ValueError without sessions.
+    """
+    if not work.results.size:
+        raise ValueError(f"the record of `{work.name}` has no sessions to draw a year ahead from")
+    block = math.ceil(float(block_lengths(np.column_stack([work.results, np.abs(work.results)])).max()))
+    paths = one_year_paths(work, _years(work.results.size, block, known, work.name), share)
+    return np.asarray(np.quantile(paths, levels, axis=0))
