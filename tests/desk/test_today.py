@@ -3,10 +3,7 @@
 from __future__ import annotations
 
 import shutil
-from dataclasses import replace
-from functools import cache
 from pathlib import Path
-from typing import Any
 
 import numpy as np
 import pandas as pd
@@ -15,57 +12,22 @@ from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 
 import hedgerow as hr
+from desk_sheets import MARKETS, ROOT, STRATEGIES, bench_of, named, orchard, ordered, study_of, walk_from
 from hedgerow.desk.files import json_of
 from hedgerow.desk.page import page_of
 from hedgerow.desk.sheet import Look, Sheet
 from hedgerow.desk.text import text_of
 from hedgerow.events.log import EventLog
-from hedgerow.kernels import layout as at
-from hedgerow.market import Market, load_market
-from hedgerow.rules.load import load_strategy
+from hedgerow.market import Market
 from hedgerow.study.one import Bench
-from hedgerow.volatility.words import surface_words
-from hedgerow.walk.account import DEFAULT_COSTS, Account
+from hedgerow.walk.account import DEFAULT_COSTS
 from hedgerow.walk.run import Window
-from oracle import real_markets
 from oracle.words import Setting
 from properties.accounts import SHORT_BLEND, accounts
 from properties.markets import wild_markets
 from properties.rules import Rule, rules
 
-ROOT = Path(__file__).parents[2]
-STRATEGIES = sorted((ROOT / "strategies").glob("*.yaml"))
-ACCOUNT: dict[str, Any] = {"cash": 400_000.0, "per_position": 1 / 8, "most_positions": 6}
 LONGEST = 3  # sessions in which an order fills, or is dropped
-
-
-@cache
-def orchard() -> Market:
-    """The invented demo market."""
-    return load_market(ROOT / "datasets/orchard-bay")
-
-
-MARKETS = {"stocks": real_markets.stocks, "index": real_markets.index, "orchard": orchard}
-
-
-@cache
-def bench_of(name: str) -> Bench:
-    """A market made ready, to its end."""
-    return Bench(MARKETS[name](), surface_words(None))
-
-
-def walk_from(bench: Bench, rule: Any, session: int, stop: int) -> EventLog:
-    """The log of a rule that begins with a flat account at a session of the whole market."""
-    window = Window(session, min(stop, len(bench.market.dates)))
-    return bench.run(load_strategy(rule), Account(**ACCOUNT), DEFAULT_COSTS, window, beside=False).log
-
-
-def ordered(log: EventLog, session: int) -> list[str]:
-    """Symbols whose entry the walk decided at a session, in their order, with the lots ordered or filled."""
-    events = log.events
-    here = (events["session"] == session) & (events["reason"] == at.WHY_ENTRY)
-    kinds = np.isin(events["kind"], (at.KIND_SIGNALLED, at.KIND_OPENED))
-    return [f"{log.meta.symbols[event['symbol']]} {event['quantity']:g}" for event in events[here & kinds]]
 
 
 def filled(log: EventLog, session: int) -> dict[str, set[tuple[str, float, str, float]]]:
@@ -80,11 +42,6 @@ def filled(log: EventLog, session: int) -> dict[str, set[tuple[str, float, str, 
             for row in legs.itertuples()
         }
     return found
-
-
-def named(sheet: Sheet) -> list[str]:
-    """Symbols the sheet opens, with their lots."""
-    return [f"{look.symbol} {look.plan.lots:g}" for look in sheet.of("open") if look.plan is not None]
 
 
 def legs_of(look: Look) -> set[tuple[str, float, str, float]]:
@@ -119,7 +76,7 @@ def test_the_sheet_names_what_the_walk_orders(strategy: Path, name: str, share: 
     split = (bench.market.split[session + 1 : session + 1 + LONGEST] != 1.0).any(axis=0)
     special = (bench.market.special[session + 1 : session + 1 + LONGEST] != 0.0).any(axis=0)
     day = str(bench.market.dates[session])
-    sheet = hr.today(replace(study_of(strategy), first=day), bench.market, as_of=day)
+    sheet = hr.today(study_of(strategy, first=day), bench.market, as_of=day)
     log = walk_from(bench, strategy, session, session + 1 + LONGEST)
     assert named(sheet) == ordered(log, session)
     fills = filled(log, session)
@@ -127,14 +84,6 @@ def test_the_sheet_names_what_the_walk_orders(strategy: Path, name: str, share: 
     for look in sheet.of("open"):
         if look.symbol in fills and look.symbol not in restated:
             assert legs_of(look) == fills[look.symbol]
-
-
-def study_of(strategy: Any, pricing: dict[str, Any] | None = None, **account: Any) -> hr.Study:
-    """A study of one strategy on the test's account; its market is given beside it."""
-    given = account or {"cash": 400000, "per_position": "1/8", "most_positions": 6}
-    rule = dict(strategy) if isinstance(strategy, dict) else str(strategy)
-    words = {"name": "Sheet", "market": ".", "strategy": rule, "account": given}
-    return hr.load_study(words | ({"pricing": {"volatility": pricing}} if pricing else {}))
 
 
 @settings(max_examples=40, suppress_health_check=[HealthCheck.too_slow])

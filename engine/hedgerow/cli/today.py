@@ -19,6 +19,9 @@ AsOf = Annotated[
     str | None, typer.Option("--as-of", help="The close, YYYY-MM-DD; the last of the data when not given.")
 ]
 Variant = Annotated[str | None, typer.Option("--variant", help="The variant, of a study with several.")]
+Positions = Annotated[
+    Path | None, typer.Option("--positions", help="A YAML file of the positions and the cash you hold.")
+]
 Out = Annotated[
     Path | None,
     typer.Option("--out", help="Folder for today.html, .csv and .json; an earlier sheet there is replaced."),
@@ -35,6 +38,7 @@ def today(
     market: MarketOption = None,
     as_of: AsOf = None,
     variant: Variant = None,
+    positions: Positions = None,
     out: Out = None,
     as_json: Json = False,
     extension: Extensions = None,
@@ -46,7 +50,7 @@ def today(
     from hedgerow.desk.today import sheet_of
 
     study = study_of(file, market, extension or [])
-    sheet = sheet_of(study, as_of=as_of, variant=variant)
+    sheet = sheet_of(study, as_of=as_of, variant=variant, positions=positions)
     place = None if out is None else write_sheet(sheet, out)
     if as_json:
         typer.echo(json_of(sheet), nl=False)

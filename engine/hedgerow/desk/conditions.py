@@ -20,7 +20,16 @@ from hedgerow.signals import named_signal
 from hedgerow.study.one import Bench
 from hedgerow.units import MISSING, number_text, percent_text
 
-__all__ = ["Sight", "Test", "number_of", "position_tests", "tests_of"]
+__all__ = [
+    "Sight",
+    "Test",
+    "failing",
+    "how_joined",
+    "nearest_end",
+    "number_of",
+    "position_tests",
+    "tests_of",
+]
 
 
 @dataclass(frozen=True, slots=True)
@@ -28,8 +37,8 @@ class Test:
     """One plain condition at one close.
 
     `holds`: whether it does; `value` and `bound`: the number now and the end of its range that is nearest,
-    NaN where there is none; `unit`: "fraction", "points", "sessions", "days", "day", "ratio", or "" for yes
-    or no.
+    NaN where there is none; `unit`: "fraction", "points", "sessions", "days", "day", "ratio", "price",
+    or "" for yes or no.
     """
 
     text: str
@@ -146,37 +155,54 @@ def failing(condition: Condition, sight: Sight, symbol: int) -> list[Test]:
 
 def position_tests(
     condition: Condition, figures: Floats, sight: Sight, symbol: int, start: int
-) -> tuple[list[Test], int]:
-    """Every plain part of a condition about a position, and where the next condition's operations start.
+) -> tuple[list[Test], bool]:
+    """Every plain part of a condition about a position, and whether the whole of it holds.
 
     `figures` (operations,) are what the kernel compares (`kernels.probe.trigger_figures`); the operations of
-    a condition stand in postfix order, a part about the market alone being one of them.
+    a condition stand from `start` on in postfix order, a part about the market alone being one of them.
     """
     found: list[Test] = []
-    at = start
-    for part, joins in _postfix(condition):
-        if part is not None and not about_position(part):
-            found += tests_of(part, sight, symbol)
-        elif part is not None:
+    stack: list[bool] = []
+    for at, (part, joint) in enumerate(_postfix(condition), start):
+        if joint is NotOf:
+            stack.append(not stack.pop())
+        elif joint is not None:
+            last, before = stack.pop(), stack.pop()
+            stack.append((before and last) if joint is AllOf else (before or last))
+        elif about_position(part):
             found.append(_position_test(part, float(figures[at])))
-        at += 1 if part is not None else joins
-    return found, at
+            stack.append(found[-1].holds)
+        else:
+            found += tests_of(part, sight, symbol)
+            stack.append(bool(figures[at]))
+    return found, stack[-1]
 
 
-def _postfix(condition: Condition) -> Iterator[tuple[Condition | None, int]]:
-    """The operations of a condition in the order in which `rules.program` writes them; None joins."""
+def how_joined(condition: Condition) -> str:
+    """How the plain parts of a condition make the whole; nothing where there is but one."""
+    if isinstance(condition, NotOf) and about_position(condition):
+        return f"{condition_phrase(condition)}:"
+    if not isinstance(condition, AllOf | AnyOf) or len(condition.conditions) < 2:
+        return ""
+    if any(isinstance(part, AllOf | AnyOf | NotOf) for part in condition.conditions):
+        return f"{condition_phrase(condition)}:"
+    return "all of these:" if isinstance(condition, AllOf) else "one of these is enough:"
+
+
+def _postfix(condition: Condition) -> Iterator[tuple[Condition, type | None]]:
+    """The operations of a condition as `rules.program` writes them: a part, or what joins those before."""
     if not about_position(condition):
-        yield condition, 0
+        yield condition, None
     elif isinstance(condition, NotOf):
         yield from _postfix(condition.condition)
-        yield None, 1
+        yield condition, NotOf
     elif isinstance(condition, AllOf | AnyOf):
         for number, part in enumerate(condition.conditions):
             yield from _postfix(part)
             if number > 0:
-                yield None, 1
+                yield condition, type(condition)
     else:
-        yield condition, 0
+        yield condition, None
 
 
 _ENDS: dict[str, tuple[Callable[[Any], float], str]] = {

@@ -6,6 +6,7 @@ from collections.abc import Iterable, Iterator, Sequence
 from html import escape
 
 from hedgerow.desk import phrases as say
+from hedgerow.desk.held import HOLD, HeldLine
 from hedgerow.desk.sheet import OPEN, Look, Plan, Sheet
 from hedgerow.units import number_text
 
@@ -37,7 +38,9 @@ tr:last-child td{border-bottom:0}
 .n{text-align:right;white-space:nowrap}
 dl{display:grid;grid-template-columns:11.5rem 1fr;gap:.2rem 1rem;margin:.9rem 0 0;font-size:.95rem}
 dd{margin:0}
-dd.limit{color:var(--clay)}
+.limit{color:var(--clay)}
+.calm{color:var(--leaf)}
+.legs td,.legs th{white-space:nowrap}
 dd ul,td ul{margin:0;padding:0;list-style:none}
 .cautions{font-size:.88rem;color:var(--quiet)}
 @media (max-width:40rem){dl{grid-template-columns:1fr;gap:0}dd{margin-bottom:.5rem}}
@@ -58,6 +61,9 @@ def _body(sheet: Sheet, title: str) -> Iterator[str]:
     yield tag("h1", title)
     yield f'<p class="day">The close of {escape(say.long_day(sheet.as_of))}</p>'
     yield from (tag("p", line) for line in say.head_lines(sheet))
+    if sheet.positions_known:
+        yield tag("h2", say.held_heading(sheet))
+        yield from (_held(line, sheet.fill) for line in sheet.held)
     yield tag("h2", say.opening_title(sheet))
     if sheet.of(OPEN):
         yield f'<p class="quiet">{escape(say.QUOTES_DECIDE)}</p>'
@@ -90,16 +96,30 @@ def _opening(look: Look, currency: str) -> str:
     return f"<article>{title}{_legs(plan)}<dl>{''.join(_facts(look, plan))}</dl></article>"
 
 
+def _held(line: HeldLine, fill: str) -> str:
+    verdict, since = say.held_title(line, fill)
+    title = f"<h3><b>{escape(line.symbol)}</b> at {number_text(line.close)} &nbsp; "
+    look = "calm" if line.verdict == HOLD else "limit"
+    title += f'<span class="{look}">{escape(verdict)}</span> &nbsp; '
+    title += f'<span class="quiet">{escape(since)}</span></h3>'
+    names = ("Leg", "Expiry", "Then", "Now", "Strike away", "In the money")
+    legs = _rows(names, map(say.held_leg_cells, line.legs)) if line.legs else ""
+    pairs = (tag("dt", name) + f"<dd>{lines(text.splitlines())}</dd>" for name, text in say.held_facts(line))
+    return f"<article>{title}{legs}<dl>{''.join(pairs)}</dl></article>"
+
+
 def _legs(plan: Plan) -> str:
-    if not plan.legs:
-        return ""
     names = ("Order", "Expiry", "Assumed", "Model over the stress", "In the money")
-    head = "".join(f"<th{_right(at)}>{name}</th>" for at, name in enumerate(names))
-    rows = "".join(
+    return _rows(names, map(say.leg_cells, plan.legs)) if plan.legs else ""
+
+
+def _rows(names: Sequence[str], rows: Iterable[Sequence[str]]) -> str:
+    head = "".join(f"<th{_right(at)}>{escape(name)}</th>" for at, name in enumerate(names))
+    body = "".join(
         "<tr>" + "".join(f"<td{_right(at)}>{escape(cell)}</td>" for at, cell in enumerate(cells)) + "</tr>"
-        for cells in map(say.leg_cells, plan.legs)
+        for cells in rows
     )
-    return f'<div class="wide"><table><tr>{head}</tr>{rows}</table></div>'
+    return f'<div class="wide"><table class="legs"><tr>{head}</tr>{body}</table></div>'
 
 
 def _right(column: int) -> str:

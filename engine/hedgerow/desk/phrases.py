@@ -6,10 +6,11 @@ import datetime as dt
 import math
 from collections.abc import Iterator, Sequence
 
+from hedgerow.desk.held import HOLD, HeldLeg, HeldLine, Trigger
 from hedgerow.desk.record import Record
 from hedgerow.desk.sheet import DECLINED, HOLDING, OPEN, QUIET, LegLine, Look, Plan, Sheet
 from hedgerow.rules.phrases import counted, joined
-from hedgerow.units import money_text, number_text, percent_text
+from hedgerow.units import MISSING, money_text, number_text, percent_text
 
 __all__ = [
     "QUOTES_DECIDE",
@@ -17,6 +18,10 @@ __all__ = [
     "facts",
     "grouped",
     "head_lines",
+    "held_facts",
+    "held_heading",
+    "held_leg_cells",
+    "held_title",
     "inside_text",
     "leg_cells",
     "limit_text",
@@ -198,7 +203,98 @@ def limit_text(plan: Plan) -> str:
 
 def inside_text(plan: Plan) -> str:
     """Dividends and reports that fall inside the life, nothing where there are none."""
-    parts = [f"dividend {number_text(cash)} expected {day_text(day)}" for day, cash in plan.dividends] + [
-        f"earnings report {day_text(day)}" for day in plan.reports
-    ]
-    return joined(parts)
+    return joined([*_dividends(plan.dividends), *_reports(plan.reports)])
+
+
+def _dividends(dividends: Sequence[tuple[str, float]]) -> Iterator[str]:
+    return (f"dividend {number_text(cash)} expected {day_text(day)}" for day, cash in dividends)
+
+
+def _reports(reports: Sequence[str]) -> Iterator[str]:
+    return (f"earnings report {day_text(day)}" for day in reports)
+
+
+def held_title(line: HeldLine, fill: str) -> tuple[str, str]:
+    """What the close decides of a position held, and what it is."""
+    since = f"opened {day_text(line.opened)}, {counted(line.sessions, 'session')} ago"
+    decided = line.verdict != HOLD and not line.verdict.startswith("over")
+    when = (" at this close" if fill == "close" else " at the next open") if decided else ""
+    return f"{line.verdict}{when}", since
+
+
+def held_facts(line: HeldLine) -> Iterator[tuple[str, str]]:
+    """Figures of a position held, its triggers and what falls inside its life, each with a name."""
+    if line.shares:
+        verb = "held" if line.shares > 0 else "sold short"
+        yield "Shares", f"{abs(line.shares):,.0f} {verb} at {number_text(line.stock_price)}"
+    share = f" ({percent_text(line.gain_share, 1, True)})" if math.isfinite(line.gain_share) else ""
+    leaving = f", closing all of it brings {number_text(line.leaving, 0)}"
+    yield "Gain so far", f"{number_text(line.gain, 0, True)}{share}{leaving}"
+    best, worst = (
+        "not bounded" if math.isinf(end) else number_text(end, 0, True)
+        for end in (line.best_gain, -line.worst_loss)
+    )
+    yield "At the next expiry", f"best {best}, worst {worst}, counted from the entry"
+    if line.orders:
+        yield "To do", "\n".join(line.orders)
+    for trigger in line.triggers:
+        name = trigger.name.replace("`", "")
+        yield name[0].upper() + name[1:], "\n".join(_tests(trigger))
+    for leg in line.legs:
+        risk = early_text(leg, dict(line.dividends).get(leg.due))
+        if risk:
+            yield f"Early exercise, {leg.name}", risk
+    inside = joined([*_dividends(line.dividends), *_reports(line.reports)])
+    if inside:
+        yield "Inside its life", inside
+
+
+def _tests(trigger: Trigger) -> Iterator[str]:
+    """The parts of a trigger, each with its distance; one that holds without effect says so."""
+    if trigger.joined:
+        yield trigger.joined
+    for test in trigger.tests:
+        if test.unit == "price":
+            yield "the close has reached it" if test.holds else test.text
+        elif test.unit == "":
+            yield f"{test.text}: {test.now()}"
+        elif math.isnan(test.value):
+            yield f"{test.text}: cannot be reached"
+        else:
+            gap = test.gap()
+            far = "reached" if test.holds else f"{gap} away" if gap else "not reached"
+            yield f"{test.text}: now {test.now()}, {far}"
+    if trigger.idle:
+        yield "asked for, but what the rule would move to is not listed, not allowed or brings no money"
+
+
+def early_text(leg: HeldLeg, dividend: float | None) -> str:
+    """The risk that a written leg is exercised early; nothing where there is none to speak of."""
+    value = f"time value {number_text(leg.time_value)}"
+    if leg.right == "put":
+        return f"its holder would exercise it now ({value})" if leg.exercised else ""
+    if not leg.due:
+        return ""
+    paid = "" if dividend is None else f", dividend {number_text(dividend)}"
+    odds = f"in the money by then: odds {percent_text(leg.reach, 0)}"
+    verb = "exercised" if leg.exercised else "not exercised"
+    ex_date = f"before the ex-date expected {day_text(leg.due)}"
+    return f"at this price {verb} {ex_date} ({value}{paid}); {odds}"
+
+
+def held_leg_cells(leg: HeldLeg) -> tuple[str, str, str, str, str, str]:
+    """A leg held: what it is, its expiry, its price then and now, the strike's distance, its odds."""
+    chance = MISSING if math.isnan(leg.chance) else percent_text(leg.chance, 0)
+    return (
+        f"{leg.contracts:g} {leg.right} {leg.strike:g} {leg.side}",
+        f"{day_text(leg.expiry)}, {counted(leg.days, 'day')}",
+        number_text(leg.paid),
+        number_text(leg.mid),
+        percent_text(leg.away, 1, True),
+        chance,
+    )
+
+
+def held_heading(sheet: Sheet) -> str:
+    """How many positions are held."""
+    return f"Held: {len(sheet.held)}" if sheet.held else "Held: nothing"

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import io
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterable, Iterator, Sequence
 
 from rich.console import Console, RenderableType
 from rich.padding import Padding
@@ -11,6 +11,7 @@ from rich.table import Table
 from rich.text import Text
 
 from hedgerow.desk import phrases as say
+from hedgerow.desk.held import HeldLine
 from hedgerow.desk.sheet import OPEN, Look, Plan, Sheet
 from hedgerow.units import number_text
 
@@ -66,7 +67,37 @@ def _parts(sheet: Sheet) -> Iterator[RenderableType]:
 
 
 def _held(sheet: Sheet) -> Iterator[RenderableType]:
-    return iter(())
+    if not sheet.positions_known:
+        return
+    yield Text(say.held_heading(sheet), style=HEADING)
+    yield Text()
+    for line in sheet.held:
+        verdict, since = say.held_title(line, sheet.fill)
+        title = Text.assemble((line.symbol, HEADING), (f" at {number_text(line.close)}   ", QUIET))
+        yield title.append_text(Text.assemble((verdict, HEADING), (f"   {since}", QUIET)))
+        if line.legs:
+            yield _inner(_held_legs(line))
+        yield _inner(_pairs(say.held_facts(line)))
+        yield Text()
+
+
+def _held_legs(line: HeldLine) -> Table:
+    columns = (("Leg", 24), ("Expiry", 22), ("Then", 7), ("Now", 7), ("Strike away", 11))
+    table = _table(*columns, ("In the money", 12))
+    for column in table.columns[2:]:
+        column.justify = "right"
+    for leg in line.legs:
+        table.add_row(*say.held_leg_cells(leg))
+    return table
+
+
+def _pairs(pairs: Iterable[tuple[str, str]]) -> Table:
+    table = Table(box=None, show_header=False, pad_edge=False, padding=(0, 2, 0, 0))
+    table.add_column(width=22, style=QUIET)
+    table.add_column(overflow="fold")
+    for name, text in pairs:
+        table.add_row(name, text)
+    return table
 
 
 def _opening(look: Look, currency: str) -> Iterator[RenderableType]:
@@ -77,7 +108,7 @@ def _opening(look: Look, currency: str) -> Iterator[RenderableType]:
     yield title
     if plan.legs:
         yield _inner(_legs(plan))
-    yield _inner(_facts(look, plan))
+    yield _inner(_pairs(_facts(look, plan)))
     yield Text()
 
 
@@ -92,21 +123,16 @@ def _legs(plan: Plan) -> Table:
     return table
 
 
-def _facts(look: Look, plan: Plan) -> Table:
-    table = Table(box=None, show_header=False, pad_edge=False, padding=(0, 2, 0, 0))
-    table.add_column(width=22, no_wrap=True, style=QUIET)
-    table.add_column(overflow="fold")
-    for name, text in say.facts(plan):
-        table.add_row(name, text)
-    table.add_row("Limit", say.limit_text(plan))
+def _facts(look: Look, plan: Plan) -> Iterator[tuple[str, str]]:
+    yield from say.facts(plan)
+    yield "Limit", say.limit_text(plan)
     if look.tests:
-        table.add_row("Conditions", "\n".join(test.told() for test in look.tests))
+        yield "Conditions", "\n".join(test.told() for test in look.tests)
     if look.record is not None:
-        table.add_row("Before, in this stock", say.record_text(look.record))
+        yield "Before, in this stock", say.record_text(look.record)
     inside = say.inside_text(plan)
     if inside:
-        table.add_row("Inside its life", inside)
-    return table
+        yield "Inside its life", inside
 
 
 def _list(looks: Sequence[Look]) -> Table:

@@ -11,8 +11,11 @@ from typing import Any
 
 import numpy as np
 
+from hedgerow.desk.book import Book, book_of
 from hedgerow.desk.close import Close, Evening, State, fresh, probed
 from hedgerow.desk.conditions import Sight, Test, failing, tests_of
+from hedgerow.desk.held import held_lines
+from hedgerow.desk.positions import read_positions
 from hedgerow.desk.record import Record, record_of
 from hedgerow.desk.sheet import DECLINED, HOLDING, OPEN, QUIET, Look, Plan, Sheet
 from hedgerow.desk.structure import accept_tests, plans_of
@@ -47,12 +50,14 @@ def today(
     *,
     as_of: str | None = None,
     variant: str | None = None,
+    positions: str | Path | Mapping[str, Any] | None = None,
 ) -> Sheet:
     """Return what a rule says at the close of `as_of`, an ISO date; None is the last session of the data.
 
     `source` is a study, its file or its words; with a `market` it is a strategy's file or words, or a study
-    that is then looked at on that market. Of a study with several variants `variant` names one. The account
-    is the study's, with nothing held. Raises DataError, StudyError or RulesError.
+    that is then looked at on that market. Of a study with several variants `variant` names one. `positions`
+    are those held, a file or its words; None is an account of the study's cash with nothing held. Raises
+    DataError, StudyError, RulesError or DeskError.
     """
     prices = market if isinstance(market, Market) else None
     if isinstance(source, Study):
@@ -61,7 +66,7 @@ def today(
         study = load_study(source)
     else:
         study = study_of_strategy(source, "." if prices is not None else str(market))
-    return sheet_of(study, prices, as_of=as_of, variant=variant)
+    return sheet_of(study, prices, as_of=as_of, variant=variant, positions=positions)
 
 
 def sheet_of(
@@ -70,6 +75,7 @@ def sheet_of(
     *,
     as_of: str | None = None,
     variant: str | None = None,
+    positions: str | Path | Mapping[str, Any] | None = None,
 ) -> Sheet:
     """Return the sheet of a study's variant; see `today`."""
     name, strategy = chosen(study, variant)
@@ -77,7 +83,7 @@ def sheet_of(
     bench = Bench(cut, study.surface, study.listings, study.symbols)
     costs = study.costs.costs(cut) if isinstance(study.costs, CostModel) else study.costs
     close = Close(bench, bench.program(strategy), study.account, costs)
-    return _Desk(study, name, strategy, close).sheet()
+    return _Desk(study, name, strategy, close, positions).sheet()
 
 
 def chosen(study: Study, variant: str | None) -> tuple[str, Strategy]:
@@ -131,6 +137,7 @@ class _Desk:
     variant: str
     strategy: Strategy
     close: Close
+    positions: str | Path | Mapping[str, Any] | None
 
     @property
     def market(self) -> Market:
@@ -139,6 +146,14 @@ class _Desk:
     @cached_property
     def sight(self) -> Sight:
         return Sight(self.close.bench)
+
+    @cached_property
+    def book(self) -> Book | None:
+        """What the account holds; None where nobody said."""
+        if self.positions is None:
+            return None
+        words = read_positions(self.positions, self.market, self.strategy)
+        return book_of(words, self.close, self.strategy)
 
     @cached_property
     def symbols(self) -> list[int]:
@@ -182,9 +197,10 @@ class _Desk:
 
     def sheet(self) -> Sheet:
         """The sheet."""
-        state = State(self.study.account.cash, fresh(0), {})
+        book = self.book
+        state = book.state if book is not None else State(self.study.account.cash, fresh(0), {})
         evening = self.close.evening(state)
-        equity = state.cash
+        equity = state.cash if book is None else book.equity
         market, ratios = self.market, self.ratios
         return Sheet(
             name=self.strategy.name,
@@ -199,6 +215,8 @@ class _Desk:
             ratios=(ratios[0], ratios[-1]),
             record=self.record(),
             looks=tuple(self._looks(evening, state, equity)),
+            held=() if book is None else held_lines(book, self.close, self.sight, evening),
+            positions_known=book is not None,
             notes=tuple(self._notes(evening)),
             cautions=cautions(Basis(len(self.study.variants), self._assumed())),
         )
