@@ -80,6 +80,7 @@ class Kept:
             "income": self.flows + self.outlay,
         }
         tied = float(terms["net_debit"] + terms["reserve"])
+        tied = max(tied, -float(terms["shares"] * terms["stock_price"]))
         if tied > 0.0:
             words["tied_up"] = tied
         if self.shares:

@@ -17,7 +17,7 @@ if TYPE_CHECKING:
     from hedgerow.study.compare import StudyResult
     from hedgerow.study.declare import Study
 
-__all__ = ["run", "study_of"]
+__all__ = ["run", "study_of", "tell_first_run"]
 
 File = Annotated[
     Path,
@@ -179,18 +179,24 @@ def _usual_places(name: str) -> Iterator[Path]:
     yield from (RUNS / f"{plain}-{number}" for number in itertools.count(2))
 
 
-def _walked(study: Study, workers: int) -> StudyResult:
-    """Run a study behind a progress bar."""
-    from hedgerow.cli.progress import progress
+def tell_first_run() -> None:
+    """Say to who watches that the first run takes longer."""
     from hedgerow.kernels.jit import is_compiled
-    from hedgerow.study.compare import bench_of, costed, run_study
-    from hedgerow.study.evidence_of import sessions_of_evidence
-    from hedgerow.study.tries import tried_before
 
     if not is_compiled() and sys.stderr.isatty():
         typer.echo(
             "First run on this machine: compiling, about a minute; later runs start at once.", err=True
         )
+
+
+def _walked(study: Study, workers: int) -> StudyResult:
+    """Run a study behind a progress bar."""
+    from hedgerow.cli.progress import progress
+    from hedgerow.study.compare import bench_of, costed, run_study
+    from hedgerow.study.evidence_of import sessions_of_evidence
+    from hedgerow.study.tries import tried_before
+
+    tell_first_run()
     bench, window = bench_of(study)
     whole = (window.stop - window.start) * len(study.variants) + sessions_of_evidence(
         costed(study, bench.market), window

@@ -44,12 +44,13 @@ def today(
     extension: Extensions = None,
 ) -> None:
     """Say what a rule does at one close: positions to open, why not elsewhere, what to do with those held."""
-    from hedgerow.cli.run import study_of
+    from hedgerow.cli.run import study_of, tell_first_run
     from hedgerow.desk.files import json_of, write_sheet
     from hedgerow.desk.text import print_sheet
     from hedgerow.desk.today import sheet_of
 
     study = study_of(file, market, extension or [])
+    tell_first_run()
     sheet = sheet_of(study, as_of=as_of, variant=variant, positions=positions)
     place = None if out is None else write_sheet(sheet, out)
     if as_json:

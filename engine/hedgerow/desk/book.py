@@ -125,4 +125,4 @@ def _measure(record: Any, held: HeldWords, found: Any) -> None:
     record.reserve = 0.0 if np.isnan(found.owed) or np.isinf(found.owed) else found.owed
     record.best_gain = known(held.best_gain, float(found.best))
     record.worst_loss = known(held.worst_loss, float(found.worst))
-    record.stake = known(held.tied_up, float(record.outlay + record.reserve))
+    record.stake = known(held.tied_up, float(found.stake))

@@ -75,10 +75,10 @@ def _plan(close: Close, order: Any, legs: Any, found: Any, stress: tuple[Floats,
         break_even=float(found["even"]),
         odds_of_best=float(found["odds"]),
         odds_of_gain=float(found["gain"]),
-        capital=float(found["debit"] + found["owed"]) * lots,
+        capital=float(found["stake"]) * lots,
         fees=float(found["fees"]) * lots,
         first_expiry=day_of(int(found["horizon"])),
-        limit=limit_of(strategy.accept, found, LOT_SHARES * float(market.close[-1, symbol])),
+        limit=limit_of(strategy.accept, found, LOT_SHARES * float(market.close[-1, symbol]), sign < 0.0),
         dividends=dividends_until(close, symbol, last),
         reports=reports_until(market, symbol, last),
     )
@@ -108,18 +108,19 @@ def _lines(
         )
 
 
-def limit_of(accept: Accept | None, found: Any, notional: float) -> Limit:
+def limit_of(accept: Accept | None, found: Any, notional: float, short: bool = False) -> Limit:
     """The highest net debit at which a structure still meets what the rule accepts, solved for the debit.
 
     With F what the structure is worth at worst, B at best, and O what could be owed, a bound on the worst
     loss D - F <= m (D + O) holds up to D = (F + m O) / (1 - m), one on the best gain B - D >= b (D + O) up to
-    D = (B - b O) / (1 + b), and one on their ratio B - D >= r (D - F) up to D = (B + r F) / (1 + r).
+    D = (B - b O) / (1 + b), and one on their ratio B - D >= r (D - F) up to D = (B + r F) / (1 + r). Of
+    shares sold `short` losses and gains are measured on their price where that is more than D + O.
     """
     debit, owed, credit = float(found["debit"]), float(found["owed"]), float(found["credit"])
     floor, top = debit - float(found["worst"]), debit + float(found["best"])
-    shares = debit + credit  # what the shares alone cost
+    shares, least = debit + credit, notional if short else -math.inf  # what the shares alone cost
     on_options = [] if accept is None else list(_option_ends(accept, shares, notional))
-    on_whole = [] if accept is None else list(_whole_ends(accept, floor, top, owed))
+    on_whole = [] if accept is None else list(_whole_ends(accept, floor, top, owed, least))
     if not on_options and not on_whole:
         return Limit(math.nan, math.nan, "", False)
     most, rule = min([*on_options, *on_whole])
@@ -135,14 +136,18 @@ def _option_ends(accept: Accept, shares: float, notional: float) -> Iterator[tup
         yield shares + most, f"the options cost {_said(accept.net_debit)} of the stock's price"
 
 
-def _whole_ends(accept: Accept, floor: float, top: float, owed: float) -> Iterator[tuple[float, str]]:
-    """The same for each bound on what the whole can win or lose."""
+def _whole_ends(
+    accept: Accept, floor: float, top: float, owed: float, least: float
+) -> Iterator[tuple[float, str]]:
+    """The same for each bound on what the whole can win or lose, measured on `least` or more."""
     if accept.worst_loss is not None and accept.worst_loss.high < 1.0:
         share = accept.worst_loss.high
-        yield (floor + share * owed) / (1.0 - share), f"the worst loss is {_said(accept.worst_loss)}"
+        most = max((floor + share * owed) / (1.0 - share), floor + share * least)
+        yield most, f"the worst loss is {_said(accept.worst_loss)}"
     if accept.best_gain is not None and accept.best_gain.low > 0.0 and math.isfinite(top):
         share = accept.best_gain.low
-        yield (top - share * owed) / (1.0 + share), f"the best gain is {_said(accept.best_gain)}"
+        most = min((top - share * owed) / (1.0 + share), top - share * least)
+        yield most, f"the best gain is {_said(accept.best_gain)}"
     if accept.best_over_worst is not None and math.isfinite(top):
         ratio = accept.best_over_worst.low
         bound = _said(accept.best_over_worst, False)
@@ -157,7 +162,7 @@ def accept_tests(accept: Accept | None, found: Any, notional: float) -> list[Tes
     """What the rule accepts, each part with the figure of the structure that was found."""
     if accept is None:
         return []
-    base, credit = float(found["debit"] + found["owed"]), float(found["credit"])
+    base, credit = float(found["stake"]), float(found["credit"])
     best, worst = float(found["best"]), float(found["worst"])
     tests = []
     if accept.net_credit:

@@ -21,10 +21,12 @@ from hedgerow.desk.sheet import DECLINED, HOLDING, OPEN, QUIET, Look, Plan, Shee
 from hedgerow.desk.structure import accept_tests, plans_of
 from hedgerow.errors import Fault, StudyError, nearest_word
 from hedgerow.events.kinds import reason_word
+from hedgerow.events.log import EventLog
 from hedgerow.extend.costs import CostModel
 from hedgerow.kernels import layout as at
 from hedgerow.kernels.layout import LOT_SHARES, Records
 from hedgerow.kernels.state import OPEN as HELD_SLOT
+from hedgerow.ledger import Ledger
 from hedgerow.market import load_market
 from hedgerow.market.calendar import is_session, next_session, why_closed
 from hedgerow.market.table import Market
@@ -36,8 +38,9 @@ from hedgerow.rules.schema import Strategy
 from hedgerow.study.declare import Study, load_study, study_of_strategy
 from hedgerow.study.evidence_words import Asked
 from hedgerow.study.one import Bench
+from hedgerow.study.places import told_in_place
 from hedgerow.units import money_text, percent_text
-from hedgerow.walk.run import Window
+from hedgerow.walk.run import Terms, Window, walk_program
 
 __all__ = ["chosen", "market_at", "sheet_of", "today"]
 
@@ -82,8 +85,9 @@ def sheet_of(
     cut = market_at(load_market(Path(study.market)) if market is None else market, as_of)
     bench = Bench(cut, study.surface, study.listings, study.symbols)
     costs = study.costs.costs(cut) if isinstance(study.costs, CostModel) else study.costs
-    close = Close(bench, bench.program(strategy), study.account, costs)
-    return _Desk(study, name, strategy, close, positions).sheet()
+    with told_in_place(study.path):
+        close = Close(bench, bench.program(strategy), study.account, costs)
+        return _Desk(study, name, strategy, close, positions).sheet()
 
 
 def chosen(study: Study, variant: str | None) -> tuple[str, Strategy]:
@@ -178,8 +182,11 @@ class _Desk:
         if not str(self.market.dates[0]) <= first <= last:
             return None
         window = Window.of(self.market, first, last)
-        bench, account = self.close.bench, self.study.account
-        return bench.run(self.strategy, account, self.close.costs, window, beside=False).trades
+        bench = self.close.bench
+        terms = Terms(self.study.account, self.close.costs, window, bench.listings, marks=False)
+        log = walk_program(self.market, bench.tape, self.close.program, terms)
+        kept = log.events[log.events["kind"] != at.KIND_DECLINED]  # most of a log, and no money in it
+        return Ledger.checked(EventLog(log.meta, kept, log.terms, log.days, log.marks, known=True)).trades
 
     @property
     def level(self) -> float:

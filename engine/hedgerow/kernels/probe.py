@@ -32,7 +32,15 @@ from hedgerow.kernels.layout import (
 from hedgerow.kernels.payoff import chance_beyond, first_expiry, measure
 from hedgerow.kernels.quote import at_the_money_for, next_dividend
 from hedgerow.kernels.state import WANTED, Clock, Desk, Scene, World
-from hedgerow.kernels.structure import choose_legs, judge, leg_price, lot_cost, price_leg, spread_share
+from hedgerow.kernels.structure import (
+    choose_legs,
+    judge,
+    leg_price,
+    lot_cost,
+    price_leg,
+    spread_share,
+    stake_of,
+)
 from hedgerow.kernels.triggers import _figure, days_left
 
 __all__ = ["CHOOSE", "HELD", "PRICE", "PROBED", "probe", "trigger_figures"]
@@ -52,6 +60,7 @@ PROBED = np.dtype(
         ("odds", np.float64),  # of the best gain, fraction
         ("gain", np.float64),  # chance of any gain, fraction
         ("owed", np.float64),
+        ("stake", np.float64),  # on which gains and losses are measured
         ("wide", np.float64),  # bid-ask spread over premium, fraction
         ("capital", np.float64),  # what it ties up
         ("volatility", np.float64),  # at the money to the first expiry, annual fraction
@@ -81,6 +90,7 @@ def _clear(found: Any) -> None:
     found.odds = math.nan
     found.gain = math.nan
     found.owed = math.nan
+    found.stake = math.nan
     found.wide = math.nan
     found.capital = math.nan
     found.volatility = math.nan
@@ -114,8 +124,10 @@ def _leg(desk: Desk, leg: Any, number: int, scene: Scene, clock: Clock, found: A
 
 
 @step
-def _measured(desk: Desk, position: Any, shares: float, scene: Scene, clock: Clock, found: Any) -> None:
-    """What shares and legs can come to, having paid `found.debit`."""
+def _measured(
+    desk: Desk, position: Any, shares: float, price: float, scene: Scene, clock: Clock, found: Any
+) -> None:
+    """What shares, traded at `price`, and legs can come to, having paid `found.debit`."""
     legs, count = position.legs, desk.plan.legs
     horizon, moment = first_expiry(legs, count), (scene.bar.close, scene.bar, clock, desk.smile)
     figures = measure(legs, count, shares, found.debit, horizon, moment, desk.scratch)
@@ -125,6 +137,7 @@ def _measured(desk: Desk, position: Any, shares: float, scene: Scene, clock: Clo
     found.odds = figures[3]
     found.gain = figures[4]
     found.owed = figures[5]
+    found.stake = stake_of(found.debit, found.owed, shares, price)
     found.horizon = horizon
     if horizon > clock.ordinal:
         found.volatility = at_the_money_for(scene.bar, horizon, clock, desk.smile)
@@ -147,12 +160,11 @@ def _one_lot(desk: Desk, position: Any, scene: Scene, clock: Clock, found: Any, 
                 price_leg(position.legs[k], bar.close, bar, clock, desk.smile)
     found.debit, found.credit, found.fees = lot_cost(desk, position, bar.close, clock)
     shares = plan.shares * LOT_SHARES
-    _measured(desk, position, shares, scene, clock, found)
+    _measured(desk, position, shares, bar.close, scene, clock, found)
     found.wide = spread_share(desk, position, clock)
     found.capital = _capital(desk, position, found.debit, found.owed, found.fees, bar.close)
     figures = (found.best, found.worst, found.even, found.odds, found.gain, found.owed)
-    base = found.debit + found.owed
-    found.why = judge(plan, base, found.credit, LOT_SHARES * bar.close, figures, found.wide)
+    found.why = judge(plan, found.stake, found.credit, LOT_SHARES * bar.close, figures, found.wide)
     for k in range(plan.legs):
         if position.legs[k].status == WANTED:
             _leg(desk, position.legs[k], k, scene, clock, found, False)
@@ -173,7 +185,7 @@ def _whole(desk: Desk, position: Any, scene: Scene, clock: Clock, found: Any) ->
             leaving += leg.quantity * found.fills[k]
     position.gain = gain
     found.leaving = leaving
-    _measured(desk, position, position.shares, scene, clock, found)
+    _measured(desk, position, position.shares, position.stock_price, scene, clock, found)
 
 
 @compiled

@@ -7,6 +7,9 @@ expected the next day for half a gap, then no more.
 
 from __future__ import annotations
 
+from functools import cache
+from itertools import pairwise
+from statistics import median
 from typing import NamedTuple
 
 import numpy as np
@@ -31,10 +34,15 @@ class Expected(NamedTuple):
 
 def usual_gap(paid: NDArray[np.int64]) -> int:
     """Usual calendar days between ex-dates, from the days so far in rising order; 0 when fewer than two."""
-    gaps = np.diff(paid[-(GAPS_REMEMBERED + 1) :])
-    if gaps.size == 0:
-        return 0
-    return int(GAPS_DAYS[np.argmin(np.abs(np.log(np.median(gaps) / GAPS_DAYS)))])
+    days = paid[-(GAPS_REMEMBERED + 1) :].tolist()
+    gaps = [later - day for day, later in pairwise(days)]
+    return nearest_gap(median(gaps)) if gaps else 0
+
+
+@cache
+def nearest_gap(days: float) -> int:
+    """The one of GAPS_DAYS that is nearest to a number of days, by ratio."""
+    return int(GAPS_DAYS[np.argmin(np.abs(np.log(days / GAPS_DAYS)))])
 
 
 def _expect(days: Ints, paid: Floats, splits: Floats) -> tuple[Floats, Ints, Ints]:
