@@ -115,6 +115,16 @@ def test_evidence_none_is_quick_and_leaves_none(hedgerow: Runner) -> None:
     assert {path.name for path in Path("mine").iterdir()} == set(ALWAYS)
 
 
+def test_a_short_record_has_no_verdict_and_says_so(hedgerow: Runner) -> None:
+    """Fifty sessions: one line in its place, the rest as ever."""
+    ends = "window: {from: 2015-04-01, to: 2015-06-08}\n"
+    hedgerow.write(study__yaml=WEIGHED + ends)
+    said = hedgerow("run", "study.yaml")
+    assert said.code == 0
+    assert "No verdict: the record is too short" in said.out
+    assert "evidence" not in json.loads(Path("runs/short-or-long/summary.json").read_text(encoding="utf-8"))
+
+
 def test_tries_are_counted_across_studies_of_a_folder(hedgerow: Runner) -> None:
     """The same variants again are not new; another is; the caution counts all, wherever ledgers go."""
     hedgerow.write(study__yaml=WEIGHED)

@@ -94,6 +94,17 @@ def test_rows_are_those_of_the_evidence() -> None:
             assert f"Brier score {one.odds.brier:.3f}" in words
 
 
+def test_lists_of_findings_are_shown_from_three_variants_on() -> None:
+    """Better and worse than the yardstick, as the evidence has them; not for two."""
+    heading = "Against buy and hold, at most 10% of findings false"
+    assert heading not in page(result(2))
+    found = result(3)
+    tries, words = evidence_of(found).tries, " ".join(page(found).split())
+    for word, names in (("better", tries.better), ("worse", tries.worse)):
+        assert f"{word}: {'; '.join(names) or 'none'}" in words
+    assert heading in words
+
+
 def test_what_was_left_out_is_said() -> None:
     """The notes of a study of nine variants, and of odds that are not checked."""
     found = result(9)

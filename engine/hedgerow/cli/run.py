@@ -214,6 +214,8 @@ def _show(result: StudyResult, place: Path, page: Path | None) -> None:
     study = result.study
     summaries = [one.summary for one in result.results]
     print_comparison(Comparison(summaries, study.name, study.question, cautions_of(result), result.evidence))
+    if result.evidence is None and study.evidence is not None:
+        typer.echo("\nNo verdict: the record is too short for one, or every account fell to nothing.")
     warnings = sum(finding.severity == "warning" for finding in result.market.findings)
     if warnings:
         typer.echo(f"\nThe data check has {warnings} warnings: hedgerow data check {study.market}")

@@ -99,7 +99,7 @@ def _unsure(tell: Teller, path: tuple[Step, ...]) -> str:
     )
 
 
-def _by_measure(tell: Teller, path: tuple[Step, ...]) -> str:
+def _by_measure(tell: Teller, path: tuple[Step, ...], lead: str = "") -> str:
     """By which other measures the first is better, worse, or cannot be told."""
     others = [(name, tell.at(*path, key, "verdict")) for key, name in OTHER_MEASURES]
     if tell.at(*path, "trades"):
@@ -107,7 +107,7 @@ def _by_measure(tell: Teller, path: tuple[Step, ...]) -> str:
     groups = [(word, [name for name, told in others if told == word]) for word in (BETTER, WORSE)]
     parts = [f"{word} by {listed_names(names)}" for word, names in groups if names]
     unsure = [name for name, told in others if told == CANNOT_TELL]
-    told = f"{tell.at(*path, 'first')} is {' and '.join(parts)}" if parts else ""
+    told = f"{lead}{tell.at(*path, 'first')} is {' and '.join(parts)}" if parts else ""
     rest = f"{listed_names(unsure)} cannot tell them apart" if unsure else ""
     return f"{'; '.join(part for part in (told, rest) if part)}."
 
@@ -129,23 +129,23 @@ def _yardstick(tell: Teller, path: tuple[Step, ...], first: bool) -> Iterator[st
     else:
         yield f"Against {other} it cannot be told whether {name} is better: {gap}{_needed(tell, growth)}."
     if tell.known(*growth, "low") and not _same(tell, growth):
-        yield _by_measure(tell, path)
+        yield _by_measure(tell, path, lead="Against it ")
 
 
 def _premium(tell: Teller, path: tuple[Step, ...]) -> Iterator[str]:
     if not path or not tell.at(*path, "flip_premium"):
         return
     flip = (*path, "flip_premium")
-    names = f"{tell.at(*path, 'first')} and {tell.at(*path, 'second')}"
+    first, second = tell.at(*path, "first"), tell.at(*path, "second")
     if _same(tell, (*path, "growth")):
         return
     if not tell.known(*flip, "value"):
         ends = f"{tell.flip(*flip, end='least')} to {tell.flip(*flip, end='most')}"
-        yield f"No premium tried, implied over realized volatility from {ends}, makes {names} equal."
+        yield f"No premium tried, implied over realized volatility from {ends}, makes {first} equal {second}."
         return
     yield (
         f"That rests on the premium: at {tell.flip(*flip)} of implied over realized volatility "
-        f"({_flip_interval(tell, flip)}{_at_other_skews(tell, path)}) {names} would be equal, above it "
+        f"({_flip_interval(tell, flip)}{_at_other_skews(tell, path)}) {first} would equal {second}, above it "
         f"{tell.at(*flip, 'ahead_above')} is ahead; {tell.flip(*flip, end='assumed')} is assumed."
     )
 
@@ -168,12 +168,12 @@ def _spread(tell: Teller, path: tuple[Step, ...]) -> Iterator[str]:
     flip = (*path, "flip_spread")
     if tell.known(*flip, "value"):
         yield (
-            f"By costs they would be equal at a half-spread of {tell.flip(*flip)} of the premium "
+            f"By costs the two would be equal at a half-spread of {tell.flip(*flip)} of the premium "
             f"({_flip_interval(tell, flip)}); {tell.flip(*flip, end='assumed')} is assumed."
         )
     else:
         ends = f"{tell.flip(*flip, end='least')} to {tell.flip(*flip, end='most')}"
-        yield f"No half-spread from {ends} of the premium makes them equal."
+        yield f"No half-spread from {ends} of the premium makes the two equal."
 
 
 def _timing(tell: Teller, path: tuple[Step, ...]) -> Iterator[str]:
@@ -235,14 +235,14 @@ def _many(tell: Teller) -> Iterator[str]:
         gaps = [row["growth_difference"]["value"] for row in tell.at("tries", "false_discovery", "variants")]
         if max(gaps) > 0.0:
             p_value = tell.number("tries", "superior_to_yardstick", "p_value")
-            who = f"{_named(names)} {'is' if len(names) == 1 else 'are'}" if names else "nothing here is"
-            yield f"With all of them counted {who} shown to beat {other} (p-value {p_value})."
+            who = _listed(names) if names else "nothing here"
+            yield f"Shown to beat {other} with all of these counted: {who} (p-value {p_value})."
         else:
             yield f"Nothing here grew faster than {other}."
     members = tell.at("tries", "cannot_be_told_from_best", "members")
     if tell.at("tries", "count", "in_study") > 2:
-        alone = f"With every pair counted {_named(members)} alone stands out as the best."
-        yield alone if len(members) == 1 else f"{_named(members)} cannot be told from the best."
+        alone = f"With every pair counted {members[0]} alone stands out as the best."
+        yield alone if len(members) == 1 else f"Cannot be told from the best: {_listed(members)}."
 
 
 def _bottom_line(tell: Teller, pair: tuple[Step, ...], beside: tuple[Step, ...]) -> Iterator[str]:
@@ -257,7 +257,7 @@ def _bottom_line(tell: Teller, pair: tuple[Step, ...], beside: tuple[Step, ...])
         return
     first, second = tell.at(*pair, "first"), tell.at(*pair, "second")
     if tell.at(*pair, "verdict") == CANNOT_TELL:
-        line = f"So this record does not say which of {first} and {second} to trade"
+        line = f"So this record does not say whether to trade {first} or {second}"
     else:
         line = f"So, if one of the two is traded, this record speaks for {first}"
         if second in tell.at("tries", "cannot_be_told_from_best", "members"):
@@ -322,6 +322,7 @@ def _variants(count: int) -> str:
     return "variant" if count == 1 else "variants"
 
 
-def _named(names: list[str]) -> str:
+def _listed(names: list[str]) -> str:
+    """Names set apart by semicolons, for they may hold commas and ands of their own."""
     rest = len(names) - MOST_NAMED
-    return f"{', '.join(names[:MOST_NAMED])} and {rest} others" if rest > 0 else listed_names(list(names))
+    return "; ".join([*names[:MOST_NAMED], *([f"and {rest} others"] if rest > 0 else [])])

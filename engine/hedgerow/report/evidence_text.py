@@ -19,6 +19,8 @@ __all__ = ["evidence_parts", "verdict_parts"]
 NAME_WIDTH, GAP = 35, 2
 HEADING, QUIET = "bold", "dim"
 STYLES = {BETTER: "green", CANNOT_TELL: "dim"}
+LEAST_LISTED = 3
+"""Variants from which on the lists of findings are shown."""
 MOST_PAIRS = 15
 """Comparisons shown; the rest stand in summary.json."""
 
@@ -30,6 +32,7 @@ def evidence_parts(evidence: Evidence) -> Iterator[RenderableType]:
     yield from _ahead(evidence)
     yield from _win_rates(evidence)
     yield from _odds(evidence)
+    yield from _lists(evidence)
     for note in evidence.notes:
         yield _item(f"{note}.")
     if evidence.notes:
@@ -156,6 +159,17 @@ def _odds(evidence: Evidence) -> Iterator[RenderableType]:
     yield Text("Odds of the best gain as forecasts", style=HEADING)
     for one in rows:
         yield _item(_odds_line(one))
+    yield Text()
+
+
+def _lists(evidence: Evidence) -> Iterator[RenderableType]:
+    """Who is better and who worse than the yardstick, the share of false findings held down."""
+    tries, other = evidence.tries, evidence.basis.yardstick
+    if len(tries.found) < LEAST_LISTED:
+        return
+    yield Text(f"Against {other}, at most {percent_text(tries.rate, 0)} of findings false", style=HEADING)
+    for word, names in (("better", tries.better), ("worse", tries.worse)):
+        yield _item(f"{word}: {'; '.join(names) or 'none'}")
     yield Text()
 
 
