@@ -35,6 +35,8 @@ account: {cash: 100000, per_position: 1/2}
 pricing: {volatility: {blend: [{close: 10}]}}
 strategy: rule.yaml
 grid: {legs.put.strike.from_spot: {from: -50%, to: -0.1%, step: 0.1%}}
+evidence: none
+yardstick: none
 """
 
 

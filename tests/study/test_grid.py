@@ -12,10 +12,11 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from hedgerow.errors import StudyError
+from hedgerow.study.compare import run_study
 from hedgerow.study.declare import load_study
 from hedgerow.study.grid import Axis, Grid, latin_hypercube, short_names
 from hedgerow.study.trials import trials_of
-from large_runs import large_study
+from large_runs import large_study, small_market
 
 DAYS = {"from": 1, "to": 1000, "step": 1}
 CALL, PUT = "legs.call.expiry.days", "legs.put.strike.from_spot"
@@ -107,6 +108,12 @@ def test_the_words_read_back(tmp_path: Path) -> None:
         held_out={"from": "2015-06-01"},
     )
     assert load_study(study.plain()).plain() == study.plain()
+
+
+def test_a_grid_is_not_run_as_if_it_were_one_rule(tmp_path: Path) -> None:
+    """The function for variants by name says which one is meant."""
+    with pytest.raises(StudyError, match="use run_large"):
+        run_study(large_study(tmp_path), market=small_market())
 
 
 def test_names_are_as_short_as_they_can_be_told_apart() -> None:

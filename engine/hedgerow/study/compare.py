@@ -165,6 +165,9 @@ def run_study(
     the keys (`study.tries`) of variants evaluated before on the same prices, which the evidence counts.
     Raises DataError, StudyError, RulesError or ReconcileError.
     """
+    if study.is_large:
+        found = "has a grid, walks forward or keeps a part aside, and is run in batches"
+        raise StudyError.one(study.name, "large", found, remedy="use run_large, or `hedgerow run`")
     bench, window = bench_of(study, market)
     stopped = Event()
 
