@@ -27,11 +27,12 @@ from typing import Any
 import numpy as np
 from bench_market import COLLAR, make_market
 
+from hedgerow.study.batches import terms_of
 from hedgerow.study.declare import load_study
 from hedgerow.study.large import Stage, finish, stage
 from hedgerow.study.pool import Threads, fill
 from hedgerow.study.shards import Shards
-from hedgerow.walk.run import Terms, walk_program
+from hedgerow.walk.run import walk_program
 
 SYMBOLS, SESSIONS = 12, 15 * 252
 DAYS = [7, 14, 21, 28, 35]
@@ -72,7 +73,7 @@ def filled(ready: Stage, folder: Path, workers: int) -> float:
 def bare(ready: Stage, numbers: list[int]) -> float:
     """Processor seconds a variant for the walk alone, programs made before."""
     job = ready.job
-    terms = Terms(job.account, job.costs, job.window, job.listings, marks=False)
+    terms = terms_of(job)
     taken = 0.0
     for number in numbers:
         program = job.bench.program(job.trials.strategy(number))

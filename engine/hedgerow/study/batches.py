@@ -22,7 +22,7 @@ from hedgerow.volatility.model import SurfaceModel
 from hedgerow.walk.account import Account
 from hedgerow.walk.run import Terms, Window, walk_program
 
-__all__ = ["LONGEST", "Job", "batch_size", "ready", "run_batch"]
+__all__ = ["LONGEST", "Job", "batch_size", "ready", "run_batch", "terms_of"]
 
 LONGEST = "longest_leg_days"  # calendar days: the longest life of a leg that the calendar of expiries gives
 
@@ -82,6 +82,12 @@ def ready(job: Job) -> None:
         walk_program(job.market, bench.tape, program, terms)
 
 
+def terms_of(job: Job) -> Terms:
+    """How a variant is walked: all sessions in one call, so that threads seldom meet at the lock."""
+    sessions = job.window.stop - job.window.start
+    return Terms(job.account, job.costs, job.window, job.listings, marks=False, at_once=sessions)
+
+
 def run_batch(job: Job, numbers: range, tell: Told | None = None) -> bytes:
     """Walk variants one after the other; return the bytes of their shard.
 
@@ -90,7 +96,7 @@ def run_batch(job: Job, numbers: range, tell: Told | None = None) -> bytes:
     sessions = job.window.stop - job.window.start
     figures = {name: np.empty(len(numbers)) for name in (*FIGURES, LONGEST)}
     equity = np.empty((len(numbers), sessions))
-    terms = Terms(job.account, job.costs, job.window, job.listings, marks=False)
+    terms = terms_of(job)
     for row, number in enumerate(numbers):
         try:
             program = job.bench.program(job.trials.strategy(number))

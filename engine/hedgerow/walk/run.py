@@ -71,13 +71,18 @@ class Window:
 
 @dataclass(frozen=True, slots=True)
 class Terms:
-    """What a walk is run with; `marks` keeps one mark a position and close, not only those of the last."""
+    """What a walk is run with; `marks` keeps one mark a position and close, not only those of the last.
+
+    `at_once` is how many sessions go by between two looks at the keyboard, 0 for the usual number. The log
+    does not depend on it.
+    """
 
     account: Account
     costs: Costs
     window: Window
     regime: Regime = "modern"
     marks: bool = True
+    at_once: int = 0
 
 
 def _plan(program: Program, account: Account, regime: str, marks: bool) -> Records:
@@ -199,10 +204,10 @@ def walk_program(
     world = make_world(tape, program, terms, tables)
     queue = np.zeros(world.positions.shape[0] + 1)
     _deposit(world, window.start, account.cash)
-    session = window.start
+    session, chunk = window.start, terms.at_once or CHUNK_SESSIONS
     while session < window.stop:
-        if session + CHUNK_SESSIONS < window.stop:
-            stop = session + CHUNK_SESSIONS
+        if session + chunk < window.stop:
+            stop = session + chunk
         else:  # the last session is always marked, so that what is still open has a value
             stop = window.stop - 1 if session < window.stop - 1 else window.stop
             world.plan[0].marks = int(terms.marks or stop == window.stop)
