@@ -126,7 +126,7 @@ def test_a_short_record_has_no_verdict_and_says_so(hedgerow: Runner) -> None:
 
 
 def test_tries_are_counted_across_studies_of_a_folder(hedgerow: Runner) -> None:
-    """The same variants again are not new; another is; the caution counts all, wherever ledgers go."""
+    """The same again is not new; another is; the caution counts all whose ledgers lie side by side."""
     hedgerow.write(study__yaml=WEIGHED)
     first = hedgerow("run", "study.yaml", "--out", "one")
     assert "2 variants were tried" in first.out
@@ -137,12 +137,13 @@ def test_tries_are_counted_across_studies_of_a_folder(hedgerow: Runner) -> None:
     third = hedgerow("run", "more.yaml", "--out", "three")
     assert "3 variants were tried" in third.out
     assert "2 variants in this study, 3 on these prices in all" in " ".join(third.out.split())
-    assert len(Path("runs/tries.jsonl").read_text(encoding="utf-8").splitlines()) == 3
+    assert not Path("runs").exists()
+    assert len(Path("tries.jsonl").read_text(encoding="utf-8").splitlines()) == 3
 
 
 def test_tries_that_cannot_be_recorded_are_told_and_the_run_stands(hedgerow: Runner) -> None:
-    """Where `runs` is a file: one line on the error stream, exit 0, the ledgers are there."""
-    Path("runs").write_text("a file", encoding="utf-8")
+    """Where the record is a folder: one line on the error stream, exit 0, the ledgers are there."""
+    Path("tries.jsonl").mkdir()
     said = hedgerow("run", "study.yaml", "--out", "mine", "--quiet")
     assert (said.code, said.out, len(said.told)) == (0, "mine\n", 1)
     assert "later runs count too few" in said.err

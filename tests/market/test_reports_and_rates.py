@@ -50,6 +50,34 @@ def test_reports_need_no_more_than_three_columns(tmp_path: Path) -> None:
     assert market.reports[1].ordinal == DAY + 31
 
 
+@pytest.mark.parametrize("cell", ["", "NA", "-"])
+def test_an_empty_column_of_announcements_is_three_weeks_ahead(tmp_path: Path, cell: str) -> None:
+    """Thirty reports, none with a day of announcement: each is known 21 days before it comes."""
+    days = [DAY + 91 * number for number in range(30)]
+    lines = [f"ASH,{dt.date.fromordinal(day)},1,{cell},before\n" for day in days]
+    market = with_reports(tmp_path, "".join(lines))
+    assert [report.announced_ordinal for report in market.reports] == [day - 21 for day in days]
+
+
+def test_a_wrong_announcement_among_empty_ones_has_its_line(tmp_path: Path) -> None:
+    """One day after its report, in the 31st line: the line is that of the file, not of the filled cells."""
+    days = [dt.date.fromordinal(DAY + 91 * number) for number in range(30)]
+    lines = [f"ASH,{day},1,,\n" for day in days[:-1]] + [f"ASH,{days[-1]},1,2099-01-01,\n"]
+    files = {"prices.csv": PRICES, "reports.csv": "symbol,date,eps,announced,time\n" + "".join(lines)}
+    found = told(faults_of(write(tmp_path, files)), tmp_path)
+    assert [line.split(";")[0] for line in found] == [
+        "reports.csv:31: announced on 2099-01-01, after the report"
+    ]
+
+
+def test_an_announcement_that_is_no_date_has_its_line(tmp_path: Path) -> None:
+    """`soon` in the fourth line, after two empty cells."""
+    lines = "ASH,2020-01-03,1,,\nASH,2020-04-03,1,,\nASH,2020-07-03,1,soon,\n"
+    files = {"prices.csv": PRICES, "reports.csv": "symbol,date,eps,announced,time\n" + lines}
+    found = told(faults_of(write(tmp_path, files)), tmp_path)
+    assert found[0].startswith("reports.csv:4: `soon` is not written like the others")
+
+
 def test_reports_of_symbols_without_prices_are_left_out(tmp_path: Path) -> None:
     """Told once, with the nearest symbol."""
     market = with_reports(tmp_path, "AHS,2020-01-03,1,,\n")

@@ -20,7 +20,8 @@ from hedgerow.evidence import summarise
 from hedgerow.ledger import Ledger
 from hedgerow.ledger.legs import LEG_COLUMNS
 from hedgerow.ledger.positions import TRADE_COLUMNS
-from hedgerow.report.files import RUN_FILES, check_place, harmless, write_run
+from hedgerow.report.files import RUN_FILES, STRESS_FILES, harmless, write_run
+from hedgerow.report.place import OWN_FILES, check_place, part_of, sweep
 
 RUN = {"name": "One week against three", "seed": 1, "variants": ["one week", "none"]}
 
@@ -101,14 +102,72 @@ def test_formula_names_reach_the_csv_unarmed(tmp_path: Path) -> None:
 
 def test_a_finished_run_is_not_overwritten(tmp_path: Path) -> None:
     """Compares a second run in the same place: refused, then allowed when told; nothing else is left."""
-    folder = write(tmp_path / "run")
-    (folder / "note.txt").write_text("mine")
+    folder = write(tmp_path / "run", extra={"report.html": "<p>old</p>"})
     with pytest.raises(PlaceError, match="a finished run stands there"):
         write(folder)
-    assert (folder / "note.txt").exists()
+    assert (folder / "report.html").exists()
     write(folder, replace=True)
     assert sorted(path.name for path in folder.iterdir()) == sorted(RUN_FILES)
     assert [path.name for path in tmp_path.iterdir()] == ["run"]
+
+
+@pytest.mark.parametrize("name", ["note.txt", "mine/letter.txt", "shards/note.txt", "empty/"])
+def test_a_run_with_something_of_others_in_it_is_not_replaced(tmp_path: Path, name: str) -> None:
+    """A file or folder that no run makes is named, and it and the run stay to the byte."""
+    folder = write(tmp_path / "run")
+    before = (folder / "trades.csv").read_bytes()
+    stranger = folder / name
+    (stranger if name.endswith("/") else stranger.parent).mkdir(exist_ok=True)
+    if not name.endswith("/"):
+        stranger.write_text("mine", encoding="utf-8")
+    with pytest.raises(PlaceError, match=rf"`{name.strip('/')}` beside it belongs to no run"):
+        write(folder, replace=True)
+    assert stranger.exists()
+    assert (folder / "trades.csv").read_bytes() == before
+
+
+def test_a_run_inside_a_run_is_refused(tmp_path: Path) -> None:
+    """At any depth; the folder's name is told and nothing is made."""
+    folder = write(tmp_path / "run")
+    for inside in ("sub", "deep/below/sub"):
+        with pytest.raises(PlaceError, match=r"/run is the folder of a finished run"):
+            write(folder / inside)
+    assert sorted(path.name for path in folder.iterdir()) == sorted(RUN_FILES)
+
+
+def test_the_files_of_a_run_are_its_own() -> None:
+    """Every file that is written is among those that may be deleted when a run is replaced."""
+    assert {*RUN_FILES, *STRESS_FILES} <= set(OWN_FILES)
+
+
+def test_a_place_that_was_taken_meanwhile_gives_way_to_the_next(tmp_path: Path) -> None:
+    """Runs to the same names: each lies whole in a folder of its own, whatever stood there first."""
+    names = [tmp_path / "run", tmp_path / "run-2", tmp_path / "run-3"]
+    names[1].write_text("a file", encoding="utf-8")
+    places = [write(names[0], others=iter(names[1:])) for _ in range(2)]
+    assert places == [names[0], names[2]]
+    for place in places:
+        assert sorted(path.name for path in place.iterdir()) == sorted(RUN_FILES)
+    assert len(list(tmp_path.iterdir())) == 3
+
+
+def test_what_a_killed_run_left_is_swept(tmp_path: Path) -> None:
+    """The part of a process that has ended goes with the next run; all other folders stay."""
+    ended = subprocess.Popen([sys.executable, "-c", ""])
+    ended.wait()
+    mine = part_of(tmp_path / "other")
+    dead = mine.with_name(mine.name.replace(str(os.getpid()), str(ended.pid)))
+    foreign = dead.with_name(dead.name.replace(".other.", ".foreign."))
+    elsewhere = tmp_path / f".other.another-machine.{ended.pid}.part"
+    for folder in (mine, dead, foreign, elsewhere):
+        folder.mkdir()
+        (folder / "trades.csv").write_text("x", encoding="utf-8")
+    (foreign / "letter.txt").write_text("mine", encoding="utf-8")
+    sweep(tmp_path, OWN_FILES)
+    assert {path.name for path in tmp_path.iterdir()} == {mine.name, foreign.name, elsewhere.name}
+    dead.mkdir()
+    write(tmp_path / "run")
+    assert not dead.exists()
 
 
 def test_other_places_are_refused(tmp_path: Path) -> None:
@@ -156,7 +215,7 @@ def test_a_write_that_breaks_leaves_the_place_as_it_was(
 
 def test_an_old_run_comes_back_when_the_move_fails(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     """Compares a run whose replacement could not be moved into place with itself."""
-    folder = write(tmp_path / "run", extra={"old.txt": "old"})
+    folder = write(tmp_path / "run", extra={"report.html": "old"})
     real = os.replace
 
     def stubborn(source: Path, target: Path) -> None:
@@ -167,7 +226,7 @@ def test_an_old_run_comes_back_when_the_move_fails(tmp_path: Path, monkeypatch: 
     monkeypatch.setattr("os.replace", stubborn)
     with pytest.raises(PlaceError, match="Input/output error"):
         write(folder, replace=True)
-    assert (folder / "old.txt").read_text() == "old"
+    assert (folder / "report.html").read_text() == "old"
     assert [path.name for path in tmp_path.iterdir()] == ["run"]
 
 
@@ -209,5 +268,6 @@ def test_a_real_limit_of_file_size_is_a_readable_refusal(tmp_path: Path) -> None
         check=True,
     )
     assert "refused:" in done.stdout
-    assert "could not be written" in done.stdout
+    assert "could not be written: File too large" in done.stdout
+    assert ".part" not in done.stdout
     assert list(tmp_path.iterdir()) == []

@@ -37,9 +37,9 @@ def run_large_study(study: Study, how: How, usual: Iterator[Path]) -> None:
 
     `usual` are the places to take, in order, when none is given.
     """
-    from hedgerow.cli.remember import RUNS, remember
-    from hedgerow.report.files import check_place
+    from hedgerow.cli.remember import remember
     from hedgerow.report.large_files import refuse_foreign, write_large
+    from hedgerow.report.place import check_place
     from hedgerow.study.large import finish, stage
     from hedgerow.study.places import told_in_place
 
@@ -49,11 +49,11 @@ def run_large_study(study: Study, how: How, usual: Iterator[Path]) -> None:
     ready = stage(study)
     place = how.out or _place(usual, ready.key)
     shards = _walked(ready, place, how)
-    keys, before = _tries(ready)
+    keys, before = _tries(ready, place.parent)
     with told_in_place(study.path):
         result = finish(ready, shards, len(before | set(keys.values())))
     write_large(place, result, how.replace)
-    remember(RUNS, study, ready.job.market, keys)
+    remember(place.parent, study, ready.job.market, keys)
     if how.as_json:
         _tell_json(result, place)
     elif how.quiet:
@@ -73,12 +73,11 @@ def _place(usual: Iterator[Path], key: str) -> Path:
     )
 
 
-def _tries(ready: Stage) -> tuple[dict[str, str], frozenset[str]]:
-    """The keys of the study's variants, and of all that were tried before on the same prices."""
-    from hedgerow.cli.remember import RUNS
+def _tries(ready: Stage, beside: Path) -> tuple[dict[str, str], frozenset[str]]:
+    """The keys of the study's variants, and of all that were tried before, beside it, on the same prices."""
     from hedgerow.study.tries import keys_of, tried_before
 
-    return keys_of(ready.study), tried_before(RUNS, ready.job.market)
+    return keys_of(ready.study), tried_before(beside, ready.job.market)
 
 
 def _walked(ready: Stage, place: Path, how: How) -> Shards:

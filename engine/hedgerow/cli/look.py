@@ -41,7 +41,7 @@ def look(folder: Folder, look_again: Again = False) -> None:
 def _finished(folder: Path) -> tuple[Stage, int]:
     """The study of a finished folder made ready, and the number of its best variant. Raises InputError."""
     from hedgerow.errors import DataError, PlaceError, StudyError
-    from hedgerow.report.files import FINISHED
+    from hedgerow.report.place import FINISHED
     from hedgerow.rules.document import tree_of_file
     from hedgerow.study.declare import load_study
     from hedgerow.study.large import stage

@@ -15,7 +15,7 @@ if TYPE_CHECKING:
 __all__ = ["RUNS", "remember"]
 
 RUNS = Path("runs")
-"""Where runs go when no folder is named, and where the tries on the same prices are counted."""
+"""Where runs go when no folder is named; the tries on the same prices are counted beside the runs."""
 
 
 def remember(folder: Path, study: Study, market: Market, keys: Mapping[str, str] | None = None) -> None:

@@ -81,7 +81,8 @@ def run(
     """Replay a study and compare its variants; leave a folder of ledgers."""
     from hedgerow.cli.report import reported
     from hedgerow.report.background import background_of, cautions_of
-    from hedgerow.report.files import check_place, write_run
+    from hedgerow.report.files import write_run
+    from hedgerow.report.place import check_place
 
     as_json, quiet = form is True, form is False
     study = study_of(file, market, extension or [])
@@ -91,12 +92,13 @@ def run(
         run_large_study(study, How(out, replace, as_json, quiet, workers), _usual_places(study.name))
         return
     _no_cluster(workers)
-    place = out or next(place for place in _usual_places(study.name) if not place.exists())
+    usual = (place for place in _usual_places(study.name) if not place.exists())
+    place = out or next(usual)
     check_place(place, replace)
-    result = _walked(study, workers)
+    result = _walked(study, workers, place.parent)
     ledgers = [one.ledger for one in result.results]
     summaries = [one.summary for one in result.results]
-    write_run(
+    place = write_run(
         place,
         ledgers,
         summaries,
@@ -104,9 +106,10 @@ def run(
         replace=replace,
         evidence=result.evidence,
         extra=background_of(result),
+        others=None if out else usual,
     )
     page = None if no_report else reported(place)
-    remember(RUNS, result.study, result.market)
+    remember(place.parent, result.study, result.market)
     _hint(summaries)
     if as_json:
         told: dict[str, Any] = {"variants": {one.variant: one.as_dict() for one in summaries}}
@@ -189,8 +192,8 @@ def tell_first_run() -> None:
         )
 
 
-def _walked(study: Study, workers: int) -> StudyResult:
-    """Run a study behind a progress bar."""
+def _walked(study: Study, workers: int, beside: Path) -> StudyResult:
+    """Run a study behind a progress bar; `beside` is the folder in which its tries are counted."""
     from hedgerow.cli.progress import progress
     from hedgerow.study.compare import bench_of, costed, run_study
     from hedgerow.study.evidence_of import sessions_of_evidence
@@ -201,7 +204,7 @@ def _walked(study: Study, workers: int) -> StudyResult:
     whole = (window.stop - window.start) * len(study.variants) + sessions_of_evidence(
         costed(study, bench.market), window
     )
-    before = tried_before(RUNS, bench.market)
+    before = tried_before(beside, bench.market)
     with progress("Replaying", whole) as counter:
         return run_study(study, market=bench.market, workers=workers, progress=counter.advance, tried=before)
 

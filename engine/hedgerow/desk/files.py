@@ -10,7 +10,8 @@ from pathlib import Path
 from hedgerow.desk.page import page_of
 from hedgerow.desk.sheet import Sheet
 from hedgerow.errors import PlaceError
-from hedgerow.report.files import harmless, move_in, unwritable
+from hedgerow.report.files import harmless
+from hedgerow.report.place import move_in, unwritable
 
 __all__ = ["SHEET_FILES", "json_of", "write_sheet"]
 

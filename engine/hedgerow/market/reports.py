@@ -51,8 +51,14 @@ def _announced(
     if "announced" not in roles:
         return usual, []
     cells = source.cells(roles["announced"])
-    days, faults = to_ordinals(cells, words.dates)
-    faults = [fault for fault in faults if fault.found != "the date is missing"]
+    known = np.flatnonzero(~cells.blank())
+    days = np.full(len(ordinal), NO_DATE, dtype=np.int64)
+    faults: list[Fault] = []
+    if len(known):
+        written = Cells(
+            cells.column.take(known), cells.where, cells.name, lambda rows: cells.lines_of(known[rows])
+        )
+        days[known], faults = to_ordinals(written, words.dates)
     late = (days > ordinal) & (ordinal != NO_DATE)
     told = ("a date is known no later than the report itself", "correct the day, or leave it empty")
     faults += cells.faults(

@@ -2,11 +2,9 @@
 
 from __future__ import annotations
 
-import errno
 import json
-import os
 import shutil
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from pathlib import Path
 from typing import Any
 
@@ -20,22 +18,20 @@ from hedgerow.events.store import write_logs
 from hedgerow.evidence.figures import Summary
 from hedgerow.evidence.findings import Evidence
 from hedgerow.ledger import Ledger
+from hedgerow.report.place import (
+    FINISHED,
+    OWN_FILES,
+    check_place,
+    missing_parents,
+    move_in,
+    part_of,
+    remove_empty,
+    sweep,
+    take_first,
+    unwritable,
+)
 
-__all__ = [
-    "FINISHED",
-    "RUN_FILES",
-    "STRESS_FILES",
-    "check_place",
-    "fill_folder",
-    "harmless",
-    "move_in",
-    "unwritable",
-    "write_frame",
-    "write_run",
-]
-
-FINISHED = "run.yaml"
-"""The file that a finished run folder has; it is written last."""
+__all__ = ["FINISHED", "RUN_FILES", "STRESS_FILES", "fill_folder", "harmless", "write_frame", "write_run"]
 
 RUN_FILES = (
     "events.parquet",
@@ -53,27 +49,6 @@ STRESS_FILES = ("stress.parquet", "stress.csv")
 FORMULA_STARTS = ("=", "+", "-", "@", "\t", "\r")
 
 
-def check_place(folder: str | Path, replace: bool = False) -> Path:
-    """Return the folder as a path when a run may be written there: it is new, empty, or a run to be replaced.
-
-    Raises PlaceError when it is a file, holds other files or a finished run without `replace` being given, or
-    lies where nothing can be written.
-    """
-    place = Path(folder)
-    try:
-        if place.exists() and not place.is_dir():
-            raise _refused(place, "a file of this name stands there, and a folder is to be made")
-        if place.is_dir() and any(place.iterdir()):
-            if not (place / FINISHED).is_file():
-                raise _refused(place, "this folder holds other files, which are not those of a run")
-            if not replace:
-                raise _refused(place, "a finished run stands there and was not to be replaced")
-        _check_parent(place)
-    except OSError as error:
-        raise unwritable(place, error) from error
-    return place
-
-
 def write_run(
     folder: str | Path,
     ledgers: Sequence[Ledger],
@@ -83,33 +58,34 @@ def write_run(
     replace: bool = False,
     extra: Mapping[str, str | bytes] | None = None,
     evidence: Evidence | None = None,
+    others: Iterable[Path] | None = None,
 ) -> Path:
     """Write a run folder (RUN_FILES, with a stress STRESS_FILES) in one step and return it.
 
     ledgers and summaries: one a variant, in the same order; every frame carries a `variant` column. run:
     what is needed to repeat the run, plain values. extra: further files by name. evidence: goes into
-    summary.json and the files of the stress. Raises PlaceError when the
-    place is taken or cannot be written; then nothing is left behind, and a run that stood there still does.
+    summary.json and the files of the stress. others: further places, taken in order when the first has
+    been taken meanwhile. Raises PlaceError when the place is taken or cannot be written; then nothing is left
+    behind, and a run that stood there still does.
     """
-    place = check_place(folder, replace)
-    part = place.with_name(f".{place.name}.{os.getpid()}.part")
-    made = _missing_parents(place)
-    done = False
+    place = check_place(folder, replace, others is not None)
+    part, made, done = part_of(place), missing_parents(place), False
     try:
+        sweep(place.parent, OWN_FILES)
         part.mkdir(parents=True)
         fill_folder(part, ledgers, summaries, extra or {})
         _weigh(part, summaries, evidence)
         (part / FINISHED).write_text(
             yaml.safe_dump(dict(run), sort_keys=False, allow_unicode=True), encoding="utf-8"
         )
-        move_in(part, place)
+        place = move_in(part, place) if others is None else take_first(part, place, others)
         done = True
-    except OSError as error:
+    except (OSError, PlaceError) as error:
         raise unwritable(place, error) from error
     finally:
         shutil.rmtree(part, ignore_errors=True)
         for parent in () if done else made:
-            _remove_empty(parent)
+            remove_empty(parent)
     return place
 
 
@@ -154,56 +130,3 @@ def _weigh(part: Path, summaries: Sequence[Summary], evidence: Evidence | None) 
 def write_frame(frame: pd.DataFrame, path: Path) -> None:
     """Write a frame as Parquet."""
     pq.write_table(pa.Table.from_pandas(frame, preserve_index=False), path, compression="zstd")
-
-
-def move_in(part: Path, place: Path) -> None:
-    """Put the finished folder in its place; an old run is set aside first and comes back when that fails."""
-    if not place.exists():
-        os.replace(part, place)
-        return
-    aside = place.with_name(f".{place.name}.{os.getpid()}.old")
-    os.replace(place, aside)
-    try:
-        os.replace(part, place)
-    finally:
-        if not place.exists():
-            os.replace(aside, place)
-    shutil.rmtree(aside, ignore_errors=True)
-
-
-def _check_parent(place: Path) -> None:
-    """Raise OSError when the nearest folder above a place is a file, or nothing can be written in it."""
-    above = next(parent for parent in place.absolute().parents if os.path.lexists(parent))
-    if not above.is_dir():
-        raise NotADirectoryError(errno.ENOTDIR, os.strerror(errno.ENOTDIR), str(above))
-    if not os.access(above, os.W_OK | os.X_OK):
-        raise PermissionError(errno.EACCES, os.strerror(errno.EACCES), str(above))
-
-
-def _missing_parents(place: Path) -> list[Path]:
-    return [parent for parent in place.parents if not parent.exists()]
-
-
-def _remove_empty(folder: Path) -> None:
-    if folder.is_dir() and not any(folder.iterdir()):
-        folder.rmdir()
-
-
-def _refused(place: Path, why: str) -> PlaceError:
-    return PlaceError.one(
-        str(place),
-        "place taken",
-        f"the run is not written here: {why}",
-        "expected a new or an empty folder",
-        "name another with --out, or replace a finished run with --replace",
-    )
-
-
-def unwritable(place: Path, error: OSError) -> PlaceError:
-    """The error of a folder that cannot be written."""
-    return PlaceError.one(
-        str(place),
-        "cannot write",
-        f"the run could not be written: {error.strerror or error}",
-        remedy="nothing was left behind",
-    )

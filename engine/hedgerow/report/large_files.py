@@ -12,15 +12,8 @@ import yaml
 from hedgerow.errors import PlaceError
 from hedgerow.evidence.described import described
 from hedgerow.evidence.figures import Curve, Figure, figures_of
-from hedgerow.report.files import (
-    FINISHED,
-    check_place,
-    fill_folder,
-    harmless,
-    move_in,
-    unwritable,
-    write_frame,
-)
+from hedgerow.report.files import fill_folder, harmless, write_frame
+from hedgerow.report.place import FINISHED, check_place, move_in, unwritable
 from hedgerow.study.large import Findings, LargeResult
 from hedgerow.study.shards import MANIFEST
 from hedgerow.study.walk_forward import Forward
@@ -73,7 +66,7 @@ def write_large(place: Path, result: LargeResult, replace: bool = False) -> Path
         record = yaml.safe_dump(result.record(), sort_keys=False, allow_unicode=True)
         (work / FINISHED).write_text(record, encoding="utf-8")
         move_in(work, place)
-    except OSError as error:
+    except (OSError, PlaceError) as error:
         raise unwritable(place, error) from error
     return place
 
