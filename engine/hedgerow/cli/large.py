@@ -111,7 +111,8 @@ def _pool(how: How) -> Iterator[Pool]:
     if isinstance(how.workers, int):
         if not is_compiled() and sys.stderr.isatty():
             typer.echo(
-                "First run on this machine: compiling, about a minute; later runs start at once.", err=True
+                "First run on this machine: compiling, about half a minute; later runs start at once.",
+                err=True,
             )
         yield Threads(how.workers)
         return

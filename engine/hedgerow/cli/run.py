@@ -188,7 +188,7 @@ def tell_first_run() -> None:
 
     if not is_compiled() and sys.stderr.isatty():
         typer.echo(
-            "First run on this machine: compiling, about a minute; later runs start at once.", err=True
+            "First run on this machine: compiling, about half a minute; later runs start at once.", err=True
         )
 
 

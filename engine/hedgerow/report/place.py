@@ -156,6 +156,7 @@ def take_first(part: Path, place: Path, others: Iterable[Path]) -> Path:
     """Put the finished folder in the first place that nothing stands in; return it.
 
     A folder cannot be renamed onto one that holds something, so that two runs never take the same place.
+    Raises OSError when it cannot be moved, PlaceError when all places are taken.
     """
     for one in chain((place,), others):
         try:
