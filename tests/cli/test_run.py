@@ -240,8 +240,28 @@ def test_warnings_of_the_data_are_counted(hedgerow: Runner) -> None:
     hedgerow.write(prices__csv="\n".join(rows) + "\n")
     said = hedgerow("run", "study.yaml")
     assert said.code == 0
-    assert "warning" in said.out
-    assert "hedgerow data check prices.csv" in said.out
+    assert "The data check has 1 warning: hedgerow data check prices.csv" in said.out
+
+
+def test_a_place_with_a_space_is_quoted_in_a_command(hedgerow: Runner) -> None:
+    """So that the command shown can be given as it stands."""
+    rows = Path("prices.csv").read_text(encoding="utf-8").splitlines()
+    cells = rows[40].split(",")
+    rows[40] = ",".join([*cells[:3], cells[4], cells[3], *cells[5:]])
+    Path("my prices.csv").write_text("\n".join(rows) + "\n", encoding="utf-8")
+    study = Path("study.yaml").read_text(encoding="utf-8").replace("prices.csv", "my prices.csv")
+    hedgerow.write(study__yaml=study)
+    assert "hedgerow data check 'my prices.csv'" in hedgerow("run", "study.yaml").out
+
+
+@pytest.mark.parametrize("name", ["", " "])
+def test_an_empty_name_is_no_folder(hedgerow: Runner, name: str) -> None:
+    """It would mean the current folder: refused before anything is run or written."""
+    before = hedgerow.files()
+    said = hedgerow("run", "study.yaml", "--out", name)
+    assert said.code == 2
+    assert "an empty name is no folder" in " ".join(said.err.replace("│", " ").split())
+    assert hedgerow.files() == before
 
 
 def test_the_version_and_no_words() -> None:

@@ -257,3 +257,25 @@ def test_a_table_where_nothing_can_be_used(tmp_path: Path) -> None:
     assert told(faults_of(tmp_path), tmp_path)[0].endswith(
         "no row can be used; 1 row with a price of 0 or less, dropped; check the columns of prices"
     )
+
+
+def test_prices_that_no_share_has_had_are_refused(tmp_path: Path) -> None:
+    """Their line, column and the limit are told; a price at the limit is read (700,000 has been traded)."""
+    row = "ASH,2020-01-06,10,1e300,9,10.5,1\n"
+    found = told(faults_of(write(tmp_path, {"prices.csv": PRICES + row})), tmp_path)
+    assert found == [
+        "prices.csv:4: the price 1e300 stands in the column `high`; at most 10,000,000 a share is read; "
+        "correct the price, or take the row away"
+    ]
+    rows = PRICES + "ASH,2020-01-06,10,1e7,9,10.5,1\n"
+    assert load_market(write(tmp_path, {"prices.csv": rows})).high[-1, 0] == 1e7
+
+
+@pytest.mark.parametrize("sign", ["\x1b[31m", "\u202e", "\x9b"])
+def test_symbols_that_would_steer_a_terminal_are_refused(tmp_path: Path, sign: str) -> None:
+    """Escape, reversal of writing, a control sequence: told by line, and never sent raw."""
+    row = f"A{sign}SH,2020-01-06,10,11,9,10.5,1\n"
+    found = told(faults_of(write(tmp_path, {"prices.csv": PRICES + row})), tmp_path)
+    assert len(found) == 1
+    assert sign not in found[0]
+    assert "a symbol is written in letters, digits and signs that show" in found[0]

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import itertools
 import json
+import shlex
 import sys
 from collections.abc import Iterator
 from pathlib import Path
@@ -32,7 +33,21 @@ Extensions = Annotated[
     list[str] | None,
     typer.Option("--extension", help="A file of your own signals or costs, for a strategy file."),
 ]
-Out = Annotated[Path | None, typer.Option("--out", help="Folder for the ledgers; runs/NAME when not given.")]
+
+
+def _folder(text: str) -> Path:
+    """The folder that was named. Raises BadParameter for an empty name, which would be the current one."""
+    if not text.strip():
+        raise typer.BadParameter("an empty name is no folder; name one, or leave --out away")
+    return Path(text)
+
+
+Out = Annotated[
+    Any,
+    typer.Option(
+        "--out", parser=_folder, metavar="FOLDER", help="Folder for the ledgers; runs/NAME when not given."
+    ),
+]
 Replace = Annotated[bool, typer.Option("--replace", help="Overwrite a finished run in that folder.")]
 Form = Annotated[
     bool | None,
@@ -221,7 +236,8 @@ def _show(result: StudyResult, place: Path, page: Path | None) -> None:
         typer.echo("\nNo verdict: the record is too short for one, or every account fell to nothing.")
     warnings = sum(finding.severity == "warning" for finding in result.market.findings)
     if warnings:
-        typer.echo(f"\nThe data check has {warnings} warnings: hedgerow data check {study.market}")
+        several = "1 warning" if warnings == 1 else f"{warnings:,} warnings"
+        typer.echo(f"\nThe data check has {several}: hedgerow data check {shlex.quote(str(study.market))}")
     typer.echo(f"\nEvery trade and every cent: {place}")
     if page is not None:
         typer.echo(f"The report: {page}")

@@ -20,6 +20,8 @@ from hedgerow.market.table import Finding
 
 LONG_FILES = ("prices", "data", "bars", "quotes", "history", "")
 _HIGHEST_IMPLIED = 3.0
+HIGHEST_PRICE = 10_000_000.0  # a share; the dearest ever traded stood below a tenth of it (from memory)
+PRICE_ROLES = ("open", "high", "low", "close", "adjusted_close")
 Mask = NDArray[np.bool_]
 
 
@@ -91,12 +93,23 @@ def _read_source(
         if role not in ("symbol", "date"):
             values[role], wrong = to_floats(source.cells(column), words.decimal_comma)
             faults += wrong
+            if role in PRICE_ROLES:
+                faults += _absurd(source.cells(column), values[role])
     faults += _percent(values.get("implied"), source.where)
     count = len(ordinal)
     bars = Bars((), symbol, ordinal, values, np.full(count, number), np.arange(count))
     whole = (symbol >= 0) & (ordinal != NO_DATE)
     others = [name for name in source.names if name not in roles.values() and name.strip()]
     return (names, bars if whole.all() else bars.take(whole)), faults, others
+
+
+def _absurd(cells: Cells, values: Floats) -> list[Fault]:
+    """Return the faults of prices that no share has ever had."""
+    told = (f"at most {HIGHEST_PRICE:,.0f} a share is read", "correct the price, or take the row away")
+    high = np.isfinite(values) & (values > HIGHEST_PRICE)
+    return cells.faults(
+        high, "price-too-high", lambda cell: (f"the price {cell} stands in the column `{cells.name}`", *told)
+    )
 
 
 def _percent(implied: Floats | None, where: str) -> list[Fault]:
@@ -139,6 +152,11 @@ def _codes(cells: Cells) -> tuple[list[str], Ints, list[Fault]]:
     lookup = np.array([place.get(name, -1) for name in raw] + [-1], dtype=np.int64)
     codes = lookup[pc.fill_null(encoded.indices.cast(pa.int64()), -1).to_numpy()]
     faults = cells.faults(codes < 0, "no-symbol", lambda _: ("the symbol is empty", "every row has one", ""))
+    odd = np.array([not name.isprintable() for name in names] + [False], dtype=np.bool_)
+    told = ("a symbol is written in letters, digits and signs that show", "take what does not show away")
+    faults += cells.faults(
+        odd[codes], "symbol-unprintable", lambda cell: (f"the symbol is {cell.strip()!a}", *told)
+    )
     return names, codes, faults
 
 

@@ -54,7 +54,9 @@ def _survivors(basis: Basis) -> str:
             "Survivors only: no history in this universe ends early. Companies that failed may be missing, "
             "and that flatters every rule that holds shares."
         )
-    known = "" if basis.histories_ended is None else f" ({basis.histories_ended} histories end early here)"
+    count = basis.histories_ended
+    ended = "1 history ends" if count == 1 else f"{count:,} histories end" if count else ""
+    known = f" ({ended} early here)" if ended else ""
     return f"Survivorship: a universe chosen today leaves out companies that failed since{known}."
 
 
