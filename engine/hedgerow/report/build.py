@@ -31,6 +31,7 @@ SCRIPTS = (
     "results.js",
     "evidence.js",
     "ledger.js",
+    "story.js",
     "picture.js",
     "main.js",
 )

@@ -22,7 +22,7 @@ __all__ = ["FAN_LEVELS", "differences_of", "fans_of", "resampling_of"]
 
 FAN_LEVELS = (0.05, 0.25, 0.5, 0.75, 0.95)
 MOST_FANS = 12
-MOST_DIFFERENCES = 12
+MOST_DIFFERENCES = 3
 
 
 def resampling_of(evidence: Mapping[str, Any]) -> Resampling:
@@ -32,7 +32,8 @@ def resampling_of(evidence: Mapping[str, Any]) -> Resampling:
 
 
 def differences_of(folder: RunFolder) -> list[dict[str, Any]]:
-    """Return the spread of growth a year, first less second, of the headline pair and of those beside it.
+    """Return the spread of growth a year, first less second, of the headline pair and of its two variants
+    against the yardstick; without a pair, of every variant against it.
 
     Each: `first`, `second`, and the column `draws` of fractions a year. Empty without evidence.
     """
@@ -41,7 +42,9 @@ def differences_of(folder: RunFolder) -> list[dict[str, Any]]:
         return []
     head = evidence["headline_pair"]
     pairs = [evidence["pairs"][head]] if head is not None else []
-    chosen = [one for one in (*pairs, *evidence["against_yardstick"]) if one["block_sessions"] > 0]
+    told = {pair[side] for pair in pairs for side in ("first", "second")}
+    beside = [one for one in evidence["against_yardstick"] if not told or one["first"] in told]
+    chosen = [one for one in (*pairs, *beside) if one["block_sessions"] > 0]
     return [_difference(folder, one) for one in chosen[:MOST_DIFFERENCES]]
 
 

@@ -1,6 +1,6 @@
-"""Every trade as columns of the page: figures, legs, values by day, and what happened as text.
+"""Every trade as columns of the page: figures, legs, values by day, and what happened.
 
-Positions are counted through all variants, in the order of the study and then of the terms. Text and values
+Positions are counted through all variants, in the order of the study and then of the terms. Events and values
 by day lie in chunks of CHUNK positions, of which a page unpacks one when a trade is opened.
 """
 
@@ -13,13 +13,14 @@ import numpy as np
 import pandas as pd
 
 from hedgerow.events.log import EventLog
-from hedgerow.events.narrate import sentence
-from hedgerow.kernels.layout import Records
+from hedgerow.events.kinds import reason_words
+from hedgerow.kernels import layout as at
+from hedgerow.kernels.layout import Floats, Records
 from hedgerow.ledger import Ledger
 from hedgerow.ledger.marks import LEG_FIELDS, rows_of
 from hedgerow.ledger.positions import TRADE_COLUMNS
 from hedgerow.report.curves import days_since_1970
-from hedgerow.report.pack import column, deflated, words
+from hedgerow.report.pack import column, words
 
 __all__ = ["CHUNK", "legs_of", "pictures_of", "trades_of"]
 
@@ -40,7 +41,10 @@ QUANTA = {
     "odds_of_best": 1e-5,
     "return_on_debit": 1e-6,
 }
-CENT = 0.01
+CENT, PRICE = 0.01, 1e-4
+SAME_PRICE = 0.00005
+"""Distance below which a fill counts as at the middle (`events.narrate`)."""
+ORDINAL_OF_1970 = 719163
 DETAIL_DIGITS = 1e-4
 """Part of what a position ties up that its values by day are rounded to."""
 
@@ -81,61 +85,92 @@ def legs_of(ledgers: Sequence[Ledger]) -> dict[str, Any]:
 
 
 def pictures_of(ledgers: Sequence[Ledger]) -> dict[str, Any]:
-    """Return the chunks of pictures: {size, legs, chunks}, the legs' names by variant.
+    """Return {size, variants, first_chunk, chunks}: what pictures of trades and stories are made from.
 
-    A chunk holds `count`, marks of each position, columns of the marks (`session` counted within the run,
-    `spot`, `gain`, one of each leg), and `text`: positions apart by form feeds, events by line feeds.
+    variants: legs as [name, right] and the words of reasons, by variant. A chunk holds `marks` and `events`,
+    counts by position; columns of the marks (`session` counted within the run, `spot`, `gain`, one of each
+    leg) and of the events, of which `pages/story.js` makes the sentences of `events.narrate`.
     """
-    chunks = [one for ledger in ledgers for one in _chunks(ledger)]
-    legs = {ledger.log.meta.variant: list(ledger.log.meta.leg_names) for ledger in ledgers}
-    starts, first = [], 0
+    variants = {
+        ledger.log.meta.variant: {
+            "legs": [[leg.name, leg.right] for leg in ledger.log.meta.legs],
+            "reasons": list(reason_words(ledger.log.meta.exits)),
+        }
+        for ledger in ledgers
+    }
+    chunks: list[dict[str, Any]] = []
+    starts = []
     for ledger in ledgers:
-        starts.append(first)
-        first += -(-ledger.log.terms.size // CHUNK)
-    return {"size": CHUNK, "legs": legs, "first_chunk": starts, "chunks": chunks}
+        starts.append(len(chunks))
+        chunks += _chunks(ledger.log)
+    return {"size": CHUNK, "variants": variants, "first_chunk": starts, "chunks": chunks}
 
 
-def _chunks(ledger: Ledger) -> Iterator[dict[str, Any]]:
+def _chunks(log: EventLog) -> Iterator[dict[str, Any]]:
     """Yield the chunks of one variant's positions, in the order of the terms."""
-    log = ledger.log
     marks, mark_edges = _grouped(log, log.marks)
-    mine = np.flatnonzero(log.events["position"] >= 0)
-    owner = rows_of(log.terms["position"], log.events["position"][mine])
-    order = np.argsort(owner, kind="stable")
-    numbers = mine[order]
-    event_edges = np.searchsorted(owner[order], np.arange(log.terms.size + 1))
+    events, event_edges = _grouped(log, log.events[log.events["position"] >= 0])
     size = np.abs(log.terms["net_debit"]) + log.terms["reserve"]
     for start in range(0, log.terms.size, CHUNK):
         stop = min(start + CHUNK, log.terms.size)
-        stories = (
-            "\n".join(sentence(log, int(row)) for row in numbers[event_edges[at] : event_edges[at + 1]])
-            for at in range(start, stop)
-        )
-        text = "\f".join(stories)
-        chosen = marks[mark_edges[start] : mark_edges[stop]]
         step = 10.0 ** np.floor(np.log10(max(float(np.median(size[start:stop])), 1.0) * DETAIL_DIGITS))
         yield {
-            "count": column(np.diff(mark_edges[start : stop + 1])),
-            "marks": _mark_columns(log, chosen, float(step)),
-            "text": deflated(text.encode("utf-8")),
+            "marks": column(np.diff(mark_edges[start : stop + 1])),
+            "events": column(np.diff(event_edges[start : stop + 1])),
+            "mark": _mark_columns(log, marks[mark_edges[start] : mark_edges[stop]], float(step)),
+            "event": _event_columns(log, events[event_edges[start] : event_edges[stop]]),
         }
 
 
-def _grouped(log: EventLog, marks: Records) -> tuple[Records, np.ndarray]:
-    """Return the marks by position, and where each position's begin (P + 1,)."""
-    owner = rows_of(log.terms["position"], marks["position"])
+def _grouped(log: EventLog, records: Records) -> tuple[Records, np.ndarray]:
+    """Return records by position, in their order, and where each position's begin (P + 1,)."""
+    owner = rows_of(log.terms["position"], records["position"])
     order = np.argsort(owner, kind="stable")
-    return marks[order], np.searchsorted(owner[order], np.arange(log.terms.size + 1))
+    return records[order], np.searchsorted(owner[order], np.arange(log.terms.size + 1))
 
 
 def _mark_columns(log: EventLog, marks: Records, step: float) -> dict[str, Any]:
-    first = int(log.days["session"][0]) if log.days.size else 0
     columns = {
-        "session": column(marks["session"] - first),
-        "spot": column(marks["spot"], 0.01),
-        "shares": column(marks["shares"], 0.01),
+        "session": column(marks["session"] - _first(log)),
+        "spot": column(marks["spot"], CENT),
         "gain": column(marks["gain"], step),
     }
     for name in LEG_FIELDS[: len(log.meta.legs)]:
         columns[name] = column(marks[name], step)
     return columns
+
+
+def _event_columns(log: EventLog, events: Records) -> dict[str, Any]:
+    """Columns of events, prices as they are told.
+
+    `mid` is unknown where it is told to be the price; `odd` are the cents by which cash differs from
+    -(quantity x price) - fee.
+    """
+    price, fee, quantity = _told(events["price"], 4), _told(events["fee"], 2), _told(events["quantity"], 2)
+    expected = np.floor((-quantity * price - fee) * 100.0 + 0.5)
+    ends = np.isin(events["kind"], (at.KIND_EXPIRED, at.KIND_EXERCISED, at.KIND_ASSIGNED))
+    same = np.abs(events["price"] - events["mid"]) < SAME_PRICE
+    return {
+        "session": column(events["session"] - _first(log)),
+        "kind": column(events["kind"]),
+        "leg": column(events["leg"]),
+        "reason": column(events["reason"]),
+        "expiry": column(np.where(events["expiry"] > 0, events["expiry"] - ORDINAL_OF_1970, np.nan)),
+        "quantity": column(quantity, CENT),
+        "price": column(price, PRICE),
+        "mid": column(np.where(same, np.nan, _told(events["mid"], 4)), PRICE),
+        "fee": column(fee, CENT),
+        "odd": column(np.rint(events["cash"] * 100.0) - expected),
+        "strike": column(_told(events["strike"], 2), CENT),
+        "spot": column(np.where(ends, _told(events["spot"], 2), 0.0), CENT),
+    }
+
+
+def _told(values: Floats, places: int) -> Floats:
+    """Values rounded as they are written, each by its own decimals: a half seen in binary is often none."""
+    return np.array([round(value, places) for value in values.tolist()], dtype=np.float64)
+
+
+def _first(log: EventLog) -> int:
+    """The number of the run's first session."""
+    return int(log.days["session"][0]) if log.days.size else 0

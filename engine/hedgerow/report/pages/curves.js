@@ -98,10 +98,11 @@ function stripBelow(frame, x, xs) {
 }
 
 function timeReading(frame, figure, x, xs, say) {
-  const line = frame.add("line", { class: "cursor", y1: frame.top, y2: frame.bottom, x1: -9, x2: -9 });
+  const line = frame.add("line", { class: "cursor", y1: frame.top, y2: frame.bottom, visibility: "hidden" });
   const swept = frame.add("rect", { class: "brush", y: frame.top, height: frame.bottom - frame.top, width: 0 });
   const show = () => {
     if (state.cursor === null) return;
+    line.setAttribute("visibility", "visible");
     line.setAttribute("x1", xs[state.cursor]);
     line.setAttribute("x2", xs[state.cursor]);
     say(state.cursor);

@@ -18,6 +18,16 @@ function currentPart() {
   for (const id of links.keys()) seen.observe(byId(id));
 }
 
+// On paper everything is open but what is there for machines.
+function openForPaper() {
+  let opened = [];
+  addEventListener("beforeprint", () => {
+    opened = [...document.querySelectorAll("details:not([open], .long)")];
+    for (const one of opened) one.open = true;
+  });
+  addEventListener("afterprint", () => { for (const one of opened) one.open = false; });
+}
+
 async function start() {
   const data = JSON.parse(byId("data").textContent);
   state.names = data.curves.variants.map((one) => one.name);
@@ -40,7 +50,8 @@ async function start() {
   await drawVolatility(data);
   await readPictures(data);
   currentPart();
-  requestAnimationFrame(() => requestAnimationFrame(() => { document.documentElement.dataset.drawn = "yes"; }));
+  openForPaper();
+  requestAnimationFrame(() => requestAnimationFrame(() => { performance.mark("drawn"); document.documentElement.dataset.drawn = "yes"; }));
 }
 
 start();

@@ -1,6 +1,6 @@
 // A trade's own picture: the stock's path, gain and legs by day, what could be won and lost, what happened.
 
-let pictures = null; // { size, legs, first_chunk, chunks } and the numbers of the first trade of each variant
+let pictures = null; // { size, variants, first_chunk, chunks } and the number of the first trade of each variant
 let legs = null;
 const unpacked = new Map();
 
@@ -23,14 +23,18 @@ async function partsOf(trade) {
   const number_ = pictures.first_chunk[variant] + Math.floor(place / pictures.size), inside = place % pictures.size;
   if (!unpacked.has(number_)) {
     const chunk = pictures.chunks[number_];
-    const [count, marks, text] = await Promise.all([column(chunk.count), columns(chunk.marks), inflated(chunk.text)]);
-    unpacked.set(number_, { count, marks, stories: new TextDecoder().decode(text).split("\f") });
+    const [marks, events, mark, event] = await Promise.all([column(chunk.marks), column(chunk.events), columns(chunk.mark), columns(chunk.event)]);
+    unpacked.set(number_, { marks, events, mark, event });
   }
-  const { count, marks, stories } = unpacked.get(number_);
-  const start = count.subarray(0, inside).reduce((sum, one) => sum + one, 0), end = start + count[inside];
-  const cut = (values) => values.subarray(start, end);
-  const names = pictures.legs[name], own = Object.fromEntries(Object.entries(marks).map(([field, values]) => [field, cut(values)]));
-  return { marks: own, names, story: stories[inside].split("\n").filter(Boolean), legs: legsOf(trade) };
+  const chunk = unpacked.get(number_), meaning = pictures.variants[name];
+  const story = { ...slices(chunk.event, chunk.events, inside), meaning, symbol: state.trades.symbol.words[state.trades.symbol.codes[trade]], position: state.trades.position[trade] };
+  return { marks: slices(chunk.mark, chunk.marks, inside), names: meaning.legs.map(([leg]) => leg), story: tellStory(story), legs: legsOf(trade) };
+}
+
+// The part of each column that belongs to one position of a chunk.
+function slices(table, counts, inside) {
+  const start = counts.subarray(0, inside).reduce((sum, one) => sum + one, 0), end = start + counts[inside];
+  return Object.fromEntries(Object.entries(table).map(([name, values]) => [name, values.subarray(start, end)]));
 }
 
 function legsOf(trade) {

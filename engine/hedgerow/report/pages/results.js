@@ -32,7 +32,7 @@ function drawSpread() {
     const trades = ofVariant(variant), bins = binned(trades), code = Math.max(variant, 0);
     if (!bins) return emptied(host, "No position was opened.");
     const bounds = meanBounds(trades), reach = bins.half * bins.step;
-    const frame = new Frame(host, 300, { left: 48, right: 12, top: 50, bottom: 42 }, `Results of ${counted(bins.values.length, "position", "positions")}: mean ${percent(bins.mean, 2, true)}, from ${percent(bins.values[0], 1, true)} to ${percent(bins.values[bins.values.length - 1], 1, true)}`);
+    const frame = new Frame(host, 300, { left: 48, right: 12, top: 64, bottom: 42 }, `Results of ${counted(bins.values.length, "position", "positions")}: mean ${percent(bins.mean, 2, true)}, from ${percent(bins.values[0], 1, true)} to ${percent(bins.values[bins.values.length - 1], 1, true)}`);
     const x = linear(-reach, reach, frame.left, frame.right), y = linear(0, Math.max(...bins.counts), frame.bottom, frame.top);
     frame.ticksUp(y, niceTicks(0, Math.max(...bins.counts), 4), (tick) => number(tick, 0));
     frame.ticksAcross(x, niceTicks(-reach, reach, frame.narrow ? 4 : 8), (tick) => percent(tick, Math.abs(bins.step) < 0.0025 ? 1 : 0, true));
@@ -43,7 +43,7 @@ function drawSpread() {
     frame.add("line", { x1: x(0), x2: x(0), y1: frame.top, y2: frame.bottom, class: "zero" });
     upright(frame, x(bins.mean), `mean ${percent(bins.mean, 2, true)}`, 0);
     if (Number.isFinite(bounds.best)) upright(frame, Math.min(x(bounds.best), frame.right), `mean best ${percent(bounds.best, 1, true)}`, 1);
-    if (Number.isFinite(bounds.worst)) upright(frame, Math.max(x(-bounds.worst), frame.left), `mean worst ${percent(-bounds.worst, 1, true)}`, 1);
+    if (Number.isFinite(bounds.worst)) upright(frame, Math.max(x(-bounds.worst), frame.left), `mean worst ${percent(-bounds.worst, 1, true)}`, 2);
     const mine = [...state.chosen].filter((at) => variant < 0 || state.trades.variant.codes[at] === variant).slice(0, 400);
     for (const at of mine) frame.add("circle", { cx: x(Math.min(Math.max(state.trades.return_on_debit[at], -reach), reach)), cy: frame.bottom, r: 3.2, class: "mark-trade" });
     const say = (at) => { const [low, high] = binEdges(bins, at); readout(whole, `${between(low, high)}: ${counted(bins.counts[at], "position", "positions")}, ${percent(bins.counts[at] / bins.values.length)} of all`); };
@@ -87,36 +87,16 @@ const OUTCOME_ORDER = ["best gain", "between", "floor", "cut", "stop", "assigned
 function drawOutcomes() {
   let variant = state.names.length > 1 ? 0 : -1;
   const figure = chart("outcomes", ["outcomes", "chosen"], (host, whole) => {
-    const t = state.trades, rows = OUTCOME_ORDER.map((word) => ({ word, count: 0, money: 0, code: t.outcome.words.indexOf(word) }));
-    for (const at of ofVariant(variant)) {
-      const row = rows[OUTCOME_ORDER.indexOf(t.outcome.words[t.outcome.codes[at]])];
-      row.count += 1;
-      row.money += t.pnl[at] || 0;
-    }
-    const used = rows.filter((row) => row.count);
+    const used = outcomesOf(variant);
     if (!used.length) return emptied(host, "No position was opened.");
-    const frame = new Frame(host, used.length * 40 + 44, { left: 82, right: 8, top: 30, bottom: 8 }, `Positions by outcome: ${used.map((row) => `${row.word} ${row.count}, ${number(row.money, 0, true)}`).join("; ")}`);
-    const middle = frame.left + (frame.right - frame.left) * 0.42, most = Math.max(...used.map((row) => row.count));
-    const low = Math.min(0, ...used.map((row) => row.money)), high = Math.max(0, ...used.map((row) => row.money));
-    const pad = frame.narrow ? 62 : 84;
-    const wide = linear(0, most, frame.left, middle - 58), money = linear(low, high, middle + (low < 0 ? pad : 10), frame.right - (high > 0 ? pad : 10));
-    frame.text(frame.left, 14, "positions");
-    frame.text(money(0), 14, "money", "middle");
-    const chosen = new Set([...state.chosen].map((at) => t.outcome.codes[at]));
-    const groups = used.map((row, at) => {
-      const y = frame.top + at * 40, group = frame.add("g", { class: `hit ${hue(at)}`, "data-outcome": row.word });
-      const put = (name, attributes, ...rest) => group.append(draw(name, attributes, ...rest));
-      put("rect", { x: 0, y, width: frame.width, height: 28, class: "reach" });
-      put("text", { x: frame.left - 8, y: y + 18, class: "end strong" }, row.word);
-      put("rect", { x: frame.left, width: Math.max(wide(row.count) - frame.left, 1), y: y + 3, height: 22, class: `bar hit ${hue(Math.max(variant, 0))}` });
-      put("text", { x: wide(row.count) + 6, y: y + 18, class: "strong" }, number(row.count, 0));
-      const [from, to] = [money(0), money(row.money)].sort((a, b) => a - b);
-      put("rect", { x: from, width: Math.max(to - from, 1), y: y + 3, height: 22, class: `bar hit ${row.money < 0 ? "c-1" : "c-6"}` });
-      put("text", { x: row.money < 0 ? from - 6 : to + 6, y: y + 18, class: row.money < 0 ? "end strong" : "strong" }, number(row.money, 0, true));
-      if (chosen.has(row.code)) put("rect", { x: 1, y, width: frame.width - 2, height: 28, class: "chosen" });
-      return group;
-    });
-    frame.add("line", { x1: money(0), x2: money(0), y1: frame.top - 4, y2: frame.height, class: "zero" });
+    const narrow = host.clientWidth < 480, step = narrow ? 58 : 40;
+    const frame = new Frame(host, used.length * step + 44, { left: 82, right: 8, top: 30, bottom: 8 }, `Positions by outcome: ${used.map((row) => `${row.word} ${row.count}, ${number(row.money, 0, true)}`).join("; ")}`);
+    const scales = outcomeScales(frame, used, narrow);
+    frame.text(frame.left, 14, narrow ? "positions, and money below" : "positions");
+    if (!narrow) frame.text(scales.money(0), 14, "money", "middle");
+    const marked = new Set([...state.chosen].map((at) => state.trades.outcome.codes[at]));
+    const groups = used.map((row, at) => outcomeRow(frame, row, frame.top + at * step, scales, { narrow, variant, marked }));
+    frame.add("line", { x1: scales.money(0), x2: scales.money(0), y1: frame.top - 4, y2: frame.height, class: "zero" });
     const all = used.reduce((sum, row) => sum + row.count, 0);
     const say = (at) => readout(whole, `${used[at].word}: ${counted(used[at].count, "position", "positions")} (${percent(used[at].count / all)}), together ${number(used[at].money, 0, true)}, each ${number(used[at].money / used[at].count, 0, true)}`);
     const act = (at) => chooseFromChart({ outcome: used[at].code, variant }, `outcome ${used[at].word}`);
@@ -124,4 +104,36 @@ function drawOutcomes() {
     walkable(frame.svg, used.length, say, act);
   });
   variantChoice(figure, (code) => { variant = code; tell("outcomes"); }, variant);
+}
+
+function outcomesOf(variant) {
+  const t = state.trades, rows = OUTCOME_ORDER.map((word) => ({ word, count: 0, money: 0, code: t.outcome.words.indexOf(word) }));
+  for (const at of ofVariant(variant)) {
+    const row = rows[OUTCOME_ORDER.indexOf(t.outcome.words[t.outcome.codes[at]])];
+    row.count += 1;
+    row.money += t.pnl[at] || 0;
+  }
+  return rows.filter((row) => row.count);
+}
+
+function outcomeScales(frame, used, narrow) {
+  const middle = narrow ? frame.right : frame.left + (frame.right - frame.left) * 0.42, pad = narrow ? 70 : 84;
+  const low = Math.min(0, ...used.map((row) => row.money)), high = Math.max(0, ...used.map((row) => row.money));
+  const from = (narrow ? frame.left : middle) + (low < 0 ? pad : 10), to = frame.right - (high > 0 ? pad : 10);
+  return { count: linear(0, Math.max(...used.map((row) => row.count)), frame.left, middle - 58), money: linear(low, high, from, to) };
+}
+
+function outcomeRow(frame, row, y, scales, { narrow, variant, marked }) {
+  const group = frame.add("g", { class: "hit", "data-outcome": row.word }), under = narrow ? 22 : 0, height = narrow ? 18 : 22;
+  const put = (name, attributes, ...rest) => group.append(draw(name, attributes, ...rest));
+  const line = y + height - 2;
+  put("rect", { x: 0, y, width: frame.width, height: 28 + under, class: "reach" });
+  put("text", { x: frame.left - 8, y: line, class: "end strong" }, row.word);
+  put("rect", { x: frame.left, width: Math.max(scales.count(row.count) - frame.left, 1), y: y + 3, height, class: `bar ${hue(Math.max(variant, 0))}` });
+  put("text", { x: scales.count(row.count) + 6, y: line, class: "strong" }, number(row.count, 0));
+  const [from, to] = [scales.money(0), scales.money(row.money)].sort((a, b) => a - b);
+  put("rect", { x: from, width: Math.max(to - from, 1), y: y + 3 + under, height, class: `bar ${row.money < 0 ? "c-1" : "c-6"}` });
+  put("text", { x: row.money < 0 ? from - 6 : to + 6, y: line + under, class: row.money < 0 ? "end strong" : "strong" }, number(row.money, 0, true));
+  if (marked.has(row.code)) put("rect", { x: 1, y, width: frame.width - 2, height: 28 + under, class: "chosen" });
+  return group;
 }
