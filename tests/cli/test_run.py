@@ -339,3 +339,33 @@ def test_stopped_in_the_middle(hedgerow: Runner, thread: str) -> None:
     assert time.monotonic() - begun < 10
     assert err == "Stopped by the keyboard: nothing was left half-written.\n"
     assert hedgerow.files() == before
+
+
+def test_a_report_is_made_again_from_its_folder(hedgerow: Runner) -> None:
+    """The same bytes as the run wrote; without one when told so; a page of two runs where --out says."""
+    hedgerow("run", "study.yaml", "--out", "mine", "--quiet")
+    page = Path("mine/report.html")
+    first = page.read_bytes()
+    page.unlink()
+    again = hedgerow("report", "mine")
+    assert (again.code, again.out, again.err) == (0, "mine/report.html\n", "")
+    assert page.read_bytes() == first
+    hedgerow("run", "study.yaml", "--out", "bare", "--quiet", "--no-report")
+    assert not Path("bare/report.html").exists()
+    both = hedgerow("report", "mine", "bare", "--out", "both.html")
+    assert (both.code, both.out) == (0, "both.html\n")
+    assert "Short or long: short (2)" in Path("both.html").read_text(encoding="utf-8")
+
+
+def test_a_report_of_what_is_no_run_is_refused(hedgerow: Runner) -> None:
+    """No folder, a folder of something else, and --out beside one run: a sentence each, exit code 2."""
+    hedgerow("run", "study.yaml", "--out", "mine", "--quiet")
+    Path("other").mkdir()
+    for words, told in (
+        (("nowhere",), "no finished run lies there"),
+        (("other",), "no finished run lies there"),
+        (("mine", "--out", "x.html"), "--out was given too"),
+    ):
+        said = hedgerow("report", *words)
+        assert (said.code, said.out) == (2, "")
+        assert told in said.err

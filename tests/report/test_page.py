@@ -228,16 +228,16 @@ def test_a_trade_opens_its_own_picture(page: Page, folder: Path) -> None:
     page.keyboard.press("End")
     page.keyboard.press("Enter")
     page.wait_for_selector("dialog[open] ol li")
-    trade = int(page.locator("dialog").get_attribute("data-trade") or -1)
-    lines = page.locator("dialog ol li").all_text_contents()
     places = [
         (log, int(one)) for log in read_logs(folder / "events.parquet") for one in log.terms["position"]
     ]
-    assert lines == story(*places[trade])
+    for _ in range(25):
+        trade = int(page.locator("dialog").get_attribute("data-trade") or -1)
+        assert page.locator("dialog ol li").all_text_contents() == story(*places[trade])
+        page.get_by_role("button", name="Before").click()
+        page.wait_for_function(f"document.getElementById('picture').dataset.trade !== '{trade}'")
     assert page.locator("dialog .plot svg").count() == 3
     assert page.locator("dialog .plot .line").count() >= 3
-    page.get_by_role("button", name="Before").click()
-    page.wait_for_function(f"document.getElementById('picture').dataset.trade !== '{trade}'")
     page.keyboard.press("Escape")
     assert page.locator("dialog[open]").count() == 0
     assert page.evaluate("document.activeElement.className") == "sheet"
@@ -338,5 +338,34 @@ def test_words_of_others_stay_text(browser: Browser, tmp_path: Path) -> None:
     assert NASTY in looked.page.locator("dialog").inner_text()
     assert looked.ask("document.scripts.length") == 2
     assert looked.ask("document.images.length") == 0
+    assert looked.said == []
+    looked.context.close()
+
+
+NEVER = {"accept": {"net_debit": {"at_most": "-60%"}}}
+MANY = {f"call at {at / 10}%": {"legs.call.strike.from_spot": f"{at / 10}%"} for at in range(40)}
+
+
+@pytest.mark.parametrize(
+    ("study", "trades"),
+    [
+        ({"variants": {"a": NEVER, "b": NEVER | {"fill": "close"}}}, False),
+        ({"variants": MANY, "evidence": "none"}, True),
+    ],
+    ids=["no trade", "forty variants"],
+)
+def test_little_and_much_give_a_good_page(
+    browser: Browser, tmp_path: Path, study: dict[str, Any], trades: bool
+) -> None:
+    """No trade and no evidence is told in words, forty variants are drawn; nothing overflows or complains."""
+    looked = Looked(browser, run_folder(tmp_path, study, sessions=100) / "report.html", width=800)
+    assert looked.ask("document.documentElement.scrollWidth") <= 800
+    assert (count(looked.page) > 0) == trades
+    if not trades:
+        assert "No position was opened" in looked.page.locator("#trades").inner_text()
+        assert "No position was opened" in looked.page.locator("#spread").inner_text()
+    else:
+        assert looked.page.locator("#growth .line").count() == 41
+        assert "No evidence was worked out" in looked.page.locator("#belief").inner_text()
     assert looked.said == []
     looked.context.close()

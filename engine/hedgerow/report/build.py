@@ -5,7 +5,7 @@ from __future__ import annotations
 import base64
 import hashlib
 import json
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from functools import cache
 from importlib.resources import files
 from pathlib import Path
@@ -17,7 +17,7 @@ from hedgerow.events.store import write_atomically
 from hedgerow.report.folder import read_folder
 from hedgerow.report.model import Page, page_of
 
-__all__ = ["PAGE", "page_text", "write_report"]
+__all__ = ["PAGE", "page_text", "write_comparison", "write_report"]
 
 PAGE = "report.html"
 
@@ -42,8 +42,21 @@ def write_report(folder: str | Path) -> Path:
 
     Raises PlaceError when the folder is no run, or cannot be written.
     """
-    page = page_of(read_folder(folder))
-    place = Path(folder) / PAGE
+    return _written(page_of(read_folder(folder)), Path(folder) / PAGE)
+
+
+def write_comparison(folders: Sequence[str | Path], place: Path) -> Path:
+    """Write one page that compares the runs of several folders to a file, and return it.
+
+    Raises PlaceError when a folder is no run, when the runs share no two sessions, or when the file cannot be
+    written.
+    """
+    from hedgerow.report.joined import join_runs
+
+    return _written(page_of(join_runs([read_folder(one) for one in folders])), place)
+
+
+def _written(page: Page, place: Path) -> Path:
     text = page_text(page)
     write_atomically(place, lambda part: _write(part, text))
     return place

@@ -9,7 +9,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass
 
-__all__ = ["Basis", "cautions"]
+__all__ = ["Basis", "cautions", "tries_told"]
 
 HYPOTHETICAL = (
     "Hypothetical: rules were replayed over past prices. No order was placed and no money was at risk."
@@ -44,7 +44,16 @@ class Basis:
 def cautions(basis: Basis) -> tuple[str, ...]:
     """Return the cautions of a result, one paragraph each, in the order in which they should be read."""
     assumed = f"Assumed here: {'; '.join(basis.assumptions)}." if basis.assumptions else ""
-    parts = (HYPOTHETICAL, HINDSIGHT, SYNTHESIZED, assumed, _survivors(basis), TAXES, _tried(basis), RISK)
+    parts = (
+        HYPOTHETICAL,
+        HINDSIGHT,
+        SYNTHESIZED,
+        assumed,
+        _survivors(basis),
+        TAXES,
+        tries_told(basis.variants_tried),
+        RISK,
+    )
     return tuple(part for part in parts if part)
 
 
@@ -60,7 +69,8 @@ def _survivors(basis: Basis) -> str:
     return f"Survivorship: a universe chosen today leaves out companies that failed since{known}."
 
 
-def _tried(basis: Basis) -> str:
-    if basis.variants_tried <= 1:
+def tries_told(count: int) -> str:
+    """Return what must be said of the number of variants that were tried."""
+    if count <= 1:
         return "One variant was run here. Count those tried before: the best of many looks better than it is."
-    return f"{basis.variants_tried} variants were tried. The best of several looks better than it is."
+    return f"{count} variants were tried. The best of several looks better than it is."

@@ -31,8 +31,8 @@ def days_since_1970(dates: NDArray[Any]) -> Floats:
 def curves_of(folder: RunFolder) -> dict[str, Any]:
     """Return the sessions, each variant's equity at each close and idle stretches, and the yardstick."""
     variants = [
-        {"name": name, "equity": _money(value), "idle": _idle(ledger)}
-        for name, value, ledger in zip(folder.names, folder.equity, folder.ledgers, strict=True)
+        {"name": name, "equity": _money(value), "idle": _idle(empty)}
+        for name, value, empty in zip(folder.names, folder.equity, folder.empty, strict=True)
     ]
     other = folder.yardstick
     return {
@@ -48,9 +48,9 @@ def _money(values: Floats) -> dict[str, Any]:
     return column(values, 10.0 ** np.floor(np.log10(largest * MONEY_DIGITS)))
 
 
-def _idle(ledger: Ledger) -> list[list[int]]:
+def _idle(closes: NDArray[np.bool_]) -> list[list[int]]:
     """Stretches [first, last] of sessions, counted from the run's first, that closed with no position."""
-    empty = np.concatenate(([False], ledger.log.days["positions"] == 0, [False])).astype(np.int8)
+    empty = np.concatenate(([False], closes, [False])).astype(np.int8)
     turns = np.flatnonzero(np.diff(empty)).reshape(-1, 2)
     return [[int(first), int(last) - 1] for first, last in turns]
 

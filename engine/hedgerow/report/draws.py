@@ -32,10 +32,10 @@ def resampling_of(evidence: Mapping[str, Any]) -> Resampling:
 
 
 def differences_of(folder: RunFolder) -> list[dict[str, Any]]:
-    """Return the spread of growth a year, first less second, of the headline pair and of its two variants
-    against the yardstick; without a pair, of every variant against it.
+    """Return how growth a year is spread, first less second: the headline pair, and both its variants.
 
-    Each: `first`, `second`, and the column `draws` of fractions a year. Empty without evidence.
+    Those against the yardstick; without a pair every variant against it. Each is `first`, `second` and the
+    column `draws`, fractions a year. Empty without evidence.
     """
     evidence = folder.evidence
     if evidence is None:

@@ -14,6 +14,7 @@ from typing import Any
 import numpy as np
 import pandas as pd
 import yaml
+from numpy.typing import NDArray
 
 from hedgerow.errors import PlaceError
 from hedgerow.events.store import read_logs
@@ -33,7 +34,8 @@ class RunFolder:
     """A finished run: ledgers and summaries in the order of the study, its evidence, words and daily table.
 
     `evidence` is the part of summary.json, None without one; `stress` is empty without a stress; `daily` has
-    the columns of background.parquet.
+    the columns of background.parquet. `kept` are, for each ledger, its days that curves are drawn of; None
+    for all.
     """
 
     place: Path
@@ -44,6 +46,7 @@ class RunFolder:
     run: Mapping[str, Any]
     about: Mapping[str, Any]
     daily: pd.DataFrame
+    kept: tuple[NDArray[np.int64], ...] | None = None
 
     @property
     def names(self) -> tuple[str, ...]:
@@ -74,7 +77,13 @@ class RunFolder:
             value = np.array(ledger.log.days["equity"])
             value[0] = ledger.log.meta.opening_cash or value[0]
             curves.append(value)
-        return tuple(curves)
+        return tuple(curves) if self.kept is None else tuple(map(np.take, curves, self.kept))
+
+    @cached_property
+    def empty(self) -> tuple[NDArray[np.bool_], ...]:
+        """For each variant, whether no position was open at each close."""
+        days = [ledger.log.days["positions"] == 0 for ledger in self.ledgers]
+        return tuple(days) if self.kept is None else tuple(map(np.take, days, self.kept))
 
 
 def read_folder(place: str | Path) -> RunFolder:

@@ -12,8 +12,8 @@ from typing import Any
 import numpy as np
 import pandas as pd
 
-from hedgerow.events.log import EventLog
 from hedgerow.events.kinds import reason_words
+from hedgerow.events.log import EventLog
 from hedgerow.kernels import layout as at
 from hedgerow.kernels.layout import Floats, Records
 from hedgerow.ledger import Ledger
@@ -88,8 +88,8 @@ def pictures_of(ledgers: Sequence[Ledger]) -> dict[str, Any]:
     """Return {size, variants, first_chunk, chunks}: what pictures of trades and stories are made from.
 
     variants: legs as [name, right] and the words of reasons, by variant. A chunk holds `marks` and `events`,
-    counts by position; columns of the marks (`session` counted within the run, `spot`, `gain`, one of each
-    leg) and of the events, of which `pages/story.js` makes the sentences of `events.narrate`.
+    counts by position; columns `mark` (`day`, `spot`, `gain`, one of each leg); and columns `event`, of which
+    `pages/story.js` makes the sentences of `events.narrate`.
     """
     variants = {
         ledger.log.meta.variant: {
@@ -131,7 +131,7 @@ def _grouped(log: EventLog, records: Records) -> tuple[Records, np.ndarray]:
 
 def _mark_columns(log: EventLog, marks: Records, step: float) -> dict[str, Any]:
     columns = {
-        "session": column(marks["session"] - _first(log)),
+        "day": _days(log, marks),
         "spot": column(marks["spot"], CENT),
         "gain": column(marks["gain"], step),
     }
@@ -151,7 +151,7 @@ def _event_columns(log: EventLog, events: Records) -> dict[str, Any]:
     ends = np.isin(events["kind"], (at.KIND_EXPIRED, at.KIND_EXERCISED, at.KIND_ASSIGNED))
     same = np.abs(events["price"] - events["mid"]) < SAME_PRICE
     return {
-        "session": column(events["session"] - _first(log)),
+        "day": _days(log, events),
         "kind": column(events["kind"]),
         "leg": column(events["leg"]),
         "reason": column(events["reason"]),
@@ -171,6 +171,6 @@ def _told(values: Floats, places: int) -> Floats:
     return np.array([round(value, places) for value in values.tolist()], dtype=np.float64)
 
 
-def _first(log: EventLog) -> int:
-    """The number of the run's first session."""
-    return int(log.days["session"][0]) if log.days.size else 0
+def _days(log: EventLog, records: Records) -> dict[str, Any]:
+    """The days of records as a column, counted from 1970-01-01."""
+    return column(days_since_1970(log.meta.dates[records["session"]]))

@@ -48,13 +48,20 @@ function overTime(id, spec) {
     heldBands(frame, x);
     const thin = lines.length > 12 ? " thin" : "";
     for (const one of lines) frame.line(xs, one.shown.map(y), `${hue(one.code)}${one.code < 0 ? " dashed" : dash(one.code)}${thin}`);
-    if (wide) frame.endNames(lines.slice(0, 14).map((one) => ({ name: one.name, y: y(one.shown[one.shown.length - 1]) })));
+    if (wide) frame.endNames(outermost(lines).map((one) => ({ name: one.name, y: y(one.shown[one.shown.length - 1]) })));
     if (spec.strip) stripBelow(frame, x, xs);
     if (spec.dots) chosenDots(frame, x, y, lines);
     timeReading(frame, whole, x, xs, (session) => sayAt(whole, session, lines, spec.say));
   });
   keys(figure);
   on("hidden", () => keys(figure));
+}
+
+// The lines whose ends are named: all of a few, of many the highest and the lowest.
+function outermost(lines) {
+  if (lines.length <= 14) return lines;
+  const last = (one) => one.shown[one.shown.length - 1], sorted = [...lines].sort((a, b) => last(b) - last(a));
+  return [...sorted.slice(0, 7), ...sorted.slice(-7)];
 }
 
 function sayAt(figure, session, lines, say) {
@@ -78,7 +85,7 @@ function chosenDots(frame, x, y, lines) {
   for (const at of state.chosen) {
     const one = places.get(t.variant.words[t.variant.codes[at]]);
     const day = Number.isFinite(t.closed[at]) ? t.closed[at] : curves.dates[curves.dates.length - 1];
-    if (!one || (left -= 1) < 0) continue;
+    if (!one || day < curves.dates[0] || day > curves.dates[curves.dates.length - 1] || (left -= 1) < 0) continue;
     frame.add("circle", { cx: x(day), cy: y(one.shown[sessionAt(day)]), r: 3.5, class: "mark-trade", "data-trade": at });
   }
 }
@@ -91,7 +98,7 @@ function stripBelow(frame, x, xs) {
       frame.add("rect", { x: xs[first], width: Math.max(xs[last] - xs[first], 1), y: top, height: 7, class: `idle ${hue(one.code)}` });
     const pixels = new Set();
     for (let at = 0; at < state.count; at += 1)
-      if (t.variant.codes[at] === code && leaving[t.outcome.codes[at]]) pixels.add(Math.round(x(t.closed[at]) * 2) / 2);
+      if (t.variant.codes[at] === code && leaving[t.outcome.codes[at]] && t.closed[at] >= curves.dates[0]) pixels.add(Math.round(x(t.closed[at]) * 2) / 2);
     const path = [...pixels].map((place) => `M${place},${top}v7`).join("");
     frame.add("path", { d: path, class: `exit ${hue(one.code)}` }, draw("title", {}, `${one.name}: exits before the end`));
   });

@@ -32,6 +32,7 @@ function drawInterval(evidence) {
 }
 
 async function drawDraws(data) {
+  if (!data.evidence) return;
   const all = await Promise.all(data.differences.map(async (one) => ({ ...one, draws: [...await column(one.draws)].filter(Number.isFinite).sort((a, b) => a - b) })));
   let chosen = 0;
   const figure = chart("draws", ["draws"], (host, whole) => {
@@ -61,6 +62,7 @@ async function drawDraws(data) {
 }
 
 async function drawPremium(data) {
+  if (!data.evidence) return;
   const cells = data.stress ? await columns(data.stress) : null, pairs = data.evidence ? data.evidence.pairs : [];
   const known = cells ? pairs.filter((one) => cells.names.includes(one.first) && stressRows(cells, one).length) : [];
   let chosen = Math.max(known.indexOf(pairs[data.evidence ? data.evidence.headline ?? 0 : 0]), 0), across = 0;
@@ -129,6 +131,7 @@ function stressLines(cells, pair, field, basis) {
 }
 
 function drawTiming(data) {
+  if (!data.evidence) return;
   const rows = data.evidence ? data.evidence.timing.filter((one) => one.starts > 1) : [];
   chart("timing", [], (host, whole) => {
     if (!rows.length) return emptied(host, "No start was changed: the rules have no fixed cycle, or none was asked for.");
@@ -152,6 +155,7 @@ function drawTiming(data) {
 }
 
 function drawOdds(data) {
+  if (!data.evidence) return;
   const rows = data.evidence ? data.evidence.variants.filter((one) => one.odds) : [];
   let chosen = 0;
   const figure = chart("odds", ["odds"], (host, whole) => {
@@ -179,6 +183,7 @@ function drawOdds(data) {
 }
 
 async function drawAhead(data) {
+  if (!data.evidence) return;
   const all = await Promise.all(data.fans.variants.map(async (one) => ({ ...one, levels: await Promise.all(one.levels.map(column)) })));
   let chosen = 0;
   const figure = chart("ahead", ["ahead"], (host, whole) => {

@@ -77,7 +77,7 @@ async function openTrade(place) {
 }
 
 function dayFrame(host, parts, trade, values, height, told, right = 96) {
-  const days = [...parts.marks.session].map((session) => curves.dates[session]);
+  const days = [...parts.marks.day];
   const ends = [...parts.legs.map((one) => one.expiry), state.trades.closed[trade], ...days].filter(Number.isFinite);
   const first = Math.min(state.trades.opened[trade], ...days), last = Math.min(Math.max(...ends), days.length ? Math.max(...days) + 45 : Infinity);
   const frame = new Frame(host, height, { left: 64, right, top: 16, bottom: 28 }, told);

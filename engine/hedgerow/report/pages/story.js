@@ -1,7 +1,7 @@
 // What happened to a position, told as `events/narrate.py` tells it; a test compares the two.
 
 function tellStory(e) {
-  return [...e.kind].map((kind, at) => `${dateText(curves.dates[e.session[at]])}: ${TELLERS[kind](e, at)}.`);
+  return [...e.kind].map((kind, at) => `${dateText(e.day[at])}: ${TELLERS[kind](e, at)}.`);
 }
 
 function cashOf(e, at) {
