@@ -12,6 +12,7 @@ import typer
 from hedgerow import __version__
 from hedgerow.cli import data, extensions, rules
 from hedgerow.cli.look import look
+from hedgerow.cli.new import new
 from hedgerow.cli.report import report
 from hedgerow.cli.run import run
 from hedgerow.cli.today import today
@@ -31,6 +32,7 @@ app.command()(run)
 app.command()(report)
 app.command()(look)
 app.command()(today)
+app.command()(new)
 app.add_typer(data.app, name="data")
 app.add_typer(rules.app, name="rules")
 app.add_typer(extensions.app, name="extensions")

@@ -143,11 +143,11 @@ def _whole_ends(
     if accept.worst_loss is not None and accept.worst_loss.high < 1.0:
         share = accept.worst_loss.high
         most = max((floor + share * owed) / (1.0 - share), floor + share * least)
-        yield most, f"the worst loss is {_said(accept.worst_loss)}"
+        yield most, f"the worst loss is {_said(accept.worst_loss)} of what is tied up"
     if accept.best_gain is not None and accept.best_gain.low > 0.0 and math.isfinite(top):
         share = accept.best_gain.low
         most = min((top - share * owed) / (1.0 + share), top - share * least)
-        yield most, f"the best gain is {_said(accept.best_gain)}"
+        yield most, f"the best gain is {_said(accept.best_gain)} of what is tied up"
     if accept.best_over_worst is not None and math.isfinite(top):
         ratio = accept.best_over_worst.low
         bound = _said(accept.best_over_worst, False)

@@ -211,7 +211,7 @@ class _Desk:
         market, ratios = self.market, self.ratios
         return Sheet(
             name=self.strategy.name,
-            variant=self.variant if self.variant != self.strategy.name else "",
+            variant=self.variant if self.variant.lower() != self.strategy.name.lower() else "",
             as_of=str(market.dates[-1]),
             next_session=dt.date.fromordinal(next_session(int(market.ordinals[-1]))).isoformat(),
             fill=self.strategy.fill,
