@@ -228,13 +228,17 @@ def held_facts(line: HeldLine) -> Iterator[tuple[str, str]]:
         verb = "held" if line.shares > 0 else "sold short"
         yield "Shares", f"{abs(line.shares):,.0f} {verb} at {number_text(line.stock_price)}"
     share = f" ({percent_text(line.gain_share, 1, True)})" if math.isfinite(line.gain_share) else ""
-    leaving = f", closing all of it brings {number_text(line.leaving, 0)}"
+    verb = "brings" if line.leaving >= 0 else "costs"
+    leaving = (
+        "" if math.isnan(line.leaving) else f", closing all of it {verb} {number_text(abs(line.leaving), 0)}"
+    )
     yield "Gain so far", f"{number_text(line.gain, 0, True)}{share}{leaving}"
     best, worst = (
         "not bounded" if math.isinf(end) else number_text(end, 0, True)
         for end in (line.best_gain, -line.worst_loss)
     )
-    yield "At the next expiry", f"best {best}, worst {worst}, counted from the entry"
+    if line.legs:
+        yield "At the next expiry", f"best {best}, worst {worst}, counted from the entry"
     if line.orders:
         yield "To do", "\n".join(line.orders)
     for trigger in line.triggers:
