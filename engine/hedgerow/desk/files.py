@@ -3,17 +3,17 @@
 from __future__ import annotations
 
 import json
-import os
 import shutil
+from collections.abc import Callable
 from pathlib import Path
 
 from hedgerow.desk.page import page_of
 from hedgerow.desk.sheet import Sheet
 from hedgerow.errors import PlaceError
 from hedgerow.report.files import harmless
-from hedgerow.report.place import move_in, unwritable
+from hedgerow.report.place import missing_parents, move_in, part_of, remove_empty, unwritable
 
-__all__ = ["SHEET_FILES", "json_of", "write_sheet"]
+__all__ = ["SHEET_FILES", "json_of", "lay_down", "write_sheet"]
 
 SHEET_FILES = ("today.html", "today.csv", "today.json")
 
@@ -29,20 +29,35 @@ def write_sheet(sheet: Sheet, folder: str | Path) -> Path:
     Raises PlaceError when the folder holds anything else, or cannot be written; then it is as it was.
     """
     place = Path(folder)
-    whole = place.absolute()  # `.` has no name of its own
-    part = whole.with_name(f".{whole.name}.{os.getpid()}.part")
-    try:
-        _check(place)
-        part.mkdir(parents=True)
+
+    def fill(part: Path) -> None:
         (part / "today.html").write_text(page_of(sheet), encoding="utf-8")
         (part / "today.json").write_text(json_of(sheet), encoding="utf-8")
         harmless(sheet.to_frame()).to_csv(part / "today.csv", index=False, lineterminator="\n")
+
+    lay_down(place, _check, fill)
+    return place
+
+
+def lay_down(place: Path, check: Callable[[Path], None], fill: Callable[[Path], None]) -> None:
+    """Fill a folder beside its place and move it in, once `check` has let it pass; nothing is left half-done.
+
+    Raises PlaceError when that cannot be.
+    """
+    whole = place.absolute()  # `.` has no name of its own
+    part, made, done = part_of(whole), missing_parents(whole), False
+    try:
+        check(place)
+        part.mkdir(parents=True)
+        fill(part)
         move_in(part, whole)
+        done = True
     except OSError as error:
         raise unwritable(place, error) from error
     finally:
         shutil.rmtree(part, ignore_errors=True)
-    return place
+        for parent in () if done else made:
+            remove_empty(parent)
 
 
 def _check(place: Path) -> None:

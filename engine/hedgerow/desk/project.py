@@ -4,15 +4,13 @@ from __future__ import annotations
 
 import datetime as dt
 import math
-import os
-import shutil
 from pathlib import Path
 
 from hedgerow.desk.demo import Demo, demo
+from hedgerow.desk.files import lay_down
 from hedgerow.errors import PlaceError
 from hedgerow.kernels.layout import MONTHLY
 from hedgerow.market.sessions import listed_at
-from hedgerow.report.files import move_in, unwritable
 from hedgerow.rules.publish import as_text, strategy_schema
 from hedgerow.study.publish import study_schema
 
@@ -108,23 +106,23 @@ def new_folder(folder: str | Path) -> Path:
     Raises PlaceError when something stands there already, or nothing can be written; then nothing is left.
     """
     place = Path(folder)
-    whole = place.absolute()
-    part = whole.with_name(f".{whole.name}.{os.getpid()}.part")
-    try:
-        if place.is_dir() and any(place.iterdir()):
-            raise _taken(place, "this folder holds files already")
-        if place.exists() and not place.is_dir():
-            raise _taken(place, "a file of this name stands there")
+
+    def fill(part: Path) -> None:
         for name, text in _texts(demo()).items():
             path = part / name
             path.parent.mkdir(parents=True, exist_ok=True)
             path.write_text(text, encoding="utf-8")
-        move_in(part, whole)
-    except OSError as error:
-        raise unwritable(place, error) from error
-    finally:
-        shutil.rmtree(part, ignore_errors=True)
+
+    lay_down(place, _check, fill)
     return place
+
+
+def _check(place: Path) -> None:
+    """Raise PlaceError when something stands there."""
+    if place.is_dir() and any(place.iterdir()):
+        raise _taken(place, "this folder holds files already")
+    if place.exists() and not place.is_dir():
+        raise _taken(place, "a file of this name stands there")
 
 
 def _texts(prices: Demo) -> dict[str, str]:
