@@ -57,6 +57,14 @@ def test_a_folder_that_lacks_something_is_refused(tmp_path: Path, folder: Path, 
         write_report(tmp_path)
 
 
+def test_a_large_study_is_told_apart(tmp_path: Path) -> None:
+    """A folder with the table of a grid: the sentence does not ask to run it again."""
+    (tmp_path / "variants.parquet").write_bytes(b"")
+    with pytest.raises(PlaceError, match="a large study") as caught:
+        write_report(tmp_path)
+    assert "again" not in str(caught.value)
+
+
 def test_a_damaged_file_is_told(tmp_path: Path, folder: Path) -> None:
     """about.json cut short: a sentence, no traceback, and no report."""
     for path in folder.iterdir():

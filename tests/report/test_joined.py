@@ -48,12 +48,15 @@ def test_the_answer_is_that_of_the_shared_days(folders: list[Path]) -> None:
 
 
 def test_what_differs_stands_first_among_the_cautions(tmp_path: Path, folders: list[Path]) -> None:
-    """Other prices and other costs are told; runs alike in both are not accused."""
+    """Other prices, costs and days are told, each where it is so; one run twice is accused of none."""
     strange = run_folder(tmp_path, ONE | {"costs": "none"}, symbols="AC", report=False)
     unlike = join_runs([read_folder(folders[0]), read_folder(strange)]).about["cautions"]
     assert "different prices" in unlike[0]
     assert "different premiums or costs" in unlike[1]
-    assert join_runs([read_folder(one) for one in folders]).about["cautions"][0].startswith("Hypothetical")
+    days = join_runs([read_folder(one) for one in folders]).about["cautions"]
+    assert "different days" in days[0]
+    assert days[1].startswith("Hypothetical")
+    assert join_runs([read_folder(folders[0])] * 2).about["cautions"][0].startswith("Hypothetical")
 
 
 def test_runs_of_other_days_are_refused(tmp_path: Path) -> None:

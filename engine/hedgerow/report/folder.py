@@ -26,6 +26,7 @@ from hedgerow.report.files import FINISHED, STRESS_FILES
 
 __all__ = ["RunFolder", "read_folder"]
 
+LARGE = "variants.parquet"
 NEEDED = ("events.parquet", "summary.json", FINISHED, *BACKGROUND_FILES)
 
 
@@ -89,6 +90,14 @@ class RunFolder:
 def read_folder(place: str | Path) -> RunFolder:
     """Return the run of a folder. Raises PlaceError when it is none, or lacks what a report needs."""
     folder = Path(place)
+    if (folder / LARGE).is_file():
+        raise PlaceError.one(
+            str(folder),
+            "large study",
+            "this is the folder of a large study, and pages are made of studies that name their variants",
+            "its findings stand in summary.json and variants.csv",
+            "run its best variants as a study of their own",
+        )
     missing = [name for name in NEEDED if not (folder / name).is_file()]
     if missing:
         known = (folder / FINISHED).is_file()

@@ -123,6 +123,11 @@ def _unlike(runs: Sequence[RunFolder]) -> list[str]:
         told.append("The runs rest on different prices: what separates them may be the market, not the rule.")
     if len({tuple(run.about["assumptions"]) for run in runs}) > 1:
         told.append("The runs assume different premiums or costs: what separates them may be the assumption.")
+    if len({(str(run.dates[0]), str(run.dates[-1])) for run in runs}) > 1:
+        told.append(
+            "The runs cover different days: tables and trades tell of each run's own days, curves and "
+            "differences of the days that all share."
+        )
     accounts = {str(run.run["study"].get("account")) for run in runs}
     if len(accounts) > 1:
         told.append("The runs have different accounts: cash, shares of equity or limits differ.")

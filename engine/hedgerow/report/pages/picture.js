@@ -76,7 +76,7 @@ async function openTrade(place) {
   drawPayoff(plots[2], trade, parts);
 }
 
-function dayFrame(host, parts, trade, values, height, told, right = 96) {
+function dayFrame(host, parts, trade, values, height, told, right = 112) {
   const days = [...parts.marks.day];
   const ends = [...parts.legs.map((one) => one.expiry), state.trades.closed[trade], ...days].filter(Number.isFinite);
   const first = Math.min(state.trades.opened[trade], ...days), last = Math.min(Math.max(...ends), days.length ? Math.max(...days) + 45 : Infinity);
