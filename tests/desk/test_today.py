@@ -143,3 +143,13 @@ def test_a_changed_past_does_matter() -> None:
     one, other = (hr.today(study, orchard(), as_of=day) for day in ("2018-02-05", "2018-02-02"))
     assert as_written(one) != as_written(other)
     assert [look.close for look in one.looks] != [look.close for look in other.looks]
+
+
+def test_a_page_takes_text_as_text_and_fetches_nothing() -> None:
+    """A rule's name with a tag in it is shown, not obeyed; no script, no address, no image."""
+    rule = hr.load_strategy(ROOT / "strategies/collar.yaml").plain() | {
+        "name": "<img src=x> & <script>1</script>"
+    }
+    page = page_of(hr.today(study_of(rule, first="2018-02-05"), orchard(), as_of="2018-02-05"))
+    assert "&lt;img src=x&gt; &amp; &lt;script&gt;" in page
+    assert not any(word in page for word in ("<img", "<script", "http", "url(", "@import"))
