@@ -339,3 +339,55 @@ def test_wrong_words_on_the_command_line(hedgerow: Runner, words: tuple[str, ...
     assert said.code == 2
     assert said.out == ""
     assert "Usage" in said.err
+
+
+@pytest.mark.parametrize(
+    ("old", "new", "told"),
+    [
+        ("cash: 100000,", "cash: 100,000,", "a number is written without a separator of thousands"),
+        (
+            "market: prices.csv",
+            "market: prices.csv\nsymbols: []",
+            "`symbols` is an empty list; allowed: `all`",
+        ),
+        (
+            "{blend: [{close: 21}]}",
+            "{ratio: eleven}",
+            "pricing.volatility.ratio: `eleven` is no plain number; allowed: a number from",
+        ),
+    ],
+)
+def test_the_message_names_what_was_meant(hedgerow: Runner, old: str, new: str, told: str) -> None:
+    """A comma among thousands, a list of nothing, a word of the premiums by its whole path."""
+    changed(hedgerow, "study.yaml", old, new)
+    assert any(told in line for line in refused(hedgerow, "study.yaml"))
+
+
+def test_a_table_of_prices_is_no_strategy(hedgerow: Runner) -> None:
+    """It is told what it is not, and how prices are given."""
+    (told,) = refused(hedgerow, "prices.csv")
+    assert told.startswith("prices.csv: this is no file of words")
+    assert "--market FILE" in told
+
+
+def test_faults_of_an_earlier_run_are_told_with_their_place(hedgerow: Runner) -> None:
+    """Edited by hand, its run.yaml is read like a study: file, line and column; other prices may be named."""
+    assert hedgerow("run", "study.yaml", "--out", "one", "--quiet", "--no-report").code == 0
+    changed(hedgerow, "one/run.yaml", "cash: 100000", "cash: abc")
+    (told,) = refused(hedgerow, "one/run.yaml")
+    assert re.match(r"one/run\.yaml:\d+:\d+: `account\.cash` is `abc`", told)
+    changed(hedgerow, "one/run.yaml", "cash: abc", "cash: 100000")
+    (hedgerow.folder / "prices.csv").rename(hedgerow.folder / "moved.csv")
+    (told,) = refused(hedgerow, "one/run.yaml")
+    assert "and nothing is there" in told
+    again = hedgerow("run", "one/run.yaml", "--market", "moved.csv", "--out", "two", "--quiet", "--no-report")
+    assert again.code == 0
+    for name in ("trades.csv", "equity.parquet"):
+        assert (hedgerow.folder / "two" / name).read_bytes() == (hedgerow.folder / "one" / name).read_bytes()
+
+
+def test_the_ledger_for_people_holds_no_rounding_dust(hedgerow: Runner) -> None:
+    """No number of trades.csv has more than twelve digits; the Parquet file keeps every bit."""
+    assert hedgerow("run", "study.yaml", "--out", "one", "--quiet", "--no-report").code == 0
+    text = (hedgerow.folder / "one" / "trades.csv").read_text(encoding="utf-8")
+    assert all(len(number.replace(".", "").lstrip("0")) <= 12 for number in re.findall(r"\d*\.\d+", text))

@@ -73,15 +73,15 @@ def test_an_observed_level_holds_the_reports_already() -> None:
         ("plain", "`plain` is no preset; allowed: `default`, `plain-21`"),
         ({"blend": [{"closse": 10}]}, "`closse` is no estimator of volatility"),
         ({"blend": [{"closse": 10}]}, "did you mean `close`?"),
-        ({"blend": [{"close": 1}]}, "`1` is out of range; a whole number from 2 to 1260"),
+        ({"blend": [{"close": 1}]}, "`1` is out of range; allowed: a whole number from 2 to 1260"),
         ({"blend": [{"close": 10.5}]}, "`10.5` is no whole number"),
         ({"blend": [{"ewma": 94}]}, "a number from 0.5 to 0.995"),
         ({"blend": [{"close": 10, "ewma": 0.9}]}, "a term names one estimator"),
-        ({"blend": {"close": 10}}, "has the wrong shape; a list of terms"),
+        ({"blend": {"close": 10}}, "has the wrong shape; allowed: a list of terms"),
         ({"blend": []}, "the blend has no term"),
         ({"rato": 1.1}, "volatility.rato is not a known word"),
         ({"rato": 1.1}, "did you mean `ratio`?"),
-        ({"floor": 0.05}, "`0.05` is a bare number; a percent from 0.1% to 100%, with its % sign"),
+        ({"floor": 0.05}, "`0.05` is a bare number; allowed: a percent from 0.1% to 100%, with its % sign"),
         ({"floor": "five"}, "`five` is no percent"),
         ({"floor": "40%", "cap": "20%"}, "the floor 0.4 is above the cap 0.2"),
         ({"ratio": "much"}, "`much` is no plain number"),
@@ -90,7 +90,7 @@ def test_an_observed_level_holds_the_reports_already() -> None:
         ({"ratio": "1e99"}, "out of range"),
         ({"history": 0}, "`0` is out of range"),
         ({"observed": 3}, "put it in quotes"),
-        ([1, 2], "volatility has the wrong shape; a mapping of words"),
+        ([1, 2], "volatility has the wrong shape; allowed: a mapping of words"),
     ],
 )
 def test_wrong_words_are_told(words: object, told: str) -> None:
@@ -107,7 +107,7 @@ def test_all_faults_come_in_one_pass_with_their_places() -> None:
         surface_words(load(text, "study.yaml"), "study.yaml")
     places = {(fault.line, fault.column) for fault in caught.value.faults}
     assert places == {(1, 22), (2, 1), (3, 1), (4, 1)}
-    with pytest.raises(StudyError, match=r"^study.yaml:2:1: volatility.floor: the floor"):
+    with pytest.raises(StudyError, match=r"^study.yaml:2:1: pricing.volatility.floor: the floor"):
         surface_words(load("cap: 20%\nfloor: 40%\n", "study.yaml"), "study.yaml")
     assert all(str(fault).startswith("study.yaml:") for fault in caught.value.faults)
 

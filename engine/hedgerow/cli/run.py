@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import itertools
 import json
+import os
 import shlex
 import sys
 from collections.abc import Iterator
@@ -144,12 +145,12 @@ def study_of(file: Path, market: Path | None, extensions: list[str]) -> Study:
     from hedgerow.cli.rules import is_study
     from hedgerow.errors import StudyError
     from hedgerow.rules.document import tree_of_file
-    from hedgerow.study.declare import load_study, study_of_strategy
+    from hedgerow.study.declare import load_study, read_study, study_of_strategy
     from hedgerow.textfile import capped
 
     tree = tree_of_file(file)
     recorded = tree.plain.get("study") if isinstance(tree.plain, dict) and not tree.faults else None
-    earlier = isinstance(recorded, dict) and market is None
+    earlier = isinstance(recorded, dict)
     if extensions and (earlier or is_study(tree)):
         found = "a study file names its own extensions, and --extension was given too"
         raise StudyError.one(
@@ -159,8 +160,14 @@ def study_of(file: Path, market: Path | None, extensions: list[str]) -> Study:
             "",
             "write it under `extensions` in the study, and leave it out here",
         )
-    if isinstance(recorded, dict) and market is None:
-        return load_study(recorded)  # the run.yaml of an earlier run
+    if earlier:  # the run.yaml of an earlier run, on the prices it names or, elsewhere, on those given
+        again = tree.below(("study",))
+        if market is not None:
+            again.plain = again.plain | {"market": os.path.abspath(market)}
+        study, faults = read_study(again, file.parent, file)
+        if study is None:
+            raise StudyError(capped(faults))
+        return study
     if is_study(tree):
         if market is not None:
             found = "a study file names its own market, and --market was given too"
@@ -168,6 +175,10 @@ def study_of(file: Path, market: Path | None, extensions: list[str]) -> Study:
         return load_study(file)
     if tree.faults:
         raise StudyError(capped(tree.faults))
+    if not isinstance(tree.plain, dict) or file.suffix.lower() in (".csv", ".parquet"):
+        found = "this is no file of words: it is neither a study nor a strategy"
+        remedy = "where it holds prices, give it beside a strategy: hedgerow run STRATEGY --market FILE"
+        raise StudyError.one(str(file), "no-words", found, "a study or a strategy is needed", remedy)
     if market is None:
         found = "this is a strategy file, which does not say on which prices to run"
         raise StudyError.one(str(file), "no-market", found, "a market is needed", "add --market FOLDER")

@@ -46,6 +46,8 @@ RUN_FILES = (
 STRESS_FILES = ("stress.parquet", "stress.csv")
 """Further files of a run whose comparisons were repeated under other premiums and costs."""
 
+CSV_NUMBER = "%.12g"  # no digits that are only rounding: 403.476, not 403.4760000000051
+
 FORMULA_STARTS = ("=", "+", "-", "@", "\t", "\r")
 
 
@@ -106,7 +108,9 @@ def fill_folder(
     write_logs(part / "events.parquet", [ledger.log for ledger in ledgers])
     trades = pd.concat([ledger.trades for ledger in ledgers], ignore_index=True)
     write_frame(trades, part / "trades.parquet")
-    harmless(trades).to_csv(part / "trades.csv", index=False, date_format="%Y-%m-%d", lineterminator="\n")
+    plain = harmless(trades)
+    page, day = part / "trades.csv", "%Y-%m-%d"
+    plain.to_csv(page, index=False, date_format=day, float_format=CSV_NUMBER, lineterminator="\n")
     write_frame(pd.concat([ledger.legs for ledger in ledgers], ignore_index=True), part / "legs.parquet")
     write_frame(pd.concat([ledger.equity for ledger in ledgers], ignore_index=True), part / "equity.parquet")
     for name, content in extra.items():
@@ -124,7 +128,7 @@ def _weigh(part: Path, summaries: Sequence[Summary], evidence: Evidence | None) 
     if evidence is not None and len(evidence.stress):
         table, page = (part / name for name in STRESS_FILES)
         write_frame(evidence.stress, table)
-        harmless(evidence.stress).to_csv(page, index=False, lineterminator="\n")
+        harmless(evidence.stress).to_csv(page, index=False, float_format=CSV_NUMBER, lineterminator="\n")
 
 
 def write_frame(frame: pd.DataFrame, path: Path) -> None:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import copy
+import re
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
 from pathlib import Path as FilePath
@@ -30,6 +31,9 @@ AT_THE_KEY = {
     "uncovered-call",
 }
 """Codes of faults that are about a word being there, not about its value."""
+
+
+_THOUSANDS = re.compile("[0-9]{3}")
 
 
 @dataclass(frozen=True, slots=True)
@@ -175,4 +179,6 @@ def _empty(node: Node, path: Path, tree: Tree) -> None:
     place = tree.keys.get(path, tree.values[path])
     found = f"`{dotted(path)}` has nothing written"
     remedy = "write its value, or take it out"
+    if isinstance(path[-1], str) and _THOUSANDS.fullmatch(path[-1]):
+        remedy = "a number is written without a separator of thousands, such as 250000"
     tree.faults.append(Fault(place.where, place.line, place.column, "empty", found, "", remedy))

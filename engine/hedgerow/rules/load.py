@@ -26,6 +26,9 @@ def load_strategy(
     `changes` maps paths such as "legs.call.expiry.days" to values; "none" takes away what stands there.
     Raises RulesError with every fault of the file, its place, and what is allowed.
     """
+    if not isinstance(source, Mapping | str | Path):
+        found = f"is {source!r}, which is no strategy"
+        raise RulesError.one("strategy", "shape", found, "a mapping of words or the path of a file is needed")
     tree = tree_of_mapping(source) if isinstance(source, Mapping) else tree_of_file(source)
     if changes:
         tree = changed(tree, tree_of_mapping(changes, "changes"))

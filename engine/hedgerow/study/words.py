@@ -191,7 +191,8 @@ def _symbol_faults(symbols: Any) -> list[Loose]:
     if symbols == "all":
         return []
     if not isinstance(symbols, list | tuple) or not symbols:
-        return [Loose(("symbols",), "shape", f"is {shown(symbols)}", "allowed: `all`, or a list of symbols")]
+        found = "is an empty list" if symbols == [] else f"is {shown(symbols)}"
+        return [Loose(("symbols",), "shape", found, "allowed: `all`, or a list of symbols")]
     faults: list[Loose] = []
     for at, symbol in enumerate(symbols):
         try:

@@ -41,9 +41,9 @@ def _number_of(value: object) -> float | None:
 
 def _allowed(limits: Range) -> str:
     if limits.percent:
-        return f"a percent from {100 * limits.least:g}% to {100 * limits.most:g}%, with its % sign"
+        return f"allowed: a percent from {100 * limits.least:g}% to {100 * limits.most:g}%, with its % sign"
     kind = "a whole number" if limits.whole else "a number"
-    return f"{kind} from {limits.least:g} to {limits.most:g}"
+    return f"allowed: {kind} from {limits.least:g} to {limits.most:g}"
 
 
 def _percent_of(value: object, limits: Range) -> float:
@@ -157,14 +157,16 @@ def _placed(fault: Fault, node: Node | None, where: str) -> Fault:
     """Give a fault of the finished model the place of its word."""
     name = fault.where.rpartition(".")[2]
     line, column = _place_of([name], node)
-    return replace(fault, where=where, line=line, column=column, found=f"volatility.{name}: {fault.found}")
+    return replace(
+        fault, where=where, line=line, column=column, found=f"pricing.volatility.{name}: {fault.found}"
+    )
 
 
 def _fault(detail: dict[str, Any], node: Node | None, where: str) -> Fault:
     """Turn one fault of pydantic into a sentence at its place."""
     path = [part for part in detail["loc"] if isinstance(part, int) or part in _known_words(detail)]
     line, column = _place_of(path, node)
-    name = ".".join(["volatility", *(str(part) for part in path)])
+    name = ".".join(["pricing.volatility", *(str(part) for part in path)])
     told = detail.get("ctx", {})
     if detail["type"] == "word":
         found = f"{name}: {told['found']}"
@@ -174,7 +176,9 @@ def _fault(detail: dict[str, Any], node: Node | None, where: str) -> Fault:
         near = nearest_word(str(path[-1]), SurfaceWords.model_fields)
         return Fault(where, line, column, "unknown", f"{name} is not a known word", allowed, near)
     allowed = (
-        "a list of terms such as [{close: 10}, {close: 63}]" if "blend" in path else "a mapping of words"
+        "allowed: a list of terms such as [{close: 10}, {close: 63}]"
+        if "blend" in path
+        else "allowed: a mapping of words"
     )
     return Fault(where, line, column, "shape", f"{name} has the wrong shape", allowed)
 
