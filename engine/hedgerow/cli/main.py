@@ -21,6 +21,8 @@ from hedgerow.errors import HedgerowError
 __all__ = ["STOPPED", "app", "main"]
 
 STOPPED = 130  # the exit code of a command stopped by the keyboard, as shells have it
+ENDED = 143  # of one that was told to end, as by shutting down; `cli.start` turns that into an exit
+WHO = {STOPPED: "by the keyboard", ENDED: "from outside"}
 
 app = typer.Typer(
     name="hedgerow",
@@ -60,7 +62,7 @@ def _main(
 def main() -> None:
     """Run the command line; errors become one message each and an exit code, never a traceback.
 
-    Raises SystemExit: 0 when all is well, 2 when the input is wrong, 130 when stopped, 1 for anything else.
+    Raises SystemExit: 0 when all is well, 2 when the input is wrong, 130 or 143 when stopped, 1 else.
     """
     try:
         code = _code()
@@ -79,18 +81,18 @@ def _code() -> int:
         sys.stderr.write(f"{error}\n")
         return error.exit_code
     except KeyboardInterrupt:
-        return _stopped()
+        return _stopped(STOPPED)
     except SystemExit as done:
-        if done.code == STOPPED:
-            return _stopped()
+        if isinstance(done.code, int) and done.code in WHO:
+            return _stopped(done.code)
         return done.code if isinstance(done.code, int) else int(done.code is not None)
     return 0
 
 
-def _stopped() -> int:
-    """Say that the command was stopped; return its exit code."""
-    sys.stderr.write("Stopped by the keyboard: nothing was left half-written.\n")
-    return STOPPED
+def _stopped(code: int) -> int:
+    """Say that the command was stopped, and by whom; return its exit code."""
+    sys.stderr.write(f"Stopped {WHO[code]}: nothing was left half-written.\n")
+    return code
 
 
 def _give_up(error: OSError) -> None:
