@@ -8,6 +8,7 @@ from pathlib import Path
 import pytest
 
 from hedgerow.errors import PlaceError
+from hedgerow.report.answer import _flip_key
 from hedgerow.report.build import write_report
 from hedgerow.report.folder import read_folder
 from pages import run_folder
@@ -74,3 +75,10 @@ def test_a_damaged_file_is_told(tmp_path: Path, folder: Path) -> None:
     with pytest.raises(PlaceError, match="cannot be read"):
         write_report(tmp_path)
     assert not (tmp_path / "report.html").exists()
+
+
+def test_two_that_are_the_same_are_so_at_every_ratio() -> None:
+    """A flip that was not found says so only of two that differ; twins are equal everywhere."""
+    flip = {"value": None, "least": 0.8, "most": 1.4, "assumed": 1.0, "low": None, "high": None}
+    assert "no ratio from 0.80 to 1.40" in _flip_key(flip, "90%", same=False).remark
+    assert "the same at every ratio" in _flip_key(flip, "90%", same=True).remark

@@ -139,6 +139,7 @@ def test_identical_rules_cannot_be_told_apart() -> None:
         assert not flip.found
         assert np.isnan(flip.low)
     assert "they did the same on every day" in evidence.verdict.headline
+    assert "turn the order" not in evidence.verdict.paragraph
     assert set(evidence.tries.best_set.members) == {"one", "other"}
 
 

@@ -143,8 +143,9 @@ def _premium(tell: Teller, path: tuple[Step, ...]) -> Iterator[str]:
         ends = f"{tell.flip(*flip, end='least')} to {tell.flip(*flip, end='most')}"
         yield f"No premium tried, implied over realized volatility from {ends}, makes {first} equal {second}."
         return
+    lead = "As measured" if tell.at(*path, "verdict") == CANNOT_TELL else "That rests on the premium"
     yield (
-        f"That rests on the premium: at {tell.flip(*flip)} of implied over realized volatility "
+        f"{lead}: at {tell.flip(*flip)} of implied over realized volatility "
         f"({_flip_interval(tell, flip)}{_at_other_skews(tell, path)}) {first} would equal {second}, above it "
         f"{tell.at(*flip, 'ahead_above')} is ahead; {tell.flip(*flip, end='assumed')} is assumed."
     )
@@ -187,7 +188,7 @@ def _timing(tell: Teller, path: tuple[Step, ...]) -> Iterator[str]:
     if not told:
         return
     line = f"Timing luck: by the session on which it begins, {' and '.join(told)}"
-    if path and tell.at(*path, "timing"):
+    if path and tell.at(*path, "timing") and not _same(tell, (*path, "growth")):
         laddered = tell.percent(*path, "timing", "laddered", places=2, signed=True)
         line += f"; with the account spread over all starts the difference is {laddered} a year"
         if tell.at(*path, "timing", "lowest") < 0.0 < tell.at(*path, "timing", "highest"):
@@ -201,7 +202,10 @@ def _range(tell: Teller, row: tuple[Step, ...]) -> str:
     starts = tell.number(*row, "starts", places=0)
     if low == high:
         return f"{low} a year from each of {starts} starts"
-    return f"between {low} and {high} a year from {starts} starts"
+    told = f"between {low} and {high} a year from {starts} starts"
+    if tell.at(*row, "as_run") == tell.at(*row, "highest"):
+        told += " (the one used here was the best of them)"
+    return told
 
 
 def _tries(tell: Teller) -> Iterator[str]:
@@ -217,7 +221,7 @@ def _tries(tell: Teller) -> Iterator[str]:
             f"above nothing is {tell.percent(*best, 'chance_above_nothing', places=0)}, tries not counted"
         )
     elif tell.at(*best):
-        chance = tell.percent(*best, "chance_above_luck", places=0)
+        chance = tell.percent(*best, "chance_above_luck", places=1)
         told += (
             f"; the best Sharpe ratio is {tell.number(*best, 'sharpe')} ({tell.at(*best, 'best')}), luck "
             f"alone would show about {tell.number(*best, 'sharpe_of_luck')}, and the chance that the true "

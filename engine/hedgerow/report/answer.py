@@ -84,7 +84,7 @@ def _keys(evidence: Mapping[str, Any], pair: Mapping[str, Any] | None) -> list[K
             Key("Difference in growth, a year", _percent(growth["difference"]), f"{level} interval {between}")
         )
         if flip is not None:
-            keys.append(_flip_key(flip, level))
+            keys.append(_flip_key(flip, level, same=growth["difference"] == 0.0))
     tried = f"{count['in_all']:,}" if count["in_all"] != 1 else "1"
     keys.append(Key("Variants tried on these prices", tried, f"{count['in_study']:,} of them in this study"))
     keys.append(
@@ -97,9 +97,11 @@ def _keys(evidence: Mapping[str, Any], pair: Mapping[str, Any] | None) -> list[K
     return keys
 
 
-def _flip_key(flip: Mapping[str, Any], level: str) -> Key:
+def _flip_key(flip: Mapping[str, Any], level: str, same: bool) -> Key:
     label, assumed = "Flip premium, implied over realized", f"assumed {number_text(flip['assumed'])}"
     span = f"{number_text(flip['least'])} to {number_text(flip['most'])}"
+    if same:
+        return Key(label, "none", f"the two are the same at every ratio; {assumed}")
     if flip["value"] is None:
         return Key(label, "none", f"no ratio from {span} makes the two equal; {assumed}")
     low, high = (number_text(_known(flip[side])) for side in ("low", "high"))
