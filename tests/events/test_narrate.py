@@ -52,7 +52,7 @@ def test_sentences_of_the_account() -> None:
         "2011-01-03: Cost of borrowing shares of ELM: 0.40 paid.",
         "2011-01-03: An entry in ASH was declined 3 times: not a net credit.",
         "2011-01-03: At the close, an order for ELM was decided: trend turned.",
-        "2011-01-03: The price history of ELM ends.",
+        "2011-01-03: ELM has had no price for 5 sessions.",
         "2011-01-03: ELM was split, 2 new shares for one old.",
         "2011-01-03: 200 shares of ELM owed a dividend of 0.1000 a share: 20.00 paid.",
         "2011-01-03: 2 contracts of the hedge, a put, struck at 9.00 to 2011-01-07 on ELM were exercised "

@@ -182,7 +182,7 @@ def test_cash_settlement_and_reserve() -> None:
     [
         (at.WHY_STOP, "stop", "stop"),
         (at.WHY_STOP_GAP, "stop", "stop through a gap"),
-        (at.WHY_GONE, "gone", "history ended"),
+        (at.WHY_GONE, "gone", "no price for 5 sessions"),
         (at.WHY_ASSIGNED_EARLY, "assigned", "assigned early"),
         (at.WHY_EXIT_RULE + 1, "cut", "cut"),
         (at.WHY_EXPIRY, "between", "expiry"),

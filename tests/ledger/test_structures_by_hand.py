@@ -188,7 +188,7 @@ def test_history_that_ends_under_a_position() -> None:
     book.night()
     row = only_row(book)
     assert (row["stock_pnl"], row["option_pnl"], row["pnl"]) == (-2000.0, 1800.0, -200.0)
-    assert (row["outcome"], row["reason"]) == ("gone", "history ended")
+    assert (row["outcome"], row["reason"]) == ("gone", "no price for 5 sessions")
 
 
 def test_interest_of_a_reserve_belongs_to_its_position() -> None:

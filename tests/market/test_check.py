@@ -8,8 +8,9 @@ import numpy as np
 import pandas as pd
 import pytest
 
+from hedgerow.kernels.day import LONGEST_SILENCE
 from hedgerow.market import Market, load_market
-from hedgerow.market.check import last_close
+from hedgerow.market.check import SILENCE_SESSIONS, last_close
 from price_tables import HEADER, codes, finding, flat_frame, sessions, walk_frame, write
 
 
@@ -245,3 +246,18 @@ def test_the_last_close_looks_over_holes() -> None:
     wanted = np.array([[np.nan, np.nan], [np.nan, 1.0], [2.0, 1.0], [2.0, 1.0]])
     np.testing.assert_array_equal(last_close(close), wanted)
     assert len(sessions(4)) == 4
+
+
+@pytest.mark.parametrize("missing", [SILENCE_SESSIONS - 1, SILENCE_SESSIONS])
+def test_gaps_in_which_a_position_is_closed(missing: int) -> None:
+    """One session too few is no finding; as many as the walk waits are one, with symbol and both days."""
+    assert SILENCE_SESSIONS == LONGEST_SILENCE
+    frame = walk_frame("AB", 60)
+    days = sorted(frame["date"].unique())[20 : 20 + missing]
+    frame = frame[(frame["symbol"] != "B") | ~frame["date"].isin(days)]
+    found = [one for one in Market.from_frame(frame, adjustment="none").findings if one.code == "long-gap"]
+    first, last = (str(pd.Timestamp(day).date()) for day in (days[0], days[-1]))
+    told = [
+        f"B, {first}: no price for 5 sessions, {first} to {last}: a position is closed at the price before"
+    ]
+    assert [one.told for one in found] == (told if missing == SILENCE_SESSIONS else [])

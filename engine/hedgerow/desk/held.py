@@ -254,7 +254,7 @@ def _verdict(events: Any, after: Any, exits: tuple[str, ...], orders: tuple[str,
         return f"leave: {reason_word(reasons[0], exits)}"
     kinds = set(events["kind"].tolist())
     if at.KIND_GONE in kinds:
-        return "over: the history of its prices ended"
+        return "over: no price for 5 sessions"
     if at.KIND_CLOSED in kinds:
         return "over at expiry"
     if int(after["closing"]) in (at.WHY_MARGIN, at.WHY_LEFT_OVER):

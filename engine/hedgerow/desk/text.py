@@ -26,8 +26,8 @@ MOST_LOOKS = 40
 def print_sheet(sheet: Sheet, console: Console | None = None) -> None:
     """Print a sheet to a console, the standard output when none is given; plain text when piped."""
     out = console or Console()
-    if not out.is_terminal:
-        out.file.write(text_of(sheet))
+    if not out.is_terminal or out.no_color:  # without colour there is no weight either
+        out.file.write(text_of(sheet, min(out.width, WIDTH) if out.is_terminal else WIDTH))
         return
     width = min(out.width, WIDTH)
     for part in _parts(sheet, width >= WIDTH):

@@ -51,7 +51,7 @@ WHY_WORDS: tuple[str, ...] = (
     "assigned early",
     "stop",
     "stop through a gap",
-    "history ended",
+    "no price for 5 sessions",
     "no volatility known",
     "no listed expiry near",
     "strike not listed",
@@ -99,7 +99,7 @@ floor       ran to its end with the worst result its terms allowed
 cut         left early by an exit rule; the reason names the rule
 stop        the resting stock stop was filled
 assigned    written options were assigned before expiry and that ended it
-gone        the history of the symbol ended under it
+gone        no price for five sessions in a row; closed at the last one, though the symbol may trade again
 open        still open at the last session
 """
 

@@ -151,7 +151,7 @@ def _margin_call(_log: EventLog, event: Any) -> str:
 
 
 def _gone(log: EventLog, event: Any) -> str:
-    return f"The price history of {_symbol(log, event)} ends"
+    return f"{_symbol(log, event)} has had no price for 5 sessions"
 
 
 _TELLERS: tuple[Callable[[EventLog, Any], str], ...] = (

@@ -15,6 +15,7 @@ from hedgerow.market.recover import RATIOS
 from hedgerow.market.table import Finding, Market
 
 Mask = NDArray[np.bool_]
+SILENCE_SESSIONS = 5  # without a price, after which the walk closes a position (kernels.day.LONGEST_SILENCE)
 LEAST_SYMBOLS = 3  # a majority needs as many
 CALENDAR_FITS = 0.02  # share of sessions that may differ where the US calendar is tried unasked
 STALE_BARS = 4  # repeats of a whole bar
@@ -35,6 +36,7 @@ def market_findings(market: Market, calendar: str = "") -> list[Finding]:
         lambda: missing_sessions(market),
         lambda: extra_sessions(market),
         lambda: calendar_sessions(market, calendar),
+        lambda: long_gaps(market),
         lambda: stale_runs(market),
         lambda: jumps(market),
         lambda: splits_unseen(market),
@@ -117,6 +119,21 @@ def _runs(same: Mask) -> Ints:
     """Return how many sessions in a row have been the same as the one before, up to each session, (T, N)."""
     session = np.arange(len(same))[:, None]
     return np.asarray(session - np.maximum.accumulate(np.where(same, 0, session), axis=0), dtype=np.int64)
+
+
+def long_gaps(market: Market) -> list[Finding]:
+    """Find gaps inside a symbol's history that are so long that a position is closed in them."""
+    has, active = _presence(market)
+    length = _runs(active & ~has)
+    ends = np.zeros(market.shape, dtype=np.bool_)
+    ends[:-1] = (length[:-1] >= SILENCE_SESSIONS) & (length[1:] == 0)
+    findings = []
+    for index, session in np.argwhere(ends.T):
+        count = int(length[session, index])
+        first, last = (iso(market.ordinals[one]) for one in (session - count + 1, session))
+        text = f"no price for {count:,} sessions, {first} to {last}: a position is closed at the price before"
+        findings.append(Finding("long-gap", "warning", market.symbols[index], first, text))
+    return findings
 
 
 def stale_runs(market: Market) -> list[Finding]:

@@ -41,6 +41,12 @@ class Finding:
     date: str
     text: str
 
+    @property
+    def told(self) -> str:
+        """The text with the symbol and the date it is about, as far as there are any."""
+        about = ", ".join(part for part in (self.symbol, self.date) if part)
+        return f"{about}: {self.text}" if about else self.text
+
 
 class Report(NamedTuple):
     """One earnings report; the days are proleptic ordinals, `eps` is money per share as reported.

@@ -34,8 +34,8 @@ MEASURES = {"sharpe": "Sharpe ratio", "sortino": "Sortino ratio", "growth": "gro
 def print_large(result: LargeResult, cautions: Sequence[str], console: Console | None = None) -> None:
     """Print the findings to a console, the standard output when none is given; plain text when piped."""
     out = console or Console()
-    if not out.is_terminal:
-        out.file.write(large_text(result, cautions))
+    if not out.is_terminal or out.no_color:  # without colour there is no weight either
+        out.file.write(large_text(result, cautions, min(out.width, WIDTH) if out.is_terminal else WIDTH))
         return
     for part in _parts(result, cautions):
         out.print(part, width=min(out.width, WIDTH))

@@ -55,8 +55,8 @@ def print_comparison(comparison: Comparison, console: Console | None = None) -> 
     """Print a comparison to a console, the standard output when none is given; plain text when piped."""
     out = console or Console()
     draws = out.encoding.lower().startswith("utf")
-    if not out.is_terminal:
-        out.file.write(text_of(comparison, draws=draws))
+    if not out.is_terminal or out.no_color:  # without colour there is no weight either
+        out.file.write(text_of(comparison, min(out.width, WIDTH) if out.is_terminal else WIDTH, draws))
         return
     width = min(out.width, WIDTH)
     for part in _parts(comparison, width, draws):

@@ -16,6 +16,7 @@ from hedgerow.evidence.findings import Evidence
 from hedgerow.extend.costs import CostModel
 from hedgerow.kernels.layout import Costs
 from hedgerow.market import Market, load_market
+from hedgerow.market.check import SILENCE_SESSIONS
 from hedgerow.market.samples import PREFIX
 from hedgerow.rules.schema import Strategy
 from hedgerow.study.declare import Study
@@ -72,9 +73,9 @@ class StudyResult:
 
     @property
     def ended(self) -> int:
-        """How many traded symbols have a history that ends before the market's."""
+        """How many traded symbols lack a price for the last SILENCE_SESSIONS of the market, or longer."""
         last = self.market.last_bar[self.bench.traded.astype(bool)]
-        return int((last < len(self.market.dates) - 1).sum())
+        return int((last < len(self.market.dates) - SILENCE_SESSIONS).sum())
 
     def _study_plain(self) -> dict[str, Any]:
         """The words of the study, its paths in full."""
@@ -94,7 +95,7 @@ class StudyResult:
                 "symbols": list(market.symbols),
                 "first": str(market.dates[0]),
                 "last": str(market.dates[-1]),
-                "findings": [f"{f.severity}: {f.text}" for f in market.findings],
+                "findings": [f"{f.severity}: {f.told}" for f in market.findings],
             },
             "costs": self.costs._asdict(),
             "extensions": {one.source: list(one.names) for one in self.study.extensions},

@@ -62,6 +62,6 @@ const TELLERS = [
   (e, at) => `The leg \`${legWord(e, at)}\` of ${e.symbol} was left as it is: ${reasonOf(e, at)}`,
   (e, at) => `At the close, an order for ${e.symbol} was decided: ${reasonOf(e, at)}`,
   (e, at) => `Position ${e.position} in ${e.symbol} is over${whyOf(e, at)}: result ${number(e.price[at], 2, true)}`,
-  (e) => `The price history of ${e.symbol} ends`,
+  (e) => `${e.symbol} has had no price for 5 sessions`,
   (e, at) => `Equity is ${number(e.price[at])} short of the maintenance margin`,
 ];
