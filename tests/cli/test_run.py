@@ -369,3 +369,29 @@ def test_a_report_of_what_is_no_run_is_refused(hedgerow: Runner) -> None:
         said = hedgerow("report", *words)
         assert (said.code, said.out) == (2, "")
         assert told in said.err
+
+
+def test_a_repeat_on_other_prices_says_so_first(hedgerow: Runner) -> None:
+    """On the same prices nothing is said; one close changed, and it is told aside, the run being made."""
+    assert hedgerow("run", "study.yaml", "--out", "one", "--quiet", "--no-report").code == 0
+    same = hedgerow("run", "one/run.yaml", "--out", "two", "--quiet", "--no-report")
+    assert (same.code, same.err) == (0, "")
+    prices = pd.read_csv("prices.csv")
+    prices.loc[50, "close"] = prices.loc[50, "low"]
+    prices.to_csv("prices.csv", index=False)
+    other = hedgerow("run", "one/run.yaml", "--out", "three", "--quiet", "--no-report")
+    assert other.code == 0
+    assert other.err.startswith("one/run.yaml: these are not the prices of the run that is repeated")
+
+
+def test_the_first_warning_about_the_data_stands_on_top(hedgerow: Runner) -> None:
+    """A close that halves without a recorded split is named, with its symbol, before any figure."""
+    prices = pd.read_csv("prices.csv")
+    name = prices["symbol"].iloc[0]
+    late = (prices["symbol"] == name) & (prices.groupby("symbol").cumcount() >= 60)
+    prices.loc[late, ["open", "high", "low", "close"]] /= 2.0
+    prices.to_csv("prices.csv", index=False)
+    said = hedgerow("run", "study.yaml", "--no-report")
+    assert said.code == 0
+    assert said.out.startswith("Mind the data: ")
+    assert name in said.out.splitlines()[0]

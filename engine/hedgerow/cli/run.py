@@ -227,12 +227,24 @@ def _walked(study: Study, workers: int, beside: Path) -> StudyResult:
 
     tell_first_run()
     bench, window = bench_of(study)
+    _tell_other_prices(study, bench.market.fingerprint)
     whole = (window.stop - window.start) * len(study.variants) + sessions_of_evidence(
         costed(study, bench.market), window
     )
     before = tried_before(beside, bench.market)
     with progress("Replaying", whole) as counter:
         return run_study(study, market=bench.market, workers=workers, progress=counter.advance, tried=before)
+
+
+def _tell_other_prices(study: Study, fingerprint: str) -> None:
+    """Say aside, and first, that an earlier run is repeated on other prices than it was made on."""
+    from hedgerow.rules.document import tree_of_file
+
+    plain = {} if study.path is None else tree_of_file(study.path).plain
+    data = plain.get("data") if isinstance(plain, dict) and "study" in plain else None
+    if isinstance(data, dict) and str(data.get("fingerprint")) != fingerprint:
+        told = "these are not the prices of the run that is repeated: its fingerprint of them is another"
+        typer.echo(f"{study.path}: {told}; figures may differ", err=True)
 
 
 def _show(result: StudyResult, place: Path, page: Path | None) -> None:
@@ -242,12 +254,15 @@ def _show(result: StudyResult, place: Path, page: Path | None) -> None:
 
     study = result.study
     summaries = [one.summary for one in result.results]
+    findings = [found for found in result.market.findings if found.severity == "warning"]
+    if findings:
+        several = "1 warning" if len(findings) == 1 else f"{len(findings):,} warnings, the first"
+        typer.echo(f"Mind the data: {several}: {findings[0].told}\n")
     print_comparison(Comparison(summaries, study.name, study.question, cautions_of(result), result.evidence))
     if result.evidence is None and study.evidence is not None:
         typer.echo("\nNo verdict: the record is too short for one, or every account fell to nothing.")
-    warnings = sum(finding.severity == "warning" for finding in result.market.findings)
-    if warnings:
-        several = "1 warning" if warnings == 1 else f"{warnings:,} warnings"
+    if findings:
+        several = "1 warning" if len(findings) == 1 else f"{len(findings):,} warnings"
         typer.echo(f"\nThe data check has {several}: hedgerow data check {shlex.quote(str(study.market))}")
     typer.echo(f"\nEvery trade and every cent: {place}")
     if page is not None:
