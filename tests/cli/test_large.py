@@ -14,6 +14,7 @@ import pandas as pd
 import pytest
 
 from cli_runs import Runner
+from hedgerow.report import large_text
 
 GRID = """\
 name: Grid
@@ -104,12 +105,29 @@ def test_json_for_programs(run: Runner) -> None:
     assert told["grid"]["walk_forward"]["judged"]
 
 
+def test_a_best_one_that_hardly_trades_is_marked(run: Runner, monkeypatch: pytest.MonkeyPatch) -> None:
+    """With few positions, or little at work, it is told how many and how much; otherwise nothing is."""
+    monkeypatch.setattr(large_text, "FEW_POSITIONS", 0)
+    monkeypatch.setattr(large_text, "LITTLE_AT_WORK", 0.0)
+    assert "HARDLY" not in run("run", "grid.yaml", "--out", "one").out
+    table = pd.read_csv("one/variants.csv")
+    best = table.loc[table["sharpe"].idxmax()]
+    monkeypatch.setattr(large_text, "FEW_POSITIONS", int(best["positions"]) + 1)
+    told = run("run", "grid.yaml", "--out", "two").out
+    assert f"IT HARDLY TRADES: {best['positions']:,.0f} position" in told
+    monkeypatch.setattr(large_text, "FEW_POSITIONS", 0)
+    monkeypatch.setattr(large_text, "LITTLE_AT_WORK", float(best["capital_at_work"]) + 0.01)
+    assert "IT HARDLY TRADES" in run("run", "grid.yaml", "--out", "three").out
+
+
 def test_one_look_and_no_second(run: Runner) -> None:
     """The look is told with its count; a second is refused with exit code 2, unless asked for."""
     run("run", "grid.yaml", "--quiet")
     said = run("look", "runs/grid")
     assert (said.code, said.err) == (0, "")
     assert "1 look by this study, 1 by all studies" in said.out
+    assert "positions there, " in said.out or "position there, " in said.out
+    assert "both parts begin with the same cash" in said.out
     assert max(map(len, said.out.splitlines())) <= 100
     refused = run("look", "runs/grid")
     assert (refused.code, refused.out, len(refused.told)) == (2, "", 1)

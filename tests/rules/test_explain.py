@@ -60,8 +60,9 @@ later caps it from then on.
 
 Worst case. Floored by `put`: below its strike a further fall costs nothing more while the put lives, since
 the shares can be sold at that strike. The most that can be lost is the net debit less the strike. A put
-bought again has its own price and its own floor. A resting order in the stock 9% below its price at entry
-ends the whole position; a gap jumps it, and the fill is then the open.
+bought again has its own price and its own floor. That is so for the legs of the entry. Where `call` is sold
+below that strike later, after a fall, the shares may be taken there, and more is lost. A resting order in the
+stock 9% below its price at entry ends the whole position; a gap jumps it, and the fill is then the open.
 
 Obligations. The buyer of `call` may take shares at its strike whenever that pays, most likely the session
 before an ex-dividend date: the shares held are delivered.

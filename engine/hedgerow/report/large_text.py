@@ -27,7 +27,7 @@ from hedgerow.units import number_text, percent_text
 __all__ = ["aside_text", "large_text", "print_large"]
 
 SHOWN = 8
-NAME_WIDTH = 49
+NAME_WIDTH = 45
 MEASURES = {"sharpe": "Sharpe ratio", "sortino": "Sortino ratio", "growth": "growth"}
 
 
@@ -102,15 +102,19 @@ class _Column:
     name: str
     width: int
     percent: bool = True
+    places: int = 2
 
 
 COLUMNS = (
     _Column("Growth a year", "growth_a_year", 6),
-    _Column("Volatility", "volatility_a_year", 10),
     _Column("Sharpe", "sharpe", 6, percent=False),
     _Column("Deepest fall", "deepest_drawdown", 7),
     _Column("Win rate", "win_rate", 5),
+    _Column("Positions", "positions", 9, percent=False, places=0),
+    _Column("At work", "capital_at_work", 5),
 )
+FEW_POSITIONS = 30
+LITTLE_AT_WORK = 0.05
 
 
 def _best(result: LargeResult) -> Table:
@@ -143,7 +147,7 @@ def _cells(result: LargeResult, number: int) -> list[str]:
     return [
         percent_text(float(figures[column.name][number]))
         if column.percent
-        else number_text(float(figures[column.name][number]))
+        else number_text(float(figures[column.name][number]), column.places)
         for column in COLUMNS
     ]
 
@@ -156,6 +160,7 @@ def _curve_cells(curve: Curve) -> list[str]:
 def _worth(result: LargeResult) -> Iterator[str]:
     found = result.findings
     worth = found.worth
+    yield from _hardly_trades(result)
     if found.neighbourhood is not None:
         yield from _neighbours(found.neighbourhood)
     yield (
@@ -173,6 +178,22 @@ def _worth(result: LargeResult) -> Iterator[str]:
             f"Against buy and hold ({which} tested): luck alone brings so good a best one with a chance of "
             f"{percent_text(found.superiority.p_consistent)}; {better or 'none'} shown to grow faster."
         )
+
+
+def _hardly_trades(result: LargeResult) -> Iterator[str]:
+    """A warning where the best variant is mostly cash, whose figures then say little of the rule."""
+    best = {name: float(values[result.findings.best]) for name, values in result.findings.figures.items()}
+    if best["positions"] >= FEW_POSITIONS and best["capital_at_work"] >= LITTLE_AT_WORK:
+        return
+    gain = best["last_value"] - result.stage.job.account.cash
+    interest = (
+        f", and {percent_text(best['interest'] / gain, 0)} of its gain is interest" if gain > 0.0 else ""
+    )
+    count, work = f"{best['positions']:,.0f} positions", percent_text(best["capital_at_work"])
+    yield (
+        f"IT HARDLY TRADES: {count}, {work} of the equity at work{interest}. "
+        "Its figures say little of the rule."
+    )
 
 
 def _before(result: LargeResult) -> str:
@@ -285,8 +306,20 @@ def aside_text(ready: Stage, before: Summary, aside: Aside, width: int = WIDTH) 
     console.print(Text())
     console.print(table)
     console.print(Text())
+    console.print(Text(_traded(after)))
     console.print(Text(_looked(aside)))
     return "\n".join(line.rstrip() for line in page.getvalue().splitlines()) + "\n"
+
+
+def _traded(after: Summary) -> str:
+    """What the figures of the part kept aside rest on; both parts begin with the account's own cash."""
+    told = f"{after.positions:,} {'position' if after.positions == 1 else 'positions'} there"
+    told += (
+        f", {percent_text(after.capital_at_work)} of the equity at work; both parts begin with the same cash."
+    )
+    if after.positions < FEW_POSITIONS:
+        told += " So few cannot tell whether the rule held up."
+    return told
 
 
 def _looked(aside: Aside) -> str:

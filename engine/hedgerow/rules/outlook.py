@@ -152,6 +152,13 @@ def _floored(strategy: Strategy) -> Iterator[str]:
     )
     if any(leg.roll is not None for leg in puts):
         yield "A put bought again has its own price and its own floor."
+    sold = [leg for leg in strategy.legs if leg.sold and leg.right == "call"]
+    again = [leg for leg in sold if leg.roll is not None or leg.add_when is not None]
+    if again:
+        yield (
+            f"That is so for the legs of the entry. Where {_names(again)} is sold below that strike later, "
+            "after a fall, the shares may be taken there, and more is lost."
+        )
 
 
 def _bounded(strategy: Strategy) -> str:
@@ -205,6 +212,8 @@ def _for_puts(strategy: Strategy) -> str:
     """What stands behind a put that is sold."""
     if strategy.shares == "short":
         return "they close the shares sold short"
+    if of_kind(strategy, "put", False) and strategy.shares == "long":
+        return "the put bought stands behind it, and shares taken early are paid for on credit until they go"
     if of_kind(strategy, "put", False):
         return "the put bought limits what that can cost, and cash for that is set aside"
     kept = ", and the shares are kept" if strategy.after_assignment == "keep" else ""
